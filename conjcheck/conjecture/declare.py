@@ -1,0 +1,168 @@
+"""``@candidate`` and ``@claim``: a plain function becomes a frozen ``Conjecture`` value, validated when declared."""
+
+import functools
+import inspect
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+from conjcheck.errors import DeclarationError
+from conjcheck.geometry.families import Family
+
+__all__ = ["Conjecture", "candidate", "claim"]
+
+Rule = Callable[..., Any]
+
+_RINGS = ("quantum", "classical")
+
+
+@dataclass(frozen=True, eq=False)
+class Conjecture:
+    """One conjecture; still an ordinary function: calling it calls the rule.
+
+    Attributes:
+        rule: the function as written.
+        role: ``"candidate"`` (a formula for constants) or ``"claim"`` (a statement about them).
+        by_rows: whether one call answers a whole row ``(X, u, v)`` instead of one case.
+        on: the family of flag varieties it speaks about.
+        ring: ``"quantum"``, or ``"classical"``: then degrees drop out of all signatures and only ``d = 0`` is compared.
+        premise: the hypothesis, ``None`` for none; ``premise_by_rows`` tells which signature it has.
+        statement: in LaTeX.
+        references, contributors: for the report and for the citation.
+    """
+
+    rule: Rule
+    role: str
+    by_rows: bool
+    on: Family
+    ring: str
+    premise: Rule | None
+    premise_by_rows: bool
+    statement: str
+    references: tuple[str, ...]
+    contributors: tuple[str, ...]
+
+    def __call__(self, *args: Any, **kwargs: Any) -> Any:
+        """The rule itself."""
+        return self.rule(*args, **kwargs)
+
+    @property
+    def name(self) -> str:
+        """The name of the function."""
+        return self.rule.__name__
+
+    @property
+    def file(self) -> str:
+        """The file it was written in."""
+        return inspect.getsourcefile(self.rule) or "<unknown>"
+
+    @property
+    def is_classical(self) -> bool:
+        """Whether only ``d = 0`` is compared."""
+        return self.ring == "classical"
+
+    def __repr__(self) -> str:
+        return f"<{self.role} {self.name} on {self.on}>"
+
+
+def candidate(
+    *,
+    on: Family,
+    premise: Rule | None = None,
+    statement: str = "",
+    references: Sequence[str] = (),
+    contributors: Sequence[str] = (),
+    ring: str = "quantum",
+) -> Callable[[Rule], Conjecture]:
+    """Declare a candidate formula for the structure constants ``N_{u,v}^{w,d}``.
+
+    The decorated function has one of these signatures, by these names:
+
+    * ``(X, u, v, w, d)``: one constant, an ``int`` of 0 or more, or an iterable of distinct hashable objects, which are counted;
+    * ``(X, u, v)``: the whole product, a mapping from ``(w, d)`` to such a value; what it leaves out is 0;
+    * with ``ring="classical"``: ``(X, u, v, w)``, or ``(X, u, v)`` with a mapping from ``w``.
+
+    ``X`` is a ``FlagVariety``, ``u, v, w`` its ``SchubertClass`` es, ``d`` a tuple with one entry per marked node.
+
+    Args:
+        on: the family the rule speaks about, e.g. ``Grassmannians()``.
+        premise: the hypothesis, a predicate ``(X, u, v)`` on rows (cheap: prefer it) or ``(X, u, v, w, d)`` on cases; cases
+            outside it are not compared.
+        statement: the formula in LaTeX, for reports.
+        references: where it is published, one string each.
+        contributors: who proposes it.
+        ring: ``"quantum"`` or ``"classical"``.
+
+    Raises:
+        DeclarationError: the message names file, line, argument and remedy.
+    """
+    return functools.partial(_declare, "candidate", on, premise, statement, references, contributors, ring)
+
+
+def claim(
+    *,
+    on: Family,
+    premise: Rule | None = None,
+    statement: str = "",
+    references: Sequence[str] = (),
+    contributors: Sequence[str] = (),
+    ring: str = "quantum",
+) -> Callable[[Rule], Conjecture]:
+    """Declare a statement about constants, with the oracle at hand.
+
+    The decorated function returns a ``bool``, whether the statement holds, and has one of these signatures:
+
+    * ``(X, u, v, w, d, N)``: ``N(u, v, w, d)`` is the true constant (another variety's classes may be asked about too);
+    * ``(X, u, v, N)``: a statement about a whole product; ``N.product(u, v)`` is the true product, ``{(w, d): int}``;
+    * with ``ring="classical"``: ``(X, u, v, w, N)`` and ``N(u, v, w)``; ``(X, u, v, N)`` and ``N.product(u, v)``, ``{w: int}``.
+
+    The other arguments are those of :func:`candidate`.
+    """
+    return functools.partial(_declare, "claim", on, premise, statement, references, contributors, ring)
+
+
+def _declare(
+    role: str,
+    on: Family,
+    premise: Rule | None,
+    statement: str,
+    references: Sequence[str],
+    contributors: Sequence[str],
+    ring: str,
+    rule: Rule,
+) -> Conjecture:
+    """Validate and build."""
+    if not inspect.isfunction(rule):
+        raise DeclarationError(f"expected a plain function under @{role}, got {rule!r}; put @{role}(on=...) directly above a def")
+    place = f"{inspect.getsourcefile(rule) or '<unknown>'}:{rule.__code__.co_firstlineno}: @{role} {rule.__name__}"
+    if not isinstance(on, Family):
+        raise DeclarationError(f"{place}: expected a family for on, got on={on!r}; write on=Grassmannians() or on=Varieties(X)")
+    if ring not in _RINGS:
+        raise DeclarationError(f"{place}: expected ring to be one of {', '.join(map(repr, _RINGS))}, got ring={ring!r}")
+    if not isinstance(statement, str):
+        raise DeclarationError(f"{place}: expected a str in LaTeX for statement, got statement={statement!r}")
+    for name, value in (("references", references), ("contributors", contributors)):
+        if isinstance(value, str) or not all(isinstance(entry, str) for entry in value):
+            raise DeclarationError(f"{place}: expected a list of strings for {name}, got {name}={value!r}; write {name}=[...]")
+    if inspect.isgeneratorfunction(premise) or (premise is not None and not callable(premise)):
+        raise DeclarationError(f"{place}: expected a function that returns a bool for premise, got premise={premise!r}")
+    tail = () if ring == "classical" else ("d",)
+    whole, single = ("X", "u", "v"), ("X", "u", "v", "w", *tail)
+    oracle = ("N",) if role == "claim" else ()
+    by_rows = _signature(place, "the rule", rule, (*single, *oracle), (*whole, *oracle))
+    premise_by_rows = premise is None or _signature(place, "the premise", premise, single, whole)
+    made = Conjecture(
+        rule, role, by_rows, on, ring, premise, premise_by_rows, statement, tuple(references), tuple(contributors)
+    )
+    vars(made).update(__doc__=rule.__doc__, __name__=rule.__name__, __wrapped__=rule)  # a value with a function's page
+    return made
+
+
+def _signature(place: str, what: str, function: Rule, single: tuple[str, ...], whole: tuple[str, ...]) -> bool:
+    """Whether the function has the row signature; an error unless it has one of the two."""
+    names = tuple(inspect.signature(function).parameters)
+    if names not in (single, whole):
+        raise DeclarationError(
+            f"{place}: expected the arguments ({', '.join(single)}) or ({', '.join(whole)}) for {what}, got ({', '.join(names)})"
+        )
+    return names == whole

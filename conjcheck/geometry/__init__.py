@@ -1,0 +1,1 @@
+"""Flag varieties G/P, built from the Cartan matrix up."""

@@ -1,0 +1,395 @@
+"""The flag variety G/P and its Schubert classes: immutable values, one object per variety and per class.
+
+``sigma_u`` is indexed by the minimal-length representative ``u`` in ``W^P`` and has codimension ``u.length``; ``sigma_e = 1``.
+Because a variety and its classes exist once, ``==`` is identity: fast as a dictionary key, and true across pickling.
+"""
+
+import re
+from collections.abc import Iterable
+from functools import lru_cache
+from itertools import groupby
+from typing import Any
+
+import numpy as np
+
+from conjcheck.errors import NotationError, OutOfReach
+from conjcheck.geometry import notation
+from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
+from conjcheck.geometry.weyl import Orbit, dual_indices, number_of_cosets, one_lines, orbit, root_images
+
+__all__ = ["MOST_CLASSES", "Degree", "Fl", "FlagVariety", "Gr", "SchubertClass"]
+
+Degree = tuple[int, ...]
+
+MOST_CLASSES = 50_000
+"""Enumeration stops here with ``OutOfReach``: a variety with more classes is a typing error more often than a wish."""
+
+
+class FlagVariety:
+    """A flag variety, by name: ``FlagVariety("Fl(1,3;4)")``, ``"Gr(2,4)"``, ``"Fl(4)"``, ``"P^3"``, ``"A3/P1,3"``, ``"A3/B"``.
+
+    Attributes:
+        kind: the Cartan type; ``rank`` its rank.
+        marked: the marked nodes ``I`` (Bourbaki, 1-based, rising): the simple roots that are *not* in the Levi of P.
+        n, steps: in type A, ``Fl(steps; n)``; ``n`` is ``rank + 1`` and ``steps`` is ``marked``.
+        dim: the dimension, which is the length of the longest class.
+        q_degrees: ``deg q_i`` for i in ``marked``, in the unit in which ``sigma_u`` has degree ``u.length``.
+        name: the name in the usual notation; ``FlagVariety(X.name) is X``.
+
+    Cost: constant; the classes are enumerated when first asked for.
+
+    Raises:
+        NotationError: the name denotes no flag variety.
+
+    >>> X = FlagVariety("Fl(1,3;4)")
+    >>> X.dim, X.q_degrees, len(X.classes)
+    (5, (3, 3), 12)
+    """
+
+    __slots__ = ("dim", "kind", "marked", "n", "name", "q_degrees", "rank", "sort_key", "steps")
+
+    kind: CartanType
+    rank: int
+    marked: tuple[int, ...]
+    n: int
+    steps: tuple[int, ...]
+    dim: int
+    q_degrees: tuple[int, ...]
+    name: str
+    sort_key: tuple[Any, ...]
+
+    def __new__(cls, name: str) -> "FlagVariety":
+        """Look the name up; see the class."""
+        return _of(*_parse(name))
+
+    def __repr__(self) -> str:
+        return f"FlagVariety({self.name!r})"
+
+    def __str__(self) -> str:
+        return self.name
+
+    def __reduce__(self) -> tuple[type, tuple[str]]:
+        return FlagVariety, (self.name,)
+
+    def __lt__(self, other: "FlagVariety") -> bool:
+        return self.sort_key < other.sort_key
+
+    def __setattr__(self, name: str, value: object) -> None:
+        raise AttributeError(f"a flag variety is immutable; cannot set {name!r}")
+
+    @property
+    def is_complete(self) -> bool:
+        """Whether every node is marked, so that P is a Borel subgroup."""
+        return len(self.marked) == self.rank
+
+    @property
+    def is_grassmannian(self) -> bool:
+        """Whether this is ``Gr(k, n)``: type A with one marked node."""
+        return self.kind.letter == "A" and len(self.marked) == 1
+
+    @property
+    def classes(self) -> tuple["SchubertClass", ...]:
+        """All Schubert classes by length, then lexicographically (type A: one-line notation)."""
+        return _classes(self)
+
+    @property
+    def identity(self) -> "SchubertClass":
+        """The class ``sigma_e = 1``."""
+        return self.classes[0]
+
+    @property
+    def point(self) -> "SchubertClass":
+        """The class of a point, ``sigma_w`` for the longest w in ``W^P``."""
+        return self.classes[-1]
+
+    def of_length(self, length: int) -> tuple["SchubertClass", ...]:
+        """The classes of one codimension, in order; empty outside ``0..dim``."""
+        return _levels(self).get(length, ())
+
+    def schubert(
+        self,
+        *,
+        permutation: Iterable[int] | None = None,
+        partition: Iterable[int] | None = None,
+        string: str | None = None,
+        word: Iterable[int] | None = None,
+    ) -> "SchubertClass":
+        """The class given in exactly one notation; which one is never guessed from the value.
+
+        Raises:
+            NotationError: none or several notations, a notation that this variety has not, or a value that is no class of it.
+
+        >>> Gr(2, 4).schubert(partition=(2, 1)).permutation
+        (2, 4, 1, 3)
+        """
+        given = {"permutation": permutation, "partition": partition, "string": string, "word": word}
+        given = {key: value for key, value in given.items() if value is not None}
+        if len(given) != 1:
+            raise NotationError(f"expected one of permutation=, partition=, string=, word=, got {sorted(given) or 'none'}")
+        if self.kind.letter != "A":
+            if word is None:
+                raise NotationError(f"expected word= for a class of {self.name}: only type A has the other notations")
+            return self._from_word(notation.read_integers("word", word))
+        if permutation is not None:
+            w = notation.read_permutation(permutation, self.marked, self.n)
+        elif partition is not None:
+            if not self.is_grassmannian:
+                raise NotationError(f"expected permutation=, string= or word= on {self.name}: only a Grassmannian has partition=")
+            w = notation.permutation_from_partition(partition, self.marked[0], self.n)
+        elif string is not None:
+            w = notation.permutation_from_string(string, self.marked, self.n)
+        else:
+            w = notation.read_permutation(notation.permutation_from_word(word or (), self.n), self.marked, self.n)
+        return self.classes[_permutation_index(self)[w]]
+
+    def _from_word(self, word: tuple[int, ...]) -> "SchubertClass":
+        """A class of any type from a reduced word of its minimal representative."""
+        whole, matrix = orbit_of(self), np.array(cartan_matrix(self.kind), dtype=np.int64)
+        weight = whole.weights[0]
+        for place in range(len(word), 0, -1):
+            i = word[place - 1]
+            if not 1 <= i <= self.rank:
+                raise NotationError(f"expected letters from 1 to {self.rank}, got letter {place} = {i} in word={word}")
+            if weight[i - 1] <= 0:
+                raise NotationError(f"expected a reduced word of a class of {self.name}, got letter {place} = {i} in word={word}")
+            weight = weight - weight[i - 1] * matrix[i - 1]
+        return self.classes[int(whole.locate(weight[None, :])[0])]
+
+
+class SchubertClass:
+    """A Schubert class ``sigma_u`` of a flag variety; made by ``X.schubert`` or taken from ``X.classes``.
+
+    Attributes:
+        variety: the flag variety.
+        index: the 0-based place in ``variety.classes``.
+        length: the length of u, which is the codimension of the class.
+    """
+
+    __slots__ = ("index", "length", "variety")
+
+    variety: FlagVariety
+    index: int
+    length: int
+
+    def __setattr__(self, name: str, value: object) -> None:
+        raise AttributeError(f"a Schubert class is immutable; cannot set {name!r}")
+
+    def __repr__(self) -> str:
+        return f"sigma{self}"
+
+    def __str__(self) -> str:
+        """``(2,1)`` on a Grassmannian, ``[2143]`` on other varieties of type A, ``<1.3.2>`` (a word) elsewhere."""
+        if self.variety.is_grassmannian:
+            return f"({','.join(map(str, self.partition))})"
+        if self.variety.kind.letter == "A":
+            return f"[{notation.text_of_permutation(self.permutation)}]"
+        return f"<{'.'.join(map(str, self.word))}>"
+
+    def __reduce__(self) -> tuple[Any, tuple[FlagVariety, int]]:
+        return _class_at, (self.variety, self.index)
+
+    def __lt__(self, other: "SchubertClass") -> bool:
+        return (self.variety.sort_key, self.index) < (other.variety.sort_key, other.index)
+
+    @property
+    def permutation(self) -> tuple[int, ...]:
+        """One-line notation, values 1..n (type A)."""
+        return _permutations(self.variety)[self.index]
+
+    @property
+    def partition(self) -> tuple[int, ...]:
+        """The partition in the box of k rows and n - k columns, without trailing zeros (Grassmannians)."""
+        return _partitions(self.variety)[self.index]
+
+    @property
+    def string(self) -> str:
+        """The 01..m-string (type A): letter j tells in which step the value j first appears."""
+        return _strings(self.variety)[self.index]
+
+    @property
+    def word(self) -> tuple[int, ...]:
+        """The lexicographically first reduced word of the minimal representative (1-based nodes)."""
+        return orbit_of(self.variety).word(self.index)
+
+    @property
+    def descents(self) -> tuple[int, ...]:
+        """The nodes i with ``l(u s_i) < l(u)``, a subset of the marked nodes; in type A the descents of the permutation."""
+        return _descents(self.variety)[self.index]
+
+    @property
+    def dual(self) -> "SchubertClass":
+        """The Poincare dual class: the minimal representative of ``w0 u W_P``."""
+        return self.variety.classes[int(dual_indices(self.variety.kind, self.variety.marked)[self.index])]
+
+
+def Fl(*steps: int, n: int | None = None) -> FlagVariety:
+    """``Fl(1, 3, n=4)`` is ``Fl(1,3;4)``: flags of subspaces of dimensions 1 and 3 in C^4; ``Fl(4)`` is the complete flags.
+
+    >>> Fl(1, 3, n=4), Fl(3)
+    (FlagVariety('Fl(1,3;4)'), FlagVariety('Fl(3)'))
+    """
+    if n is None:
+        if len(steps) != 1:
+            raise NotationError(f"expected n=, as in Fl(1, 3, n=4), got Fl{steps}; Fl(4) alone means complete flags")
+        (n,) = notation.read_integers("n", steps)
+        steps = tuple(range(1, n))
+    return _of(*_type_a(notation.read_integers("steps", steps), *notation.read_integers("n", (n,))))
+
+
+def Gr(k: int, n: int) -> FlagVariety:
+    """The Grassmannian of k-planes in C^n.
+
+    >>> Gr(2, 4).q_degrees
+    (4,)
+    """
+    return Fl(k, n=n)
+
+
+def orbit_of(X: FlagVariety) -> Orbit:
+    """The arrays behind the classes.
+
+    Raises:
+        OutOfReach: more than ``MOST_CLASSES`` classes.
+    """
+    count = number_of_cosets(X.kind, X.marked)
+    if count > MOST_CLASSES:
+        raise OutOfReach(f"expected a variety with at most {MOST_CLASSES:,} Schubert classes, got {X.name} with {count:,}")
+    return orbit(X.kind, X.marked)
+
+
+def _type_a(steps: tuple[int, ...], n: int) -> tuple[CartanType, tuple[int, ...]]:
+    """Check the steps of ``Fl(steps; n)``."""
+    if n < 2:
+        raise NotationError(f"expected n of 2 or more, got n={n}")
+    if not steps:
+        raise NotationError(f"expected at least one step between 1 and {n - 1}, got none")
+    for before, step in zip((0, *steps), steps, strict=False):
+        if not before < step < n:
+            raise NotationError(f"expected rising steps between 1 and {n - 1}, got step {step} in Fl({','.join(map(str, steps))};{n})")
+    return CartanType("A", n - 1), steps
+
+
+_NAMES = re.compile(
+    r"""Fl\((?P<complete>\d+)\) | Fl\((?P<steps>\d+(,\d+)*);(?P<n>\d+)\) | Gr\((?P<k>\d+),(?P<m>\d+)\) | P\^(?P<dim>\d+)
+    | (?P<letter>[A-G])(?P<rank>\d+)/(?P<parabolic>B|P\d+(,\d+)*)""",
+    re.VERBOSE,
+)
+
+
+@lru_cache(maxsize=4096)
+def _parse(name: str) -> tuple[CartanType, tuple[int, ...]]:
+    """The Cartan type and marked nodes of a name."""
+    found = _NAMES.fullmatch(name.replace(" ", "")) if isinstance(name, str) else None
+    if not found:
+        raise NotationError(f"expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3' or 'A3/P1,3', got {name!r}")
+    if found["complete"]:
+        n = int(found["complete"])
+        return _type_a(tuple(range(1, n)), n)
+    if found["steps"]:
+        return _type_a(tuple(map(int, found["steps"].split(","))), int(found["n"]))
+    if found["k"]:
+        return _type_a((int(found["k"]),), int(found["m"]))
+    if found["dim"]:
+        return _type_a((1,), int(found["dim"]) + 1)
+    kind = CartanType(found["letter"], int(found["rank"]))
+    if found["parabolic"] == "B":
+        return kind, tuple(range(1, kind.rank + 1))
+    marked = tuple(map(int, found["parabolic"][1:].split(",")))
+    for before, node in zip((0, *marked), marked, strict=False):
+        if not before < node <= kind.rank:
+            raise NotationError(f"expected rising nodes between 1 and {kind.rank}, got node {node} in {name!r}")
+    return kind, marked
+
+
+@lru_cache(maxsize=None)
+def _of(kind: CartanType, marked: tuple[int, ...]) -> FlagVariety:
+    """The one object for a type and its marked nodes."""
+    dim = sum(any(root[i - 1] for i in marked) for root, _ in positive_roots(kind))
+    X = object.__new__(FlagVariety)
+    store = object.__setattr__
+    store(X, "kind", kind)
+    store(X, "rank", kind.rank)
+    store(X, "marked", marked)
+    store(X, "n", kind.rank + 1)
+    store(X, "steps", marked)
+    store(X, "dim", dim)
+    store(X, "q_degrees", tuple(_q_degree(kind, marked, i) for i in marked))
+    store(X, "name", _name(kind, marked))
+    store(X, "sort_key", (kind.rank, len(marked), dim, kind.letter, marked))
+    return X
+
+
+def _q_degree(kind: CartanType, marked: tuple[int, ...], node: int) -> int:
+    """``deg q_i = <2 rho - 2 rho_P, alpha_i^vee>``: the sum over the roots outside the Levi of ``<alpha, alpha_i^vee>``."""
+    matrix = cartan_matrix(kind)
+    return sum(
+        sum(a * matrix[j][node - 1] for j, a in enumerate(root))
+        for root, _ in positive_roots(kind)
+        if any(root[i - 1] for i in marked)
+    )
+
+
+def _name(kind: CartanType, marked: tuple[int, ...]) -> str:
+    """The usual name."""
+    n = kind.rank + 1
+    if kind.letter != "A":
+        return f"{kind}/B" if len(marked) == kind.rank else f"{kind}/P{','.join(map(str, marked))}"
+    if len(marked) == 1:
+        return f"Gr({marked[0]},{n})"
+    if len(marked) == kind.rank:
+        return f"Fl({n})"
+    return f"Fl({','.join(map(str, marked))};{n})"
+
+
+@lru_cache(maxsize=None)
+def _classes(X: FlagVariety) -> tuple[SchubertClass, ...]:
+    """The classes, made once: identity is equality, so nothing here may ever be made a second time."""
+    made = []
+    store = object.__setattr__
+    for index, length in enumerate(orbit_of(X).lengths.tolist()):
+        u = object.__new__(SchubertClass)
+        store(u, "variety", X)
+        store(u, "index", index)
+        store(u, "length", length)
+        made.append(u)
+    return tuple(made)
+
+
+def _class_at(X: FlagVariety, index: int) -> SchubertClass:
+    return X.classes[index]
+
+
+@lru_cache(maxsize=None)
+def _levels(X: FlagVariety) -> dict[int, tuple[SchubertClass, ...]]:
+    return {length: tuple(level) for length, level in groupby(X.classes, key=lambda u: u.length)}
+
+
+@lru_cache(maxsize=None)
+def _permutations(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
+    if X.kind.letter != "A":
+        raise NotationError(f"expected a variety of type A, got {X.name}: its classes have no permutation; use .word")
+    return tuple(map(tuple, one_lines(orbit_of(X).weights, X.marked).tolist()))
+
+
+@lru_cache(maxsize=None)
+def _permutation_index(X: FlagVariety) -> dict[tuple[int, ...], int]:
+    return {w: index for index, w in enumerate(_permutations(X))}
+
+
+@lru_cache(maxsize=None)
+def _partitions(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
+    if not X.is_grassmannian:
+        raise NotationError(f"expected a Grassmannian, got {X.name}: its classes have no partition; use .permutation")
+    return tuple(notation.partition_of(w, X.marked[0]) for w in _permutations(X))
+
+
+@lru_cache(maxsize=None)
+def _strings(X: FlagVariety) -> tuple[str, ...]:
+    return tuple(notation.string_of(w, X.marked) for w in _permutations(X))
+
+
+@lru_cache(maxsize=None)
+def _descents(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
+    images = root_images(X.kind, X.marked)
+    simple = {root.index(1) + 1: j for j, (root, _) in enumerate(positive_roots(X.kind)) if sum(root) == 1}
+    return tuple(tuple(i for i in X.marked if row[simple[i]] < 0) for row in images.tolist())
