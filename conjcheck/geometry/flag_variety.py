@@ -15,7 +15,7 @@ import numpy as np
 from conjcheck.errors import NotationError, OutOfReach
 from conjcheck.geometry import notation
 from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
-from conjcheck.geometry.weyl import Orbit, dual_indices, number_of_cosets, one_lines, orbit, root_images
+from conjcheck.geometry.weyl import Orbit, dual_indices, number_of_cosets, one_lines, orbit, weight_images
 
 __all__ = ["MOST_CLASSES", "Degree", "Fl", "FlagVariety", "Gr", "SchubertClass"]
 
@@ -390,6 +390,10 @@ def _strings(X: FlagVariety) -> tuple[str, ...]:
 
 @lru_cache(maxsize=None)
 def _descents(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
-    images = root_images(X.kind, X.marked)
-    simple = {root.index(1) + 1: j for j, (root, _) in enumerate(positive_roots(X.kind)) if sum(root) == 1}
-    return tuple(tuple(i for i in X.marked if row[simple[i]] < 0) for row in images.tolist())
+    """``u s_i`` has the weight ``u lambda_P - u alpha_i``; i is a descent when that class is shorter."""
+    whole, images = orbit_of(X), weight_images(X.kind, X.marked)
+    matrix = np.array(cartan_matrix(X.kind), dtype=np.int64)
+    shorter = [
+        whole.lengths[whole.locate(whole.weights - np.einsum("k,nkj->nj", matrix[i - 1], images))] < whole.lengths for i in X.marked
+    ]
+    return tuple(tuple(i for i, falls in zip(X.marked, row, strict=True) if falls) for row in zip(*shorter, strict=True))

@@ -1,4 +1,4 @@
-"""Minimal coset representatives W^P as an orbit of weights: lengths, words, images of roots, in one fixed order.
+"""Minimal coset representatives W^P as an orbit of weights: lengths, words, images of weights, in one fixed order.
 
 ``W^P`` is the orbit of ``lambda_P``, the sum of the marked fundamental weights: the representative ``u`` is found as the
 weight ``u lambda_P`` (integer coordinates in the fundamental weights). Left multiplication by ``s_i`` reflects the weight.
@@ -6,6 +6,7 @@ Everything is exact: 64-bit integers that stay far below their bound, because th
 ``<lambda_P, highest coroot>``.
 """
 
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
@@ -14,7 +15,18 @@ from numpy.typing import NDArray
 
 from conjcheck.geometry.cartan import CartanType, cartan_matrix, opposition, positive_roots
 
-__all__ = ["Orbit", "dual_indices", "number_of_cosets", "orbit", "root_images", "roots"]
+__all__ = [
+    "Ints",
+    "Orbit",
+    "dual_indices",
+    "number_of_cosets",
+    "one_lines",
+    "orbit",
+    "reflected_by_word",
+    "roots",
+    "weight_drops",
+    "weight_images",
+]
 
 Ints = NDArray[np.int64]
 
@@ -160,26 +172,45 @@ def roots(kind: CartanType) -> tuple[Ints, Ints]:
 
 
 @lru_cache(maxsize=16)
-def root_images(kind: CartanType, marked: tuple[int, ...]) -> Ints:
-    """The images ``u(alpha)``: entry ``[u, a]`` is ``j`` for the positive root with index j, ``-1 - j`` for its negative."""
+def weight_images(kind: CartanType, marked: tuple[int, ...]) -> Ints:
+    """The images ``u omega_k`` of the fundamental weights, ``(N, rank, rank)``: entry ``[u, k - 1]`` is one weight."""
     matrix = np.array(cartan_matrix(kind), dtype=np.int64)
-    all_roots, _ = roots(kind)
-    index = {tuple(root): j for j, root in enumerate(all_roots.tolist())}
-    moves = []
-    for i in range(kind.rank):
-        moved = all_roots.copy()
-        moved[:, i] -= all_roots @ matrix[:, i]
-        images = [index[tuple(root)] if min(root) >= 0 else -1 - index[tuple(-x for x in root)] for root in moved.tolist()]
-        moves.append(np.array(images + [-1 - j for j in reversed(images)], dtype=np.int64))
     whole = orbit(kind, marked)
-    result = np.empty((len(whole.lengths), len(all_roots)), dtype=np.int64)
-    result[0] = np.arange(len(all_roots))
+    images = np.empty((len(whole.lengths), kind.rank, kind.rank), dtype=np.int64)
+    images[0] = np.eye(kind.rank, dtype=np.int64)
+    for mine, parents, i in _steps(whole):
+        before = images[parents]
+        images[mine] = before - before[:, :, i, None] * matrix[i]
+    return images
+
+
+@lru_cache(maxsize=16)
+def weight_drops(kind: CartanType, marked: tuple[int, ...]) -> Ints:
+    """``omega_k - u omega_k`` in simple roots, ``(N, rank, rank)``: entry ``[u, k - 1, i - 1]`` is the coefficient of ``alpha_i``."""
+    whole, images = orbit(kind, marked), weight_images(kind, marked)
+    drops = np.zeros_like(images)
+    for mine, parents, i in _steps(whole):
+        drops[mine] = drops[parents]
+        drops[mine, :, i] += images[parents][:, :, i]
+    return drops
+
+
+def _steps(whole: Orbit) -> Iterator[tuple[Ints, Ints, int]]:
+    """Walk the orbit upwards: ``(indices, their parents, i)`` with ``u = s_{i+1} parent``, every parent before its children."""
     for length in range(1, int(whole.lengths[-1]) + 1):
         level = np.flatnonzero(whole.lengths == length)
-        for i in range(kind.rank):
+        for i in range(whole.weights.shape[1]):
             mine = level[whole.letters[level] == i + 1]
-            result[mine] = moves[i][result[whole.parents[mine]]]
-    return result
+            if len(mine):
+                yield mine, whole.parents[mine], i
+
+
+def reflected_by_word(kind: CartanType, weights: Ints, word: Sequence[int]) -> Ints:
+    """Apply ``s_i1 ... s_il`` to weights ``(M, rank)``: the last letter first."""
+    matrix = np.array(cartan_matrix(kind), dtype=np.int64)
+    for i in reversed(word):
+        weights = weights - weights[:, i - 1, None] * matrix[i - 1]
+    return weights
 
 
 @lru_cache
