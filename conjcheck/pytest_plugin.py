@@ -1,0 +1,182 @@
+"""The pytest plug-in: a thin face. Every conjecture becomes a node with the items recorded, laws, survey and probe[n=...].
+
+This module is imported by every pytest run on the machine, so it imports only the standard library and pytest; the work is
+imported when the first conjecture is collected.
+"""
+
+from __future__ import annotations
+
+import json
+import random
+import sys
+from typing import TYPE_CHECKING, Any
+
+import pytest
+
+if TYPE_CHECKING:
+    from collections.abc import Generator
+    from pathlib import Path
+
+_FOLDERS = "conjcheck_folders"
+_STATE = pytest.StashKey[Any]()
+_LINES = pytest.StashKey[list[dict[str, Any]]]()
+_EFFORTS = ("quick", "normal", "thorough")
+
+
+def pytest_addoption(parser: pytest.Parser) -> None:
+    """Options and ini keys; the command line wins over the ini file."""
+    group = parser.getgroup("conjcheck", "conjcheck: candidate rules for quantum Schubert calculus")
+    group.addoption(
+        "--conjcheck-effort",
+        choices=_EFFORTS,
+        help="how much work goes into each conjecture (default: the ini key conjcheck_effort, else normal)",
+    )
+    group.addoption(
+        "--conjcheck-budget",
+        type=float,
+        metavar="SECONDS",
+        help="seconds for the survey of each conjecture (default: the ini key conjcheck_budget, else 10 at normal effort)",
+    )
+    group.addoption(
+        "--conjcheck-call-limit",
+        type=float,
+        metavar="SECONDS",
+        help="seconds one call of a rule may take (default: the ini key conjcheck_call_limit, else 10)",
+    )
+    group.addoption("--conjcheck-case", metavar="CASE", help="compare only this case (or row), written as in a report")
+    group.addoption("--conjcheck-cross-check", action="store_true", help="compute every product of the oracle in two ways")
+    group.addoption("--conjcheck-record", action="store_true", help="write refutations to records/<name>.json beside the plug-in")
+    group.addoption("--conjcheck-installed", action="store_true", help="also collect the conjectures offered by installed packages")
+    parser.addini(_FOLDERS, "folders whose .py files are plug-ins, relative to the root directory", type="args", default=["conjectures"])
+    parser.addini("conjcheck_effort", "quick, normal or thorough", default="normal")
+    parser.addini("conjcheck_budget", "seconds for the survey of each conjecture", default="")
+    parser.addini("conjcheck_call_limit", "seconds one call of a rule may take", default="10")
+
+
+def pytest_configure(config: pytest.Config) -> None:
+    """Choose the seed of the run, once, and pass the folders of installed plug-ins to the collection."""
+    given = config.getoption("--hypothesis-seed", None)
+    worker = getattr(config, "workerinput", {})
+    config.stash[_STATE] = {
+        "seed": worker.get("conjcheck_seed", given if given is not None else random.randrange(2**32)),  # noqa: S311
+        "examinations": {},
+    }
+    config.stash[_LINES] = []
+    effort = config.getini("conjcheck_effort")
+    if effort not in _EFFORTS:
+        raise pytest.UsageError(f"expected conjcheck_effort to be one of {', '.join(_EFFORTS)}, got {effort!r}")
+    for key in ("conjcheck_budget", "conjcheck_call_limit"):
+        _seconds(config, key)
+    if config.getoption("--conjcheck-installed") and not worker:
+        from conjcheck.conjecture.discover import installed_files
+
+        config.args.extend(str(path) for path in installed_files())
+
+
+@pytest.hookimpl(optionalhook=True)
+def pytest_configure_node(node: Any) -> None:
+    """Under xdist, every worker draws with the seed of the controller."""
+    node.workerinput["conjcheck_seed"] = node.config.stash[_STATE]["seed"]
+
+
+def _seconds(config: pytest.Config, key: str) -> float | None:
+    """A number of seconds from the command line or the ini file."""
+    given = config.getoption(f"--{key.replace('_', '-')}")
+    text = str(given) if given is not None else config.getini(key)
+    if text == "":
+        return None
+    try:
+        seconds = float(text)
+    except ValueError:
+        seconds = 0.0
+    if not seconds > 0:
+        raise pytest.UsageError(f"expected a number of seconds above 0 for {key}, got {text!r}")
+    return seconds
+
+
+def pytest_report_header(config: pytest.Config) -> str | None:
+    """The seed of the run, so that it can be repeated."""
+    import conjcheck
+
+    seed = config.stash[_STATE]["seed"]
+    return f"conjcheck {conjcheck.__version__}: seed {seed} (repeat with --hypothesis-seed={seed})"
+
+
+# -- collection ----------------------------------------------------------------------------------------------------------
+
+
+def _is_plugin_file(path: Path, config: pytest.Config) -> bool:
+    """A .py file in a folder of conjectures; names with a leading underscore are helpers."""
+    if path.suffix != ".py" or path.name.startswith("_") or path.name == "conftest.py":
+        return False
+    return any(config.rootpath.joinpath(folder).resolve() in path.resolve().parents for folder in config.getini(_FOLDERS))
+
+
+def pytest_collect_file(file_path: Path, parent: pytest.Collector) -> pytest.Module | None:
+    """Plug-in files that pytest would not take by itself."""
+    if not _is_plugin_file(file_path, parent.config) or parent.session.isinitpath(file_path):
+        return None
+    if any(file_path.match(pattern) for pattern in parent.config.getini("python_files")):
+        return None
+    return pytest_pycollect_makemodule(file_path, parent)
+
+
+def pytest_pycollect_makemodule(module_path: Path, parent: pytest.Collector) -> pytest.Module | None:
+    """The module of a plug-in file."""
+    if not _is_plugin_file(module_path, parent.config):
+        return None
+    from conjcheck.pytest_items import PluginFile
+
+    return PluginFile.from_parent(parent, path=module_path)  # type: ignore[no-any-return]
+
+
+@pytest.hookimpl(tryfirst=True)
+def pytest_pycollect_makeitem(collector: pytest.Module | pytest.Class, name: str, obj: object) -> Any:
+    """A conjecture in any collected module becomes a node, once, in the module it was written in."""
+    declare = sys.modules.get("conjcheck.conjecture.declare")
+    if declare is None or not isinstance(obj, declare.Conjecture):
+        return None
+    if obj.rule.__module__ != getattr(collector.obj, "__name__", None) or name != obj.name:
+        return []
+    from conjcheck.pytest_items import ConjectureNode
+
+    return [ConjectureNode.from_parent(collector, name=name, conjecture=obj)]
+
+
+# -- reports --------------------------------------------------------------------------------------------------------------
+
+
+@pytest.hookimpl(wrapper=True)
+def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, pytest.TestReport, pytest.TestReport]:
+    """Let passing reports of refuted rules be seen in the summary: they travel as a section."""
+    report = yield
+    return report
+
+
+def pytest_runtest_logreport(report: pytest.TestReport) -> None:
+    """Collect the outcomes; under xdist they arrive here too, as text."""
+    if report.when == "call" and _config is not None:
+        for key, value in report.user_properties:
+            if key == "conjcheck":
+                _config.stash[_LINES].append(json.loads(str(value)))
+
+
+_config: pytest.Config | None = None
+
+
+def pytest_sessionstart(session: pytest.Session) -> None:
+    """Remember whose session this is: ``pytest_runtest_logreport`` is not told."""
+    global _config  # noqa: PLW0603
+    _config = session.config
+
+
+def pytest_terminal_summary(terminalreporter: Any, config: pytest.Config) -> None:
+    """One line per conjecture; nothing if none ran."""
+    lines = config.stash[_LINES]
+    if not lines:
+        return
+    from conjcheck.report.text import summary_table
+
+    terminalreporter.section("conjectures")
+    for line in summary_table(lines):
+        terminalreporter.write_line(line)

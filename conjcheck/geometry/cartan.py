@@ -8,9 +8,10 @@ roots, coroots tuples of coefficients in the simple coroots, weights tuples of c
 from dataclasses import dataclass
 from functools import lru_cache
 
-from conjcheck.errors import NotationError
+from conjcheck.errors import NotationError, OutOfReach
 
 __all__ = [
+    "LARGEST_RANK",
     "CartanType",
     "automorphisms",
     "cartan_matrix",
@@ -20,6 +21,9 @@ __all__ = [
 ]
 
 Vector = tuple[int, ...]
+
+LARGEST_RANK = 200
+"""All positive roots are listed, about ``rank^2`` tuples of that length: beyond this rank it would only take memory."""
 
 _SMALLEST_RANK = {"A": 1, "B": 2, "C": 2, "D": 4, "E": 6, "F": 4, "G": 2}
 _LARGEST_RANK = {"E": 8, "F": 4, "G": 2}
@@ -31,16 +35,21 @@ class CartanType:
 
     Raises:
         NotationError: no such type; ``B`` and ``C`` start at rank 2, ``D`` at rank 4.
+        OutOfReach: a rank above ``LARGEST_RANK``.
     """
 
     letter: str
     rank: int
 
     def __post_init__(self) -> None:
+        if type(self.rank) is not int:
+            raise NotationError(f"expected an int for the rank, got rank={self.rank!r}")
         low = _SMALLEST_RANK.get(self.letter)
         if low is None:
             raise NotationError(f"expected a Cartan letter A, B, C, D, E, F or G, got letter={self.letter!r}")
         high = _LARGEST_RANK.get(self.letter)
+        if self.rank > LARGEST_RANK:
+            raise OutOfReach(f"expected a rank of at most {LARGEST_RANK}, got rank={self.rank}")
         if self.rank < low or (high is not None and self.rank > high):
             span = f"from {low} to {high}" if high else f"of {low} or more"
             raise NotationError(f"expected a rank {span} for type {self.letter}, got rank={self.rank}")

@@ -16,7 +16,7 @@ from conjcheck.errors import DifferentVarieties, NotationError
 from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
 from conjcheck.geometry.notation import read_integers
 
-__all__ = ["Case", "Row", "count_cases", "degrees_of_total", "outcomes", "parse_class", "read_degree", "rows"]
+__all__ = ["Case", "Row", "count_cases", "degrees_of_total", "outcomes", "parse_class", "place_in_row", "read_degree", "rows"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,7 +53,7 @@ class Row:
     @classmethod
     def parse(cls, text: str) -> "Row":
         """The row written as ``Fl(1,3;4): [2143] * [3241]``."""
-        found = re.fullmatch(r"\s*(\S.*?)\s*:\s*(.+?)\s*\*\s*(.+?)\s*", text)
+        found = re.fullmatch(r"\s*(\S.*?)\s*:\s*(.+?)\s*\*\s*(.+?)\s*", text) if isinstance(text, str) else None
         if not found:
             raise NotationError(f"expected a row such as 'Gr(2,4): (2,1) * (1)', got {text!r}")
         X = FlagVariety(found[1])
@@ -88,7 +88,7 @@ class Case:
     @property
     def sort_key(self) -> tuple[Any, ...]:
         """The order "smaller" among cases."""
-        return (*self.row.sort_key, sum(self.d), self.d, self.w.index)
+        return (*self.row.sort_key, *place_in_row((self.w, self.d)))
 
     @property
     def obeys_degree_axiom(self) -> bool:
@@ -107,18 +107,27 @@ class Case:
     @classmethod
     def parse(cls, text: str) -> "Case":
         """The case written as ``Fl(1,3;4): [2143] * [3241] -> [4123], q^(1,0)``; without ``q^`` the degree is 0."""
-        found = re.fullmatch(r"(.+?)->\s*(\S+?)\s*(?:,\s*q\^\(([\d,\s]*)\)\s*)?", text.strip())
+        shape = r"(.+?)->\s*(\S.*?)\s*(?:,\s*q\^\(\s*(\d+(?:\s*,\s*\d+)*)\s*\)\s*)?"
+        found = re.fullmatch(shape, text.strip()) if isinstance(text, str) else None
         if not found:
             raise NotationError(f"expected a case such as 'Gr(2,4): (2,1) * (2,1) -> (2), q^(1)', got {text!r}")
         row = Row.parse(found[1])
         if found[3] is None:
             d: Degree = (0,) * len(row.X.marked)
         else:
-            d = tuple(int(x) for x in found[3].replace(" ", "").split(",") if x)
+            d = tuple(map(int, found[3].split(",")))
         return cls(row.X, row.u, row.v, parse_class(row.X, found[2]), d)
 
 
+def place_in_row(outcome: tuple[SchubertClass, Degree]) -> tuple[int, Degree, int]:
+    """The order "smaller" inside a row, on outcomes ``(w, d)``."""
+    w, d = outcome
+    return sum(d), d, w.index
+
+
 def _check_home(X: FlagVariety, name: str, u: SchubertClass) -> None:
+    if not isinstance(X, FlagVariety):
+        raise NotationError(f"expected a flag variety for X, got X={X!r}; make one with FlagVariety('Gr(2,4)')")
     if not isinstance(u, SchubertClass):
         raise NotationError(f"expected a Schubert class of {X} for {name}, got {name}={u!r}; make one with X.schubert(...)")
     if u.variety is not X:
@@ -143,15 +152,16 @@ def read_degree(X: FlagVariety, d: Iterable[int]) -> Degree:
 
 def parse_class(X: FlagVariety, text: str) -> SchubertClass:
     """The class of X written as ``str(u)``: ``(2,1)``, ``[2143]``, ``[10.2.1...]`` or ``<1.3.2>``; either of them in type A."""
-    body = text.strip()
-    found = re.fullmatch(r"\((?P<partition>[\d,\s]*)\)|\[(?P<permutation>[\d.\s]+)\]|<(?P<word>[\d.\s]*)>", body)
-    if not found:
+    if not isinstance(text, str) or not (found := _CLASS.fullmatch(body := re.sub(r"\s", "", text))):
         raise NotationError(f"expected a class such as (2,1), [2143] or <1.3.2>, got {text!r}")
     if found["permutation"] is not None:
-        letters = found["permutation"].replace(" ", "")
+        letters = found["permutation"]
         return X.schubert(permutation=tuple(map(int, letters.split(".") if "." in letters else letters)))
     numbers = tuple(int(x) for x in re.findall(r"\d+", body))
     return X.schubert(word=numbers) if found["word"] is not None else X.schubert(partition=numbers)
+
+
+_CLASS = re.compile(r"\((?P<partition>(\d+(,\d+)*)?)\)|\[(?P<permutation>\d+(\.\d+)*)\]|<(?P<word>(\d+(\.\d+)*)?)>")
 
 
 @lru_cache(maxsize=4096)
@@ -183,7 +193,7 @@ def outcomes(X: FlagVariety, total: int, *, classical: bool = False) -> tuple[tu
         for d in ([none] if classical else degrees_of_total(X, weight))
         for w in X.of_length(total - weight)
     ]
-    return tuple(sorted(found, key=lambda pair: (sum(pair[1]), pair[1], pair[0].index)))
+    return tuple(sorted(found, key=place_in_row))
 
 
 @lru_cache(maxsize=65536)

@@ -82,7 +82,7 @@ def StepFlags(m: int) -> Family:
     """All ``Fl(k1, ..., km; n)`` with exactly m steps.
 
     >>> [X.name for X in StepFlags(2).up_to(4)]
-    ['Fl(3)', 'Fl(1,2;4)', 'Fl(2,3;4)', 'Fl(1,3;4)']
+    ['Fl(3)', 'Fl(1,2;4)', 'Fl(1,3;4)', 'Fl(2,3;4)']
     """
     if not isinstance(m, int) or m < 1:
         raise DeclarationError(f"expected a number of steps of 1 or more, got m={m!r}")

@@ -88,6 +88,11 @@ class FlagVariety:
         return self.kind.letter == "A" and len(self.marked) == 1
 
     @property
+    def number_of_classes(self) -> int:
+        """The number of Schubert classes, without enumerating them."""
+        return number_of_cosets(self.kind, self.marked)
+
+    @property
     def classes(self) -> tuple["SchubertClass", ...]:
         """All Schubert classes by length, then lexicographically (type A: one-line notation)."""
         return _classes(self)
@@ -251,7 +256,7 @@ def orbit_of(X: FlagVariety) -> Orbit:
     Raises:
         OutOfReach: more than ``MOST_CLASSES`` classes.
     """
-    count = number_of_cosets(X.kind, X.marked)
+    count = X.number_of_classes
     if count > MOST_CLASSES:
         raise OutOfReach(f"expected a variety with at most {MOST_CLASSES:,} Schubert classes, got {X.name} with {count:,}")
     return orbit(X.kind, X.marked)

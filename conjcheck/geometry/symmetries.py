@@ -14,11 +14,11 @@ from functools import lru_cache
 import numpy as np
 
 from conjcheck.geometry.cartan import automorphisms, cominuscule_nodes
-from conjcheck.geometry.case import Case, Row
+from conjcheck.geometry.case import Case
 from conjcheck.geometry.flag_variety import FlagVariety, orbit_of
 from conjcheck.geometry.weyl import Ints, dual_indices, orbit, reflected_by_word, weight_drops
 
-__all__ = ["Seidel", "diagram_images", "orbit_of_case", "orbit_of_row", "seidel"]
+__all__ = ["Seidel", "diagram_images", "orbit_of_case", "seidel"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -86,22 +86,11 @@ def _sibling(X: FlagVariety, marked: tuple[int, ...]) -> FlagVariety:
     return FlagVariety(f"{X.kind}/P{','.join(map(str, marked))}")
 
 
-def orbit_of_row(row: Row) -> set[Row]:
-    """All rows of the same variety with the same constants, up to relabelling: swap, Seidel on u and v, diagram automorphisms."""
-    X, group = row.X, seidel(row.X)
-    pairs = {(row.u.index, row.v.index)}
-    for Y, images, _ in diagram_images(X):
-        if Y is X:
-            pairs |= {(int(images[u]), int(images[v])) for u, v in pairs}
-    pairs |= {(v, u) for u, v in pairs}
-    moved = {(int(a), int(b)) for u, v in pairs for a in group.images[:, u] for b in group.images[:, v]}
-    return {Row(X, X.classes[u], X.classes[v]) for u, v in moved}
-
-
-def orbit_of_case(case: Case) -> set[Case]:
+def orbit_of_case(case: Case, *, seidel_too: bool = True) -> set[Case]:
     """All cases of the same variety that have the same constant by laws 2, 3 and 4 (S3, diagram automorphisms, Seidel).
 
-    Closed under: permuting the three insertions ``u, v, w^vee``; automorphisms that fix X; Seidel elements on u and v.
+    Closed under: permuting the three insertions ``u, v, w^vee``; automorphisms that fix X; Seidel elements on u and v (these mix
+    degrees: leave them out with ``seidel_too=False`` to stay inside the classical ring).
     """
     X, group = case.X, seidel(case.X)
     dual = dual_indices(X.kind, X.marked)
@@ -112,7 +101,7 @@ def orbit_of_case(case: Case) -> set[Case]:
         u, v, w, d = todo.pop()
         near = [(v, u, w, d), (u, int(dual[w]), int(dual[v]), d)]
         near += [(int(f[u]), int(f[v]), int(f[w]), tuple(d[p] for p in places)) for f, places in homes]
-        for g in range(1, len(group.units)):
+        for g in range(1, len(group.units)) if seidel_too else ():
             # S_g * (sigma_u * sigma_v): the term q^d sigma_w becomes q^(d + shift(w) - shift(u)) sigma_(g w) in sigma_(g u) * sigma_v.
             moved = tuple(int(x) for x in np.array(d) + group.shifts[g, w] - group.shifts[g, u])
             if min(moved) >= 0:

@@ -166,9 +166,9 @@ def constant(
 
     >>> from conjcheck.geometry.flag_variety import Fl
     >>> X = Fl(3)
-    >>> s1, point = X.schubert(word=(1,)), X.point
-    >>> constant(point, s1, X.schubert(word=(1, 2)), (1, 0)), constant(s1, s1, X.identity, (1, 0))
-    (0, 1)
+    >>> s1, s12 = X.schubert(word=(1,)), X.schubert(word=(1, 2))
+    >>> constant(s1, X.point, s12, (1, 0)), constant(s1, s1, X.identity, (0, 1))
+    (1, 0)
 
     Arguments, errors and sources are those of :func:`product`.
     """

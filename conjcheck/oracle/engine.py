@@ -6,6 +6,7 @@ from typing import Any, Protocol
 
 import numpy as np
 
+from conjcheck.geometry.case import place_in_row
 from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
 from conjcheck.geometry.weyl import Ints
 
@@ -23,7 +24,7 @@ class Product(dict[tuple[SchubertClass, Degree], int]):
     @classmethod
     def of(cls, terms: Mapping[tuple[SchubertClass, Degree], int]) -> "Product":
         """The product with its terms put in order."""
-        return cls(sorted(terms.items(), key=lambda item: (sum(item[0][1]), item[0][1], item[0][0].index)))
+        return cls(sorted(terms.items(), key=lambda item: place_in_row(item[0])))
 
     def __repr__(self) -> str:
         return " + ".join(

@@ -17,7 +17,7 @@ orthogonality in Rietsch, Quantum cohomology rings of Grassmannians and total po
 from collections.abc import Iterator
 from functools import lru_cache
 from itertools import combinations
-from math import comb, prod
+from math import comb, isqrt, prod
 
 import numpy as np
 
@@ -43,7 +43,7 @@ def dimension(partition: tuple[int, ...], k: int) -> int:
 
 
 def _is_prime(p: int) -> bool:
-    return p > 1 and all(p % t for t in range(2, int(p**0.5) + 2) if t < p)
+    return p > 1 and all(p % t for t in range(2, isqrt(p) + 1))
 
 
 @lru_cache(maxsize=None)

@@ -28,7 +28,7 @@ __all__ = ["CompleteFlagRing", "complete_flag_ring"]
 Packed = dict[int, int]
 """Sum of terms ``c q^d sigma_w``, keyed by ``w.index + (packed d << shift)``."""
 
-_MOST_STORED_TERMS = 6_000_000
+_MOST_PRODUCTS = 150_000
 
 
 class CompleteFlagRing:
@@ -45,7 +45,7 @@ class CompleteFlagRing:
         self._moves: dict[tuple[int, int], list[tuple[int, int]]] = {}
         self._relations: dict[int, tuple[int, int, list[tuple[int, int]]]] = {}
         self._sweeps: dict[int, dict[int, Packed]] = {}
-        self._stored = 0
+        self._most_sweeps = max(_MOST_PRODUCTS // (len(X.classes) // X.n), 4)
         self._degrees: dict[int, Degree] = {}
         self._prepare_symmetry()
 
@@ -125,17 +125,15 @@ class CompleteFlagRing:
                 for term, count in known[key & mask].items():
                     total[term + power] = total.get(term + power, 0) - sign * count
             known[w] = {key: count for key, count in total.items() if count}
-            self._stored += len(known[w])
             stack.pop()
         return known[w]
 
     def _sweep(self, y: int) -> dict[int, Packed]:
-        """The products with ``sigma_y`` known so far; the oldest sweeps are forgotten when they grow too many."""
+        """The products with ``sigma_y`` known so far; only the sweeps used last are kept, so that memory is bounded."""
         known = self._sweeps.pop(y, None)
         if known is None:
-            while self._stored > _MOST_STORED_TERMS and self._sweeps:
-                oldest = self._sweeps.pop(next(iter(self._sweeps)))
-                self._stored -= sum(map(len, oldest.values()))
+            while len(self._sweeps) >= self._most_sweeps:
+                self._sweeps.pop(next(iter(self._sweeps)))
             known = {0: {y: 1}}
         self._sweeps[y] = known
         return known

@@ -1,0 +1,1 @@
+"""One outcome in several dresses."""

@@ -1,0 +1,1 @@
+"""The work: comparing rows, surveying, probing, minimising, explaining."""

@@ -1,0 +1,305 @@
+"""The nodes and items of the pytest plug-in: a file, a conjecture in it, and one item per part of its examination."""
+
+from __future__ import annotations
+
+import json
+import traceback
+from collections.abc import Callable, Iterator
+from dataclasses import replace
+from time import perf_counter
+from typing import Any
+
+import pytest
+from hypothesis import settings
+
+from conjcheck.conjecture.declare import Conjecture
+from conjcheck.conjecture.discover import conjectures_in
+from conjcheck.errors import ConjcheckError, RecordError
+from conjcheck.evidence.record import Counterexample, Record, parse_place, read_record, write_record
+from conjcheck.geometry.flag_variety import FlagVariety
+from conjcheck.pytest_plugin import _STATE, _seconds
+from conjcheck.report.text import text_report
+from conjcheck.testing.examine import EFFORTS, Examination
+from conjcheck.testing.limits import CallInterrupted, CallLimit
+from conjcheck.testing.outcome import Outcome
+from conjcheck.testing.probe import ProbeCount, gravest, probe_test
+
+__all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
+
+_IMPORT_LIMIT = 60.0
+
+
+class Verdict(Exception):
+    """A part that fails: its text is the whole report, its first line the verdict."""
+
+
+class PluginFile(pytest.Module):
+    """A file of conjectures. What goes wrong when it is imported is one failing item, and stops nothing else."""
+
+    def collect(self) -> Iterator[pytest.Item | pytest.Collector]:
+        """The conjectures, and whatever else pytest finds in the file."""
+        problem = self._import_problem()
+        if problem:
+            yield BrokenFile.from_parent(self, name="import", problem=problem)
+            return
+        found = list(super().collect())
+        if not found and not conjectures_in(self.obj):
+            text = (
+                "expected at least one @candidate or @claim in the file, got none; decorate a function, or give a file of helpers a name "
+                "that begins with _"
+            )
+            yield BrokenFile.from_parent(self, name="import", problem=text)
+        yield from found
+
+    def _import_problem(self) -> str:
+        """Import the file under a time limit; the text of what went wrong."""
+        with CallLimit(_IMPORT_LIMIT) as limit:
+            limit.started = perf_counter()
+            try:
+                _ = self.obj
+            except CallInterrupted:
+                return f"importing the file took longer than {_IMPORT_LIMIT:g} s"
+            except self.CollectError as error:
+                return str(error)
+            except (Exception, SystemExit) as error:
+                frames = [f for f in traceback.extract_tb(error.__traceback__) if f.filename == str(self.path)]
+                lines = traceback.format_list(frames) + traceback.format_exception_only(error)
+                return "".join(lines).rstrip()
+        return ""
+
+
+class BrokenFile(pytest.Item):
+    """The failing item of a file that cannot be used."""
+
+    def __init__(self, *, problem: str, **kwargs: Any) -> None:
+        super().__init__(**kwargs)
+        self.problem = problem
+
+    def runtest(self) -> None:
+        """Fail."""
+        last = self.problem.rstrip().splitlines()[-1].strip()
+        raise Verdict(f"cannot be imported: {self.path.name}: {last}\n\n{self.problem}")
+
+    def repr_failure(self, excinfo: pytest.ExceptionInfo[BaseException], style: Any = None) -> Any:
+        """The problem, without a traceback through pytest."""
+        return _plain(excinfo)
+
+    def reportinfo(self) -> tuple[Any, int | None, str]:
+        """Where it is."""
+        return self.path, 0, f"{self.path.name}: import"
+
+
+class ConjectureNode(pytest.Collector):
+    """One conjecture: collects its parts."""
+
+    def __init__(self, *, conjecture: Conjecture, **kwargs: Any) -> None:
+        super().__init__(**kwargs)
+        self.conjecture = conjecture
+        self.obj = conjecture
+
+    def collect(self) -> Iterator[pytest.Item]:
+        """The parts that apply."""
+        conjecture, config = self.conjecture, self.config
+        case = config.getoption("--conjcheck-case")
+        if case:
+            yield self._plain_item("case", lambda examination: examination.case(parse_place(case)))
+            return
+        try:
+            record = read_record(conjecture)
+        except RecordError as error:
+            yield BrokenFile.from_parent(self, name="record", problem=str(error))
+            return
+        if record.counterexamples:
+            yield self._plain_item("recorded", lambda examination: recorded(examination, record), expected=record)
+        if record.status == "refuted":
+            yield self._plain_item("survey", lambda examination: examination.survey(), expected=record)
+            return
+        if conjecture.role == "candidate":
+            yield self._drawing_item("laws", self._laws)
+        yield self._plain_item("survey", lambda examination: examination.survey())
+        levels = self.examination.levels()
+        for n, spaces in levels:
+            yield self._drawing_item(f"probe[n={n}]", self._probe(n, spaces, len(levels)))
+
+    @property
+    def examination(self) -> Examination:
+        """The examination that the parts share."""
+        config = self.config
+        shared: dict[Conjecture, Examination] = config.stash[_STATE]["examinations"]
+        if self.conjecture not in shared:
+            effort = EFFORTS[config.getoption("--conjcheck-effort") or config.getini("conjcheck_effort")]
+            budget = _seconds(config, "conjcheck_budget")
+            if budget:
+                effort = replace(effort, survey=budget)
+            shared[self.conjecture] = Examination(
+                self.conjecture,
+                effort,
+                call_limit=_seconds(config, "conjcheck_call_limit") or 10.0,
+                cross_check=config.getoption("--conjcheck-cross-check"),
+            )
+        return shared[self.conjecture]
+
+    def _plain_item(self, name: str, work: Callable[[Examination], Outcome], *, expected: Record | None = None) -> PartItem:
+        """A part without random draws."""
+
+        def run() -> None:
+            item.outcome = work(self.examination)
+
+        item: PartItem = PartItem.from_parent(self, name=name, callobj=run, expected=expected)
+        return item
+
+    def _drawing_item(self, name: str, part: Callable[[PartItem], tuple[Any, ...]]) -> PartItem:
+        """A part that draws: its test function is a Hypothesis test."""
+        item: PartItem
+
+        def check(row: Any, choice: int) -> None:
+            item.check(row, choice)
+
+        def spaces() -> list[FlagVariety]:
+            return item.spaces()
+
+        fixed = None if settings.default.derandomize or self.config.getoption("--hypothesis-seed", None) is not None else self._seed
+        test: Any = probe_test(check, spaces, self.conjecture, fixed_seed=fixed)
+        test.hypothesis.inner_test._hypothesis_internal_add_digest = f"{self.nodeid}::{name}".encode()
+        item = PartItem.from_parent(self, name=name, callobj=test, part=part)
+        return item
+
+    @property
+    def _seed(self) -> Any:
+        return self.config.stash[_STATE]["seed"]
+
+    def _laws(self, item: PartItem) -> tuple[Any, ...]:
+        examination, started = self.examination, perf_counter()
+        count = ProbeCount()
+        check = examination.law_check(started + examination.effort.laws, count)
+        return check, examination.small_spaces, lambda: examination.laws_agree(count, started), count
+
+    def _probe(self, n: int, spaces: list[FlagVariety], share: int) -> Callable[[PartItem], tuple[Any, ...]]:
+        def part(item: PartItem) -> tuple[Any, ...]:
+            examination, started = self.examination, perf_counter()
+            count = ProbeCount()
+            check = examination.probe_check(started + examination.effort.probe / share, count)
+            return (
+                check,
+                lambda: examination.unfinished(spaces),
+                lambda: examination.probe_agrees(n, spaces, count, started),
+                count,
+            )
+
+        return part
+
+    def reportinfo(self) -> tuple[Any, int | None, str]:
+        """Where the rule is written."""
+        return self.conjecture.file, self.conjecture.rule.__code__.co_firstlineno - 1, self.name
+
+
+def recorded(examination: Examination, record: Record) -> Outcome:
+    """Compute the counterexamples on record again, by the rule and by the oracle.
+
+    Raises:
+        RecordError: one of them refutes no more, or with other values.
+    """
+    outcome = None
+    for known in record.counterexamples:
+        outcome = examination.case(known.where)
+        found = outcome.finding
+        if found is None or found.status != "refuted":
+            what = "the rule and the oracle agree there now" if found is None else f"the rule is {found.status} there: {found.detail}"
+            raise RecordError(
+                f"stale record: expected {examination.conjecture.name} to be refuted at {known.where}, but {what}; "
+                "if the rule was repaired, remove the counterexample from its record"
+            )
+        if (found.rule, found.oracle) != (known.rule, known.oracle) and known.oracle is not None:
+            raise RecordError(
+                f"stale record: expected rule {known.rule} and oracle {known.oracle} at {known.where}, "
+                f"got rule {found.rule} and oracle {found.oracle}; record it anew with --conjcheck-record"
+            )
+    assert outcome is not None, "a record is only verified when it holds a counterexample"
+    return replace(outcome, part="recorded", scope=f"{len(record.counterexamples)} recorded counterexamples")
+
+
+class PartItem(pytest.Function):
+    """One part of an examination."""
+
+    def __init__(self, *, expected: Record | None = None, part: Any = None, **kwargs: Any) -> None:
+        super().__init__(**kwargs)
+        self.expected, self._part = expected, part
+        self.outcome: Outcome | None = None
+        self.check: Callable[[Any, int], None] = lambda row, choice: None
+        self.spaces: Callable[[], list[FlagVariety]] = list
+
+    @property
+    def node(self) -> ConjectureNode:
+        """The conjecture it belongs to."""
+        assert isinstance(self.parent, ConjectureNode)
+        return self.parent
+
+    def runtest(self) -> None:
+        """Run the part, work out what it finds, keep the outcome, and fail unless the status is as expected."""
+        examination = self.node.examination
+        if self._part is None:
+            super().runtest()
+        elif examination.failure:
+            self.outcome = examination.repeated(self.name)
+        else:
+            self._draw(examination)
+        outcome = self.outcome
+        assert outcome is not None, "every part ends in an outcome"
+        if self._part is not None:
+            outcome = replace(outcome, seed=str(self.config.stash[_STATE]["seed"]))
+        expected = self.expected is not None and outcome.status == "refuted" and self.expected.status == "refuted"
+        if expected:
+            outcome = replace(outcome, note="on record as refuted: this is the expected verdict")
+        elif self.expected is not None and self.expected.status == "refuted" and outcome.status == "agrees":
+            outcome = replace(outcome, note="on record as refuted; the budget ended before the counterexample")
+            expected = True
+        self.outcome = outcome
+        self.user_properties.append(("conjcheck", json.dumps(outcome.as_json())))
+        text = text_report(outcome, replay=f"pytest '{self.node.nodeid}'")
+        if outcome.status == "agrees" or expected:
+            self.add_report_section("call", "conjcheck", text)
+        if outcome.status == "refuted" and self.config.getoption("--conjcheck-record"):
+            self._record(outcome)
+        if outcome.status != "agrees" and not expected:
+            raise Verdict(text)
+
+    def _draw(self, examination: Examination) -> None:
+        """Run the Hypothesis test of this item."""
+        started = perf_counter()
+        self.check, self.spaces, agrees, count = self._part(self)
+        try:
+            super().runtest()
+        except BaseException as error:
+            found = gravest(error)
+            if found is None:
+                raise
+            self.outcome = examination.work_out(found.finding, self.name, started, count.broken_law)
+        else:
+            self.outcome = agrees()
+
+    def _record(self, outcome: Outcome) -> None:
+        finding, conjecture = outcome.finding, self.node.conjecture
+        assert finding is not None, "a refutation has a finding"
+        minimal = outcome.minimum is not None and outcome.minimum.certified
+        new = Counterexample(finding.where, finding.rule, finding.oracle, minimal)
+        write_record(conjecture, read_record(conjecture).with_counterexample(new))
+
+    def repr_failure(self, excinfo: pytest.ExceptionInfo[BaseException], style: Any = None) -> Any:
+        """A verdict is its own report; anything else is shown as usual."""
+        if isinstance(excinfo.value, (Verdict, ConjcheckError)):
+            return _plain(excinfo)
+        return super().repr_failure(excinfo)
+
+    def reportinfo(self) -> tuple[Any, int | None, str]:
+        """Where the rule is written."""
+        file, line, name = self.node.reportinfo()
+        return file, line, f"{name}::{self.name}"
+
+
+def _plain(excinfo: pytest.ExceptionInfo[BaseException]) -> Any:
+    """The text of an exception as a report without traceback; its first line goes to the short summary."""
+    excinfo.value.__notes__ = []  # Hypothesis adds its own account of the example; ours is complete
+    shown = excinfo.getrepr(style="value")
+    if getattr(shown, "reprcrash", None) is not None:
+        shown.reprcrash.message = str(excinfo.value).splitlines()[0]
+    return shown

@@ -1,0 +1,174 @@
+"""The outcome in plain text: verdict first, then everything needed to believe it and to go on."""
+
+import shlex
+import textwrap
+
+from conjcheck.geometry.case import Case, Row
+from conjcheck.geometry.flag_variety import SchubertClass
+from conjcheck.oracle.engine import Product
+from conjcheck.testing.finding import Finding
+from conjcheck.testing.minimise import Layer
+from conjcheck.testing.outcome import Outcome, environment
+
+__all__ = ["describe_class", "summary_table", "text_report"]
+
+_WIDTH = 110
+_LABEL = 13
+_MOST_LINES = 8
+_MOST_TERMS = 30
+
+_REMEDIES = {
+    "crashed": "the rule raised; the end of the traceback is below",
+    "unstable": "a rule must be a function of its arguments alone: look for randomness, mutable defaults, used-up iterators",
+    "too-slow": "raise the limit with --conjcheck-call-limit, narrow the premise, or return the whole product from (X, u, v)",
+    "not-a-count": "return an int of 0 or more, or an iterable of distinct hashable objects",
+    "undefined": "state the domain as premise=, so that cases outside it are not compared",
+    "not-independent": "a rule may not use conjcheck's product, constant or table: a verdict would say nothing",
+}
+
+
+def text_report(outcome: Outcome, *, replay: str = "") -> str:
+    """The whole report of one outcome.
+
+    Args:
+        outcome: what was found.
+        replay: the command that repeats the part, without the case; the case is added.
+    """
+    finding = outcome.finding
+    lines = [outcome.verdict, ""]
+    if outcome.note:
+        lines += _entry("note", outcome.note)
+    if outcome.note.startswith("see "):
+        return "\n".join(lines)
+    if outcome.conjecture.statement:
+        lines += _entry("statement", outcome.conjecture.statement)
+    if finding is None:
+        lines += _entry("compared", outcome.scope)
+    else:
+        lines += _failure(outcome, finding)
+        if replay:
+            lines += _entry("replay", f"{replay} --conjcheck-case {shlex.quote(str(finding.where))}", wrap=False)
+        if outcome.cases or outcome.minimum:
+            lines += _entry("compared", outcome.scope)
+    lines += _entry("environment", environment() + (f"; seed {outcome.seed}" if outcome.seed else ""))
+    return "\n".join(lines)
+
+
+def _failure(outcome: Outcome, finding: Finding) -> list[str]:
+    """The lines about a failure."""
+    where = finding.where
+    lines = _entry("case" if isinstance(where, Case) else "row", str(where), wrap=False)
+    for name in ("u", "v", "w") if isinstance(where, Case) else ("u", "v"):
+        lines += _entry("", f"{name} = {describe_class(getattr(where, name))}", wrap=False)
+    if outcome.broken_law:
+        lines += _entry("law", f"broken without any oracle: {outcome.broken_law}")
+    if finding.status != "refuted":
+        lines += _entry("problem", finding.detail)
+        lines += _entry("remedy", _REMEDIES[finding.status])
+        if finding.trace:
+            lines += ["", *("    " + line for line in finding.trace.rstrip().splitlines()), ""]
+        return lines + _entry("minimal", _minimality(outcome))
+    if finding.rule is not None:
+        lines += _entry("rule", f"{finding.rule}")
+        if finding.objects is not None:
+            lines += _entry("objects", "; ".join(finding.objects) or "none")
+    if finding.oracle is not None:
+        lines += _entry("oracle", f"{finding.oracle}, confirmed by {outcome.confirmed_by}")
+    else:
+        lines += _entry("confirmed", outcome.confirmed_by)
+    if outcome.explanation:
+        lines += _entry("kind", ", ".join(outcome.explanation.kinds) or finding.detail)
+        if outcome.explanation.by_rule is not None:
+            asked = ", asked only where the oracle is not 0" if outcome.explanation.partial else ""
+            lines += _entry("product", f"by the rule{asked}: {_product(outcome.explanation.by_rule)}")
+        lines += _entry("" if outcome.explanation.by_rule is not None else "product", f"by the oracle: {_product(outcome.explanation.by_oracle)}")
+    lines += _entry("minimal", _minimality(outcome))
+    if outcome.layer:
+        lines += _layer(outcome.layer, finding.row)
+    return lines
+
+
+def _minimality(outcome: Outcome) -> str:
+    minimum = outcome.minimum
+    if minimum is None:
+        return "not looked at: only this case was compared"
+    if minimum.certified:
+        return f"yes: all {minimum.below:,} smaller cases were compared and agree"
+    return f"not certain: {minimum.reach}"
+
+
+def _layer(layer: Layer, row: Row) -> list[str]:
+    """The failures of the whole smallest space."""
+    pairs = f"{layer.pairs:,} failing ordered {'pair' if layer.pairs == 1 else 'pairs'} (u, v)"
+    cases = len(layer.findings)
+    orbits = f"{layer.orbits} {'orbit' if layer.orbits == 1 else 'orbits'} under the symmetries of {row.X}"
+    if layer.complete:
+        text = f"{pairs} among the {layer.size:,} of {row.X}: {cases:,} failing {'case' if cases == 1 else 'cases'} in {orbits}"
+    else:
+        text = f"at least {pairs} of {row.X}: {cases:,} failing {'case' if cases == 1 else 'cases'} in {orbits} among {layer.rows:,} rows"
+    lines = _entry("layer", text)
+    for finding in layer.findings[:_MOST_LINES]:
+        values = f": rule {finding.rule}, oracle {finding.oracle}" if finding.rule is not None else ""
+        lines += _entry("", str(finding.where).removeprefix(f"{row.X}: ") + values, wrap=False)
+    if cases > _MOST_LINES:
+        lines += _entry("", f"... {cases - _MOST_LINES:,} more")
+    return lines
+
+
+def describe_class(u: SchubertClass) -> str:
+    """A class in all its notations.
+
+    >>> from conjcheck.geometry.flag_variety import Gr
+    >>> describe_class(Gr(2, 4).schubert(partition=(2,)))
+    '(2)  permutation 1423, string 0110, word 3.2, length 2'
+    """
+    if u.variety.kind.letter != "A":
+        return f"{u}  length {u.length}"
+    one_line = "".join(map(str, u.permutation)) if u.variety.n <= 9 else ".".join(map(str, u.permutation))
+    permutation = f"permutation {one_line}, " if u.variety.is_grassmannian else ""
+    word = ".".join(map(str, u.word)) or "empty"
+    return f"{u}  {permutation}string {u.string}, word {word}, length {u.length}"
+
+
+def _product(product: Product) -> str:
+    if len(product) <= _MOST_TERMS:
+        return str(product)
+    shown = Product(list(product.items())[:_MOST_TERMS])
+    return f"{shown} + ... ({len(product) - _MOST_TERMS} more terms)"
+
+
+def _entry(label: str, text: str, *, wrap: bool = True) -> list[str]:
+    """One labelled entry, wrapped and indented."""
+    indent = " " * _LABEL
+    if not wrap:
+        return [f"{label:<{_LABEL}}{text}"]
+    return textwrap.wrap(
+        text, _WIDTH, initial_indent=f"{label:<{_LABEL}}", subsequent_indent=indent, break_long_words=False, break_on_hyphens=False
+    ) or [label]
+
+
+def summary_table(rows: list[dict[str, object]]) -> list[str]:
+    """The table at the end of a run: one line per conjecture, from the JSON forms of the outcomes of its parts.
+
+    Args:
+        rows: ``Outcome.as_json()`` of every part that ran, in order.
+    """
+    by_name: dict[str, list[dict[str, object]]] = {}
+    for row in rows:
+        by_name.setdefault(str(row["conjecture"]), []).append(row)
+    table = [("conjecture", "status", "rows", "cases", "nonzero", "seconds", "scope")]
+    for name, parts in by_name.items():
+        worst = next((p for p in parts if p["status"] != "agrees"), None)
+        survey = next((p for p in parts if p["part"] == "survey"), parts[0])
+        scope = f"{worst['where']} ({'minimal' if worst['minimal'] else 'not known to be minimal'})" if worst else str(survey["where"])
+        shown = [survey] if worst else [p for p in parts if p["part"] != "laws"]
+        totals = [sum(int(str(p[key])) for p in shown) for key in ("rows", "cases", "nonzero")]
+        seconds = sum(float(str(p["seconds"])) for p in parts)
+        status = str(worst["status"]) if worst else "agrees"
+        table.append((name, status, *(f"{total:,}" for total in totals), f"{seconds:.1f}", scope))
+    widths = [max(len(line[k]) for line in table) for k in range(len(table[0]) - 1)]
+    return [
+        "  ".join(cell.rjust(width) if 1 < k < 6 else cell.ljust(width) for k, (cell, width) in enumerate(zip(line, widths, strict=False)))
+        + f"  {line[-1]}"
+        for line in table
+    ]

@@ -1,0 +1,94 @@
+"""What a rule may answer: an exact count, or distinct objects that are counted."""
+
+from collections.abc import Iterable, Mapping
+from typing import Any
+
+__all__ = ["WrongAnswer", "count_of", "shown_objects", "truth_of"]
+
+_MOST_SHOWN = 12
+_MOST_OBJECTS = 1_000_000
+
+
+class WrongAnswer(Exception):
+    """The answer is no count; the message says what was expected, what came, what to do."""
+
+
+def count_of(answer: Any) -> int:
+    """The count an answer stands for: an integer of 0 or more (also of numpy or sympy), or distinct hashable objects.
+
+    Raises:
+        WrongAnswer: anything else.
+    """
+    count, _ = _counted(answer)
+    return count
+
+
+def shown_objects(answer: Any) -> tuple[str, ...] | None:
+    """The first objects of an answer as text; ``None`` if it is a number."""
+    _, objects = _counted(answer)
+    if objects is None:
+        return None
+    shown = tuple(repr(thing) for thing in objects[:_MOST_SHOWN])
+    return shown if len(objects) <= _MOST_SHOWN else (*shown, f"... {len(objects) - _MOST_SHOWN} more")
+
+
+def _counted(answer: Any) -> tuple[int, list[Any] | None]:
+    if type(answer) is int:
+        number = answer
+    elif (whole := _index(answer)) is not None:
+        number = whole
+    elif answer is None:
+        raise WrongAnswer("expected a count, got None; does the rule return on every path?")
+    elif isinstance(answer, (str, bytes, Mapping)) or not isinstance(answer, Iterable):
+        raise WrongAnswer(
+            f"expected an int of 0 or more or an iterable of objects, got {_kind(answer)} {answer!r}; a count is exact: return an int"
+        )
+    else:
+        return _distinct(answer)
+    if number < 0:
+        raise WrongAnswer(f"expected a count of 0 or more, got the negative number {number}")
+    return number, None
+
+
+def _index(answer: Any) -> int | None:
+    """The exact integer behind a number of any library, ``None`` if there is none (an array has the method, but no answer)."""
+    try:
+        return int(answer.__index__())
+    except (AttributeError, TypeError):
+        return None
+
+
+def _distinct(answer: Iterable[Any]) -> tuple[int, list[Any]]:
+    objects, seen = [], set()
+    for place, thing in enumerate(answer, start=1):
+        try:
+            known = thing in seen
+        except TypeError:
+            raise WrongAnswer(
+                f"expected hashable objects, got object {place} = {thing!r} of type {type(thing).__name__}; return tuples instead"
+            ) from None
+        if known:
+            raise WrongAnswer(f"expected distinct objects, got {thing!r} a second time, as object {place}")
+        seen.add(thing)
+        objects.append(thing)
+        if place > _MOST_OBJECTS:
+            raise WrongAnswer(f"expected at most {_MOST_OBJECTS:,} objects, got more; return their number instead")
+    return len(objects), objects
+
+
+def truth_of(answer: Any) -> bool:
+    """The truth value that a claim returned.
+
+    Raises:
+        WrongAnswer: not a ``bool`` (of Python, numpy or sympy).
+    """
+    if answer is True or answer is False:
+        return bool(answer)
+    if type(answer).__name__ in ("bool", "bool_", "BooleanTrue", "BooleanFalse"):
+        return bool(answer)
+    raise WrongAnswer(f"expected True or False from a claim, got {_kind(answer)} {answer!r}")
+
+
+def _kind(answer: Any) -> str:
+    name = type(answer).__name__
+    return f"{'an' if name[0] in 'aeiouAEIOU' else 'a'} {name}"

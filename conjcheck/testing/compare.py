@@ -1,0 +1,364 @@
+"""The one way to compare: a rule against the oracle, a row at a time, zeros included."""
+
+import random
+import traceback
+from collections.abc import Container, Iterable, Mapping
+from contextlib import nullcontext
+from dataclasses import dataclass
+from time import perf_counter
+from typing import Any
+
+from conjcheck.conjecture.declare import Conjecture
+from conjcheck.errors import NotationError, NotIndependent, OutsideDomain
+from conjcheck.geometry.case import Case, Row, count_cases, degrees_of_total, outcomes, place_in_row, read_degree
+from conjcheck.geometry.flag_variety import Degree, SchubertClass
+from conjcheck.oracle import row_terms
+from conjcheck.oracle.engine import RowTerms
+from conjcheck.oracle.guard import Watch, rule_running
+from conjcheck.testing.answer import WrongAnswer, count_of, shown_objects, truth_of
+from conjcheck.testing.finding import Finding
+from conjcheck.testing.limits import CallInterrupted, CallLimit
+
+__all__ = ["Asker", "Comparer", "Key", "RowResult"]
+
+Key = tuple[SchubertClass, Degree]
+
+_ENDINGS = (Exception, SystemExit, CallInterrupted)
+"""How a call of a rule can end otherwise than by an answer; Ctrl-C is the user's and goes through."""
+
+
+@dataclass(frozen=True, slots=True)
+class RowResult:
+    """What comparing one row gave.
+
+    Attributes:
+        cases: how many cases were compared and agree.
+        nonzero: how many of them have a nonzero constant.
+        finding: the first thing wrong, in the order of cases; ``None`` if nothing is.
+        complete: whether every case of the row (inside the premise) was compared.
+    """
+
+    cases: int
+    nonzero: int
+    finding: Finding | None
+    complete: bool
+
+
+class Asker:
+    """The oracle in a claim's hand: ``N(u, v, w, d)`` is a constant, ``N.product(u, v)`` a product; remembers the last row."""
+
+    __slots__ = ("_classical", "_key", "_terms")
+
+    def __init__(self, classical: bool) -> None:
+        self._classical = classical
+        self._key: tuple[SchubertClass, SchubertClass] | None = None
+        self._terms: RowTerms = {}
+
+    def _row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
+        if self._key != (u, v):
+            Row(u.variety, u, v)
+            terms = row_terms(u, v)
+            self._terms = {key: n for key, n in terms.items() if not any(key[1])} if self._classical else terms
+            self._key = (u, v)
+        return self._terms
+
+    def __call__(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Iterable[int] | None = None) -> int:
+        """The constant ``N_{u,v}^{w,d}``; without d the classical one."""
+        degree = (0,) * len(u.variety.marked) if d is None else d if type(d) is tuple else read_degree(u.variety, d)
+        return self._row(u, v).get((w, degree), 0)
+
+    def product(self, u: SchubertClass, v: SchubertClass) -> dict[Any, int]:
+        """The product ``{(w, d): N}``, or ``{w: N}`` in the classical ring; nonzero terms only."""
+        terms = self._row(u, v)
+        return {w: n for (w, _), n in terms.items()} if self._classical else dict(terms)
+
+
+class Comparer:
+    """Compares one conjecture with the oracle.
+
+    Args:
+        conjecture: the conjecture.
+        call_limit: seconds one call of the rule may take.
+        cross_check: ask two engines for every row.
+
+    Use it inside ``with comparer.limit:`` so that calls are limited.
+    """
+
+    def __init__(self, conjecture: Conjecture, *, call_limit: float = 10.0, cross_check: bool = False) -> None:
+        self.conjecture = conjecture
+        self.cross_check = cross_check
+        self.limit = CallLimit(call_limit)
+        self.asker = Asker(conjecture.is_classical)
+        self._is_claim = conjecture.role == "claim"
+        self._oracle: tuple[Asker, ...] = (self.asker,) if self._is_claim else ()
+        self._progress: tuple[Key | None, int, int] = None, 0, 0
+
+    def inside(self, row: Row) -> bool:
+        """Whether the premise on rows holds (a premise on cases is asked case by case).
+
+        Raises whatever the premise raises.
+        """
+        conjecture = self.conjecture
+        return conjecture.premise is None or not conjecture.premise_by_rows or bool(conjecture.premise(row.X, row.u, row.v))
+
+    def truth(self, row: Row) -> RowTerms:
+        """The oracle's nonzero terms that the conjecture speaks about."""
+        terms = row_terms(row.u, row.v, cross_check=self.cross_check)
+        return {key: n for key, n in terms.items() if not any(key[1])} if self.conjecture.is_classical else terms
+
+    def row(self, row: Row, *, deadline: float = float("inf"), most_cases: int | None = None) -> RowResult:
+        """Compare one row, up to the first thing wrong.
+
+        Args:
+            row: the row; outside the premise nothing is compared.
+            deadline: stop at this ``perf_counter()`` time, between two calls.
+            most_cases: for a rule that answers case by case, compare at most about this many: all nonzero constants, and a sample
+                of the zeros that is the same every time.
+        """
+        return self._compare(row, self.truth(row), deadline=deadline, most_cases=most_cases)
+
+    def findings(self, row: Row, *, deadline: float = float("inf")) -> list[Finding]:
+        """Everything that differs in one row, in order; a failure of the whole row is a single finding."""
+        truth, found, skipped = self.truth(row), [], set()
+        while finding := self._compare(row, truth, deadline=deadline, skipped=skipped).finding:
+            found.append(finding)
+            if not isinstance(finding.where, Case) or finding.status != "refuted":
+                break
+            skipped.add((finding.where.w, finding.where.d))
+        return found
+
+    def case(self, case: Case) -> Finding | None:
+        """Compare one single case."""
+        return self._compare(case.row, self.truth(case.row), only=(case.w, case.d)).finding
+
+    def values(self, row: Row, keys: Iterable[Key]) -> dict[Key, int]:
+        """The rule's nonzero values at some outcomes of a row, as far as it gives values there."""
+        found: dict[Key, int] = {}
+        if self._is_claim:
+            return found
+        whole: RowTerms | None = None
+        for key in keys:
+            with rule_running(Watch()):
+                try:
+                    self.limit.started = perf_counter()
+                    if self.conjecture.by_rows:
+                        whole = self._whole(self.conjecture.rule(row.X, row.u, row.v), row) if whole is None else whole
+                        found[key] = whole.get(key, 0)
+                    else:
+                        found[key] = count_of(self.conjecture.rule(*self._arguments(row, *key)))
+                except _ENDINGS:
+                    continue
+                finally:
+                    self.limit.started = 0.0
+        return {key: count for key, count in (whole or found).items() if count}
+
+    # -- the comparison itself ---------------------------------------------------------------------------------------
+
+    def _arguments(self, row: Row, w: SchubertClass, d: Degree) -> tuple[Any, ...]:
+        """What the rule is called with at one case."""
+        tail = (w,) if self.conjecture.is_classical else (w, d)
+        return (row.X, row.u, row.v, *tail, *self._oracle)
+
+    def _compare(self, row: Row, truth: RowTerms, **choices: Any) -> RowResult:
+        """Compare under guard and limit; whatever ends a call becomes a finding."""
+        watch = Watch()
+        self._progress = None, 0, 0
+        try:
+            with nullcontext() if self._is_claim else rule_running(watch):
+                result = self._walk(row, truth, **choices)
+        except _ENDINGS as error:
+            self.limit.started = 0.0
+            key, cases, nonzero = self._progress
+            place = Case(row.X, row.u, row.v, *key) if key else row
+            result = RowResult(cases, nonzero, self._settle(self._trouble(place, error)), False)
+        finally:
+            self.limit.started = 0.0
+        if watch.asked:
+            finding = Finding("not-independent", row, detail="the rule asked the oracle that is meant to judge it")
+            return RowResult(result.cases, result.nonzero, finding, False)
+        if result.finding:
+            return RowResult(result.cases, result.nonzero, self._settle(result.finding), result.complete)
+        return result
+
+    def _walk(
+        self,
+        row: Row,
+        truth: RowTerms,
+        *,
+        deadline: float = float("inf"),
+        most_cases: int | None = None,
+        skipped: Container[Key] = (),
+        only: Key | None = None,
+    ) -> RowResult:
+        """The comparison itself: the rule's answers against the truth, outcome by outcome."""
+        conjecture, limit, claimed, oracle = self.conjecture, self.limit, self._is_claim, self._oracle
+        rule, classical = conjecture.rule, conjecture.is_classical
+        X, u, v = row.X, row.u, row.v
+        limit.started = perf_counter()
+        if not self.inside(row):
+            return RowResult(0, 0, None, True)
+        premise = None if conjecture.premise_by_rows else conjecture.premise
+        size = count_cases(X, u.length + v.length, classical=classical)
+        values: RowTerms | None = None
+        complete, agreeing = only is None, 0
+        keys: Iterable[Key]
+        if conjecture.by_rows:
+            answer = rule(X, u, v, *oracle)
+            if claimed:
+                holds = truth_of(answer)
+                finding = None if holds else Finding("refuted", row, detail="the claim is false for this product")
+                return RowResult(size * holds, len(truth) * holds, finding, True)
+            values = self._whole(answer, row)
+            if values == truth and premise is None:
+                return RowResult(size, len(truth), None, complete)
+            if premise is None:
+                keys = sorted({*values, *truth}, key=place_in_row)
+                agreeing = max(size - len(keys), 0)
+            else:
+                keys = sorted({*values, *outcomes(X, u.length + v.length, classical=classical)}, key=place_in_row)
+        elif most_cases is not None and size > most_cases:
+            keys, complete = _sample(row, truth, most_cases, classical), False
+        else:
+            keys = outcomes(X, u.length + v.length, classical=classical)
+        if only is not None:
+            keys = [only]
+        cases = nonzero = 0
+        for key in keys:
+            self._progress = key, cases, nonzero
+            if skipped and key in skipped:
+                continue
+            w, d = key
+            limit.started = started = perf_counter()
+            if started > deadline:
+                return RowResult(cases, nonzero, None, False)
+            if premise is not None and not (premise(X, u, v, w) if classical else premise(X, u, v, w, d)):
+                continue
+            true = truth.get(key, 0)
+            if values is not None:
+                count = values.get(key, 0)
+            else:
+                answer = rule(X, u, v, w, *oracle) if classical else rule(X, u, v, w, d, *oracle)
+                if claimed:
+                    count = true if truth_of(answer) else -1
+                else:
+                    count = answer if type(answer) is int and answer >= 0 else count_of(answer)
+            if count != true:
+                limit.started = 0.0
+                place = Case(X, u, v, w, d)
+                return RowResult(cases, nonzero, self._difference(place, count, true), complete)
+            cases += 1
+            if true:
+                nonzero += 1
+        return RowResult(cases + agreeing, nonzero, None, complete)
+
+    def _whole(self, answer: Any, row: Row) -> RowTerms:
+        """A rule's answer for a whole row as ``{(w, d): count}``, zeros dropped.
+
+        Raises:
+            WrongAnswer: no mapping, a key that is no outcome, or a value that is no count.
+        """
+        expected = "{w: count}" if self.conjecture.is_classical else "{(w, d): count}"
+        if not isinstance(answer, Mapping):
+            raise WrongAnswer(f"expected a mapping {expected} for a whole product, got {type(answer).__name__} {answer!r}"[:300])
+        zero = (0,) * len(row.X.marked)
+        values: RowTerms = {}
+        for key, value in answer.items():
+            try:
+                w, d = (key, zero) if self.conjecture.is_classical else key
+                if type(w) is not SchubertClass or w.variety is not row.X:
+                    raise NotationError(f"w={w!r} is no class of {row.X}")
+                d = read_degree(row.X, d)
+            except (TypeError, ValueError, NotationError) as error:
+                raise WrongAnswer(f"expected keys as in {expected}, got the key {key!r} ({error})") from None
+            count = value if type(value) is int and value >= 0 else count_of(value)
+            if count:
+                values[w, d] = count
+        return values
+
+    def _difference(self, place: Case, count: int, true: int) -> Finding:
+        """The finding for two values that differ, with the rule's objects if it gives objects."""
+        if self._is_claim:
+            return Finding("refuted", place, None, true, f"the claim is false here; the constant is {true}")
+        conjecture = self.conjecture
+        if conjecture.by_rows:
+            answer = conjecture.rule(place.X, place.u, place.v)
+            answer = answer.get(place.w if conjecture.is_classical else (place.w, place.d), 0)
+        else:
+            answer = conjecture.rule(*self._arguments(place.row, place.w, place.d))
+        try:
+            objects = shown_objects(answer)
+        except WrongAnswer:
+            objects = None
+        return Finding("refuted", place, count, true, f"the rule gives {count}, the oracle {true}", objects)
+
+    def _trouble(self, place: Case | Row, error: BaseException) -> Finding:
+        """The finding for a call that ended with an exception."""
+        if isinstance(error, CallInterrupted):
+            return Finding("too-slow", place, detail=f"one call took longer than {self.limit.seconds:g} s")
+        if isinstance(error, OutsideDomain):
+            return Finding("undefined", place, detail=f"the rule says that this is outside its domain: {error or 'no reason given'}")
+        if isinstance(error, NotIndependent):
+            return Finding("not-independent", place, detail=str(error))
+        if isinstance(error, WrongAnswer):
+            return Finding("not-a-count", place, detail=str(error))
+        return Finding("crashed", place, detail=f"{type(error).__name__}: {error}", trace=_trace(error, self.conjecture.file))
+
+    def _settle(self, finding: Finding) -> Finding:
+        """Call the rule once more at the same place: if the answer is another one now, that is the finding."""
+        if finding.status in ("too-slow", "not-independent"):
+            return finding
+        first, second = self._portrait(finding), self._answer_again(finding.where)
+        if first == second:
+            return finding
+        return Finding("unstable", finding.where, detail=f"expected one answer for one case, got {first}, then {second}")
+
+    def _portrait(self, finding: Finding) -> str:
+        if finding.status == "refuted":
+            return "False" if self._is_claim else str(finding.rule)
+        return finding.detail
+
+    def _answer_again(self, place: Case | Row) -> str:
+        rule, row = self.conjecture.rule, place.row if isinstance(place, Case) else place
+        with nullcontext() if self._is_claim else rule_running(Watch()):
+            try:
+                self.limit.started = perf_counter()
+                if self.conjecture.by_rows:
+                    answer = rule(row.X, row.u, row.v, *self._oracle)
+                    if self._is_claim:
+                        return str(truth_of(answer))
+                    values = self._whole(answer, row)
+                    return str(values.get((place.w, place.d), 0)) if isinstance(place, Case) else "an answer"
+                if not isinstance(place, Case):
+                    return "an answer"
+                answer = rule(*self._arguments(row, place.w, place.d))
+                return str(truth_of(answer) if self._is_claim else count_of(answer))
+            except _ENDINGS as error:
+                return self._trouble(place, error).detail
+            finally:
+                self.limit.started = 0.0
+
+
+def _sample(row: Row, truth: RowTerms, most: int, classical: bool) -> list[Key]:
+    """All nonzero outcomes of a row and a sample of the others, the same every time, in order."""
+    chooser = random.Random(str(row))  # noqa: S311  # a reproducible sample, no secret
+    X, total = row.X, row.u.length + row.v.length
+    weights: dict[int, tuple[Degree, ...]] = {}
+    keys = set(truth)
+    for _ in range(max(most - len(truth), 0)):
+        w = chooser.choice(X.classes)
+        left = total - w.length
+        if left not in weights:
+            weights[left] = degrees_of_total(X, left) if not classical or left == 0 else ()
+        if weights[left]:
+            keys.add((w, chooser.choice(weights[left])))
+    return sorted(keys, key=place_in_row)
+
+
+def _trace(error: BaseException, file: str) -> str:
+    """The traceback from the plug-in file on, without the harness."""
+    frames = traceback.extract_tb(error.__traceback__)
+    first = next((k for k, frame in enumerate(frames) if frame.filename == file), len(frames) - 1)
+    lines = traceback.format_list(frames[first:][:3] + (frames[-3:] if len(frames) - first > 6 else frames[first + 3 :]))
+    return "".join(lines) + "".join(traceback.format_exception_only(error))
+
+

@@ -1,0 +1,190 @@
+"""What every rule must obey, without any oracle: one answer, unit, commutativity, duality, S3, Seidel, diagram, associativity.
+
+The laws are those of the structure constants themselves, so a rule that breaks one is wrong at one of the two places compared.
+"""
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+
+from conjcheck.geometry.case import Case, Row, count_cases, outcomes, place_in_row
+from conjcheck.geometry.flag_variety import SchubertClass
+from conjcheck.geometry.symmetries import diagram_images, seidel
+from conjcheck.testing.compare import Comparer, Key
+
+__all__ = ["LAWS", "BrokenLaw", "broken_laws"]
+
+LAWS = ("one answer", "unit", "commutativity", "Poincare duality", "S3-symmetry", "Seidel symmetry", "diagram symmetry", "associativity")
+"""The laws, in the order in which they are tried."""
+
+_MOST_OUTCOMES = 3_000
+_MOST_TERMS = 40
+
+Values = dict[Key, int]
+
+
+@dataclass(frozen=True, slots=True)
+class BrokenLaw:
+    """A law that a rule breaks.
+
+    Attributes:
+        law: its name.
+        detail: the two values that should be equal, and where.
+        rows: the rows that took part; the rule is wrong on one of them.
+    """
+
+    law: str
+    detail: str
+    rows: tuple[Row, ...]
+
+
+def broken_laws(comparer: Comparer, row: Row, choice: int = 0) -> Iterator[BrokenLaw]:
+    """The laws that a candidate breaks around one row.
+
+    Args:
+        comparer: what calls the rule.
+        row: a row inside the premise.
+        choice: any integer; picks the third class and the Seidel element where a law leaves a choice.
+
+    Rows with more than 3,000 outcomes are left alone: the survey and the probe are the better tools there.
+    """
+    return _Neighbourhood(comparer, row, choice).broken()
+
+
+class _Neighbourhood:
+    """One row and its relatives."""
+
+    def __init__(self, comparer: Comparer, row: Row, choice: int) -> None:
+        self.comparer, self.row, self.choice = comparer, row, choice
+        self.conjecture = comparer.conjecture
+        self.values: Values = {}
+
+    def _of(self, row: Row) -> Values | None:
+        """The rule's nonzero values on a row; ``None`` outside the premise or where there are too many outcomes."""
+        total, classical = row.u.length + row.v.length, self.conjecture.is_classical
+        if count_cases(row.X, total, classical=classical) > _MOST_OUTCOMES or row.X not in self.conjecture.on:
+            return None
+        if not self.comparer.inside(row):
+            return None
+        return self.comparer.values(row, outcomes(row.X, total, classical=classical))
+
+    def _admits(self, case: Case) -> bool:
+        """Whether a premise on cases, if any, holds."""
+        conjecture = self.conjecture
+        if conjecture.premise is None or conjecture.premise_by_rows:
+            return True
+        tail = (case.w,) if conjecture.is_classical else (case.w, case.d)
+        return bool(conjecture.premise(case.X, case.u, case.v, *tail))
+
+    def _compare(self, law: str, expected: Values, row: Row, found: Values, back: dict[Key, Case] | None = None) -> Iterator[BrokenLaw]:
+        """Differences between two sets of values on ``row``; ``back`` gives the case that an expected value came from."""
+        for w, d in sorted({*expected, *found}, key=place_in_row):
+            here, there = expected.get((w, d), 0), found.get((w, d), 0)
+            second = Case(row.X, row.u, row.v, w, d)
+            first = (back or {}).get((w, d), second)
+            if here != there and self._admits(first) and self._admits(second):
+                yield BrokenLaw(law, f"{here} at {first}, but {there} at {second}", (first.row, row))
+
+    def broken(self) -> Iterator[BrokenLaw]:
+        """All laws in order."""
+        values = self._of(self.row)
+        if values is None:
+            return
+        self.values = values
+        yield from self._compare("one answer", values, self.row, self._of(self.row) or {})
+        yield from self._unit()
+        yield from self._commutative()
+        yield from self._duality()
+        yield from self._s3()
+        if not self.conjecture.is_classical:
+            yield from self._seidel()
+        yield from self._diagram()
+        if self.conjecture.premise is None:
+            yield from self._associative()
+
+    def _unit(self) -> Iterator[BrokenLaw]:
+        X, u, v = self.row.X, self.row.u, self.row.v
+        if u is X.identity or v is X.identity:
+            other = v if u is X.identity else u
+            yield from self._compare("unit", {(other, (0,) * len(X.marked)): 1}, self.row, self.values)
+
+    def _commutative(self) -> Iterator[BrokenLaw]:
+        X, u, v = self.row.X, self.row.u, self.row.v
+        swapped = Row(X, v, u)
+        if u is not v and (found := self._of(swapped)) is not None:
+            back = {(w, d): Case(X, u, v, w, d) for w, d in {*self.values, *found}}
+            yield from self._compare("commutativity", self.values, swapped, found, back)
+
+    def _duality(self) -> Iterator[BrokenLaw]:
+        X, u, v = self.row.X, self.row.u, self.row.v
+        if u.length + v.length == X.dim:
+            key = (X.point, (0,) * len(X.marked))
+            expected = {key: 1} if u.dual is v else {}
+            found = {key: self.values[key]} if key in self.values else {}
+            yield from self._compare("Poincare duality", expected, self.row, found)
+
+    def _s3(self) -> Iterator[BrokenLaw]:
+        X, u, v = self.row.X, self.row.u, self.row.v
+        chosen = [key for key in self.values][self.choice % len(self.values)] if self.values else None
+        w = chosen[0] if chosen else X.classes[self.choice % len(X.classes)]
+        partner = Row(X, u, w.dual)
+        if (found := self._of(partner)) is not None:
+            expected = {(v.dual, d): n for (x, d), n in self.values.items() if x is w}
+            there = {(x, d): n for (x, d), n in found.items() if x is v.dual}
+            back = {(v.dual, d): Case(X, u, v, w, d) for _, d in {*expected, *there}}
+            yield from self._compare("S3-symmetry", expected, partner, there, back)
+
+    def _seidel(self) -> Iterator[BrokenLaw]:
+        X, u, v = self.row.X, self.row.u, self.row.v
+        group = seidel(X)
+        g = 1 + self.choice % (len(group.units) - 1) if len(group.units) > 1 else 0
+        moved = Row(X, X.classes[group.images[g, u.index]], v)
+        if g and (found := self._of(moved)) is not None:
+            expected, back = {}, {}
+            for (w, d), n in self.values.items():
+                shift = group.shifts[g, w.index] - group.shifts[g, u.index]
+                key = X.classes[group.images[g, w.index]], tuple(a + int(b) for a, b in zip(d, shift, strict=True))
+                if min(key[1]) < 0:
+                    detail = f"{n} at {Case(X, u, v, w, d)}, where a Seidel element would make a power of q negative"
+                    yield BrokenLaw("Seidel symmetry", detail, (self.row,))
+                else:
+                    expected[key], back[key] = n, Case(X, u, v, w, d)
+            yield from self._compare("Seidel symmetry", expected, moved, found, back)
+
+    def _diagram(self) -> Iterator[BrokenLaw]:
+        X, u, v = self.row.X, self.row.u, self.row.v
+        for Y, images, places in diagram_images(X):
+            image = Row(Y, Y.classes[images[u.index]], Y.classes[images[v.index]])
+            if (found := self._of(image)) is not None:
+                expected, back = {}, {}
+                for (w, d), n in self.values.items():
+                    key = Y.classes[images[w.index]], tuple(d[p] for p in places)
+                    expected[key], back[key] = n, Case(X, u, v, w, d)
+                yield from self._compare("diagram symmetry", expected, image, found, back)
+
+    def _associative(self) -> Iterator[BrokenLaw]:
+        X, u, v = self.row.X, self.row.u, self.row.v
+        z = X.classes[self.choice % len(X.classes)]
+        rows = [self.row, Row(X, v, z)]
+        right = self._of(rows[1])
+        if right is None or len(self.values) + len(right) > _MOST_TERMS:
+            return
+        here = self._extend(self.values, lambda w: Row(X, w, z), rows)
+        there = self._extend(right, lambda w: Row(X, u, w), rows)
+        if here is not None and there is not None and here != there:
+            w, d = min((key for key in {*here, *there} if here.get(key, 0) != there.get(key, 0)), key=place_in_row)
+            power = f"q^({','.join(map(str, d))}) {w!r}"
+            values = f"{here.get((w, d), 0)} in (u * v) * z, but {there.get((w, d), 0)} in u * (v * z)"
+            yield BrokenLaw("associativity", f"the coefficient of {power} is {values}, for {u!r}, {v!r}, {z!r} on {X}", tuple(rows))
+
+    def _extend(self, values: Values, row_of: Callable[[SchubertClass], Row], rows: list[Row]) -> Values | None:
+        """The bilinear extension: a product times one class; the rows used are added to ``rows``."""
+        total: Values = {}
+        for (w, d), n in values.items():
+            rows.append(row_of(w))
+            product = self._of(rows[-1])
+            if product is None:
+                return None
+            for (x, e), m in product.items():
+                key = x, tuple(a + b for a, b in zip(d, e, strict=True))
+                total[key] = total.get(key, 0) + n * m
+        return total

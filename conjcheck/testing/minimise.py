@@ -1,0 +1,169 @@
+"""From any failure to the smallest: descend, then compare everything below in the one order; then the whole layer."""
+
+from dataclasses import dataclass, replace
+from time import perf_counter
+
+from conjcheck.errors import EnginesDisagree
+from conjcheck.geometry.case import Case, Row, rows
+from conjcheck.geometry.symmetries import orbit_of_case
+from conjcheck.oracle import row_terms, witnesses
+from conjcheck.testing.compare import Comparer
+from conjcheck.testing.finding import Finding
+from conjcheck.testing.survey import Coverage, survey
+
+__all__ = ["Layer", "Minimum", "confirm", "descend", "layer_of", "minimise"]
+
+_MOST_IN_LAYER = 2_000
+
+
+@dataclass(frozen=True, slots=True)
+class Layer:
+    """All failures in the smallest failing space.
+
+    Attributes:
+        findings: one per failing case (or failing row of a claim about rows), in order.
+        rows: number of rows compared from the smallest failure on; ``complete`` if that was all of them.
+        orbits: number of orbits of the failing cases under the symmetries of the space (S3, diagram automorphisms, Seidel).
+        size: number of rows of the space.
+    """
+
+    findings: tuple[Finding, ...]
+    rows: int
+    complete: bool
+    orbits: int
+    size: int
+
+    @property
+    def pairs(self) -> int:
+        """Number of failing ordered pairs (u, v)."""
+        return len({(f.row.u, f.row.v) for f in self.findings})
+
+
+@dataclass(frozen=True, slots=True)
+class Minimum:
+    """The smallest failure known.
+
+    Attributes:
+        finding: the failure.
+        certified: whether every smaller case of the conjecture's domain was compared and agrees.
+        below: how many smaller cases were compared, and agree.
+        reach: words for how far the certainty reaches when it is not certified.
+    """
+
+    finding: Finding
+    certified: bool
+    below: int
+    reach: str = ""
+
+
+def descend(comparer: Comparer, finding: Finding, *, budget: float) -> Finding:
+    """Walk down inside one space: shorten u or v by one letter, or swap them, while the row still fails."""
+    deadline = perf_counter() + budget
+    best = finding
+    with comparer.limit:
+        moving = True
+        while moving:
+            moving = False
+            for row in _neighbours(best.row):
+                if perf_counter() > deadline:
+                    return best
+                found = comparer.row(row, deadline=deadline).finding
+                if found and found.status == finding.status:
+                    best, moving = found, True
+                    break
+    return best
+
+
+def _neighbours(row: Row) -> list[Row]:
+    """Smaller rows near by, smallest first."""
+    X, u, v = row.X, row.u, row.v
+
+    def below(a: Row) -> bool:
+        return a < row
+
+    shorter_u = [w for w in X.of_length(u.length - 1) if _one_letter_less(w.word, u.word)]
+    shorter_v = [w for w in X.of_length(v.length - 1) if _one_letter_less(w.word, v.word)]
+    near = [Row(X, w, v) for w in shorter_u] + [Row(X, u, w) for w in shorter_v] + [Row(X, v, u)]
+    return sorted(filter(below, near), key=lambda a: a.sort_key)
+
+
+def _one_letter_less(short: tuple[int, ...], word: tuple[int, ...]) -> bool:
+    return any(word[:k] + word[k + 1 :] == short for k in range(len(word)))
+
+
+def minimise(comparer: Comparer, finding: Finding, coverage: Coverage, *, budget: float) -> Minimum:
+    """The smallest failure at or below a finding, and whether that is certain.
+
+    Goes on with the survey (``coverage`` is extended in place) up to the row of the finding: what it meets first is the minimum.
+
+    Args:
+        comparer: what compares.
+        finding: any failure.
+        coverage: what has been compared already, from the beginning of the order on.
+        budget: seconds.
+    """
+    started = perf_counter()
+    with comparer.limit:
+        first = comparer.row(finding.row, deadline=started + budget / 4).finding
+    finding = first or finding
+    walked = survey(comparer, budget=budget - (perf_counter() - started), stop_before=finding.row, coverage=coverage)
+    if walked.finding:
+        finding = walked.finding
+    gaps = [X for X in coverage.skipped if X < finding.row.X]
+    below = coverage.cases
+    if walked.ran_out:
+        last = coverage.spaces[-1] if coverage.spaces else None
+        where = f"; stopped in {last.X} after {last.rows_seen:,} of {len(last.X.classes) ** 2:,} rows" if last else ""
+        return Minimum(finding, False, below, f"no smaller one among the first {below:,} cases{where}")
+    if gaps:
+        names = ", ".join(X.name for X in gaps[:5]) + (" ..." if len(gaps) > 5 else "")
+        return Minimum(finding, False, below, f"all {below:,} smaller cases in reach agree; out of reach of the oracle: {names}")
+    return Minimum(finding, True, below)
+
+
+def layer_of(comparer: Comparer, finding: Finding, *, budget: float) -> Layer:
+    """All failures of the same kind in the space of the smallest one, from there on, within a budget."""
+    deadline = perf_counter() + budget
+    X, found, seen, complete = finding.row.X, [], 0, True
+    start = finding.row.sort_key
+    with comparer.limit:
+        for row in rows(X):
+            if row.sort_key < start:
+                continue
+            if perf_counter() > deadline or len(found) >= _MOST_IN_LAYER:
+                complete = False
+                break
+            seen += 1
+            found += [f for f in comparer.findings(row, deadline=deadline) if f.status == finding.status]
+    return Layer(tuple(found), seen, complete, _orbits(found, comparer.conjecture.is_classical), len(X.classes) ** 2)
+
+
+def _orbits(findings: list[Finding], classical: bool) -> int:
+    """The number of orbits among failing cases; rows that fail as a whole count one each."""
+    left = {f.where for f in findings if isinstance(f.where, Case)}
+    orbits = sum(not isinstance(f.where, Case) for f in findings)
+    while left:
+        orbits += 1
+        left -= orbit_of_case(next(iter(left)), seidel_too=not classical)
+    return orbits
+
+
+def confirm(finding: Finding) -> tuple[Finding, str]:
+    """The finding with the oracle's value witnessed by a second engine or another route, and by which.
+
+    Raises:
+        EnginesDisagree: a witness gives another value. Then the oracle is in doubt, not the rule.
+    """
+    if not isinstance(finding.where, Case):
+        row_terms(finding.row.u, finding.row.v, cross_check=True)
+        return finding, "the product was computed on two routes"
+    ways = witnesses(finding.where)
+    if finding.oracle is None:
+        finding = replace(finding, oracle=ways[0][1])
+    for how, value in ways:
+        if value != finding.oracle:
+            raise EnginesDisagree(
+                f"expected one constant at {finding.where}, got {finding.oracle} from the oracle and {value} by {how}; the oracle is in "
+                "doubt and no verdict of this version can be trusted: please report this"
+            )
+    return finding, ", ".join(how for how, _ in ways)

@@ -1,0 +1,135 @@
+"""The probe: rows drawn at random by Hypothesis on spaces too large to survey, n rising, each n a search of its own."""
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from typing import Any
+
+from hypothesis import HealthCheck, Phase, given, seed, settings
+from hypothesis import strategies as st
+
+from conjcheck.conjecture.declare import Conjecture
+from conjcheck.geometry.case import Row
+from conjcheck.geometry.families import Varieties
+from conjcheck.geometry.flag_variety import FlagVariety
+from conjcheck.strategies import rows
+from conjcheck.testing.finding import STATUSES, Found
+from conjcheck.testing.survey import in_reach
+
+__all__ = ["Check", "ProbeCount", "gravest", "probe_levels", "probe_test", "run_probe"]
+
+Check = Callable[[Row, int], None]
+"""A check of one drawn row; the integer is free for the check to use. Raises ``Found``."""
+
+_FEWEST_CLASSES = 20
+_MOST_LEVELS = 3
+_MOST_SPACES = 200
+
+
+@dataclass
+class ProbeCount:
+    """What a random search has compared so far.
+
+    Attributes:
+        rows: rows compared, drawn independently, repetitions included.
+        cases, nonzero: cases compared, and those with a nonzero constant.
+        sampled: rows of which not every zero was compared.
+        failed: whether something was found; from then on time limits do not apply, so that shrinking sees one and the same check.
+        broken_law: the law that led to it, if one did.
+    """
+
+    rows: int = 0
+    cases: int = 0
+    nonzero: int = 0
+    sampled: int = 0
+    failed: bool = False
+    broken_law: str = ""
+    _seen: set[Row] = field(default_factory=set)
+
+    def add(self, row: Row, cases: int, nonzero: int, *, sampled: bool = False) -> None:
+        """Count one row."""
+        self.rows += 1
+        self.cases += cases
+        self.nonzero += nonzero
+        self.sampled += sampled
+        self._seen.add(row)
+
+    @property
+    def distinct(self) -> int:
+        """Number of different rows."""
+        return len(self._seen)
+
+    @property
+    def bound(self) -> float:
+        """The largest share p of failing rows with ``(1 - p)^rows >= 0.05``: 95 % confidence after no failure at all."""
+        return float(1 - 0.05 ** (1 / self.rows)) if self.rows else 1.0
+
+
+def probe_levels(conjecture: Conjecture, most_classes: int) -> list[tuple[int, list[FlagVariety]]]:
+    """The levels of a probe: up to three n, rising, with the spaces of 20 classes or more that the oracle serves quickly.
+
+    With more than three n to choose from, the smallest, the middle and the largest are taken.
+    """
+    levels: dict[int, list[FlagVariety]] = {}
+    for X in in_reach(conjecture, most_spaces=_MOST_SPACES):
+        if X.number_of_classes > most_classes or (X.n == 8 and not X.is_grassmannian and most_classes < 40_320):
+            continue
+        if X.number_of_classes >= _FEWEST_CLASSES:
+            levels.setdefault(X.n, []).append(X)
+    chosen = sorted(levels)
+    if len(chosen) > _MOST_LEVELS:
+        chosen = [chosen[0], chosen[len(chosen) // 2], chosen[-1]]
+    return [(n, levels[n]) for n in chosen]
+
+
+def probe_test(
+    check: Check,
+    spaces: Callable[[], list[FlagVariety]],
+    conjecture: Conjecture,
+    *,
+    fixed_seed: int | None = None,
+    **choices: Any,
+) -> Callable[[], None]:
+    """A Hypothesis test without arguments that draws rows and checks them.
+
+    Args:
+        check: called with each row and a free integer.
+        spaces: called at the first draw: where to draw.
+        conjecture: its premise is respected.
+        fixed_seed: makes the draws reproducible; ``None`` leaves the choice to Hypothesis.
+        choices: further Hypothesis settings; the others are those of the profile in force.
+    """
+    premise = conjecture.premise if conjecture.premise_by_rows else None
+
+    def strategy() -> st.SearchStrategy[Row]:
+        return rows(on=Varieties(*spaces()), premise=premise)
+
+    @settings(
+        settings.default,
+        deadline=None,
+        suppress_health_check=list(HealthCheck),
+        print_blob=False,
+        **choices,
+        phases=[phase for phase in settings.default.phases if phase is not Phase.explain],
+    )
+    @given(row=st.deferred(strategy), choice=st.integers(0, 2**16))
+    def probe(row: Row, choice: int) -> None:
+        check(row, choice)
+
+    return seed(fixed_seed)(probe) if fixed_seed is not None else probe
+
+
+def run_probe(check: Check, spaces: list[FlagVariety], conjecture: Conjecture, *, seed: int | None = None) -> None:
+    """Run the search outside pytest; raises what the check raises at the smallest failure found."""
+    test = probe_test(check, lambda: spaces, conjecture, fixed_seed=seed, database=None)
+    try:
+        test()
+    except BaseExceptionGroup as group:
+        raise gravest(group) or group from None
+
+
+def gravest(error: BaseException) -> Found | None:
+    """The finding to report among all that a search ended with: of the first status, then the smallest; ``None`` if there is none."""
+    if isinstance(error, BaseExceptionGroup):
+        found = [inner for part in error.exceptions if (inner := gravest(part))]
+        return min(found, key=lambda f: (STATUSES.index(f.finding.status), f.finding.row.sort_key), default=None)
+    return error if isinstance(error, Found) else None

@@ -1,0 +1,50 @@
+"""How much was compared, in words that a paper can quote: every "agrees" carries them."""
+
+from conjcheck.conjecture.declare import Conjecture
+from conjcheck.geometry.flag_variety import FlagVariety
+from conjcheck.testing.probe import ProbeCount
+from conjcheck.testing.survey import Coverage
+
+__all__ = ["probe_scope", "survey_scope", "survey_spaces"]
+
+
+def survey_spaces(coverage: Coverage) -> str:
+    """The spaces a survey has compared: the complete ones, and how far into the last."""
+    spaces, parts = coverage.complete, []
+    if len(spaces) == 1:
+        parts.append(f"all of {spaces[0].X}")
+    elif spaces:
+        parts.append(f"all {len(spaces)} spaces from {spaces[0].X} to {spaces[-1].X}")
+    if len(coverage.spaces) > len(spaces):
+        last = coverage.spaces[-1]
+        if last.rows_seen:
+            parts.append(f"the first {last.rows_seen:,} of {len(last.X.classes) ** 2:,} rows of {last.X}")
+    return " and ".join(parts)
+
+
+def survey_scope(coverage: Coverage, conjecture: Conjecture) -> str:
+    """What a survey has compared: the complete spaces, how far into the last, the numbers of rows and cases."""
+    if not coverage.rows:
+        return "nothing yet: no row inside the premise was reached" if coverage.spaces else "nothing: no space in reach of the oracle"
+    premise = " inside the premise" if conjecture.premise else ""
+    numbers = f"{coverage.rows:,} rows, {coverage.cases:,} cases{premise}, {coverage.nonzero:,} of them nonzero"
+    text = f"{survey_spaces(coverage)}; {numbers}"
+    if coverage.whole_family:
+        text += "; this is the whole family"
+    if coverage.skipped and coverage.spaces:
+        gaps = [X for X in coverage.skipped if X < coverage.spaces[-1].X]
+        if gaps:
+            text += f"; {len(gaps)} spaces in between are out of reach, the first {gaps[0]}"
+    return text
+
+
+def probe_scope(n: int, spaces: list[FlagVariety], count: ProbeCount) -> str:
+    """What a probe has compared, and the largest share of failing rows that is still compatible with it at 95 %."""
+    where = spaces[0].name if len(spaces) == 1 else f"{len(spaces)} spaces with n = {n}"
+    if not count.rows:
+        return f"no row inside the premise was drawn on {where}"
+    sampled = f" ({count.sampled:,} rows with all nonzero cases and a sample of the zeros)" if count.sampled else ""
+    return (
+        f"{count.rows:,} rows drawn at random on {where}, {count.distinct:,} of them distinct, {count.cases:,} cases{sampled}; "
+        f"at 95 % at most {100 * count.bound:.2g} % of rows, weighted as they are drawn, can fail"
+    )

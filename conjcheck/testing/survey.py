@@ -1,0 +1,177 @@
+"""The survey: every case, zeros included, of the smallest spaces first, within a budget; it says exactly how far it got."""
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from itertools import count
+from time import perf_counter
+
+from conjcheck.conjecture.declare import Conjecture
+from conjcheck.geometry.case import Row, rows
+from conjcheck.geometry.flag_variety import FlagVariety
+from conjcheck.oracle import engines_for
+from conjcheck.testing.compare import Comparer
+from conjcheck.testing.finding import Finding
+
+__all__ = ["Coverage", "SpaceCoverage", "Survey", "in_reach", "survey"]
+
+_LAST_RANK = 11
+
+
+@dataclass(slots=True)
+class SpaceCoverage:
+    """How far one space was compared.
+
+    Attributes:
+        rows_seen: rows passed, in the order of rows, those outside the premise included.
+        rows, cases, nonzero: rows with at least one case inside the premise, their cases, and those with a nonzero constant.
+        complete: whether no row is left.
+    """
+
+    X: FlagVariety
+    rows_seen: int = 0
+    rows: int = 0
+    cases: int = 0
+    nonzero: int = 0
+    complete: bool = False
+    seconds: float = 0.0
+
+
+@dataclass(slots=True)
+class Coverage:
+    """How far a survey got.
+
+    Attributes:
+        spaces: the spaces entered, in order; all but the last are complete.
+        skipped: spaces of the family that came before the end but are out of reach of every engine.
+        whole_family: whether a finite family was compared completely.
+        budget: the seconds it was given.
+    """
+
+    spaces: list[SpaceCoverage] = field(default_factory=list)
+    skipped: list[FlagVariety] = field(default_factory=list)
+    whole_family: bool = False
+    budget: float = 0.0
+
+    @property
+    def rows(self) -> int:
+        """Rows compared."""
+        return sum(space.rows for space in self.spaces)
+
+    @property
+    def cases(self) -> int:
+        """Cases compared."""
+        return sum(space.cases for space in self.spaces)
+
+    @property
+    def nonzero(self) -> int:
+        """Cases compared whose constant is not zero."""
+        return sum(space.nonzero for space in self.spaces)
+
+    @property
+    def complete(self) -> list[SpaceCoverage]:
+        """The spaces compared completely."""
+        return [space for space in self.spaces if space.complete]
+
+
+@dataclass(frozen=True, slots=True)
+class Survey:
+    """What a survey found.
+
+    Attributes:
+        coverage: how far it got.
+        finding: the first thing wrong: by the order of cases also the smallest.
+        ran_out: whether the budget ended it before it was through.
+    """
+
+    coverage: Coverage
+    finding: Finding | None
+    ran_out: bool
+
+
+def in_reach(
+    conjecture: Conjecture, skipped: list[FlagVariety] | None = None, *, most_spaces: int | None = None
+) -> Iterator[FlagVariety]:
+    """The spaces of a conjecture in order, as far as some engine reaches; the others go to ``skipped``.
+
+    Ends before a rank that is out of reach as a whole, or that has more than ``most_spaces`` spaces.
+    """
+    last = conjecture.on.last_rank
+    for rank in count(1) if last is None else range(1, last + 1):
+        spaces = conjecture.on.of_rank(rank)
+        reached = [X for X in spaces if engines_for(X)]
+        if skipped is not None:
+            skipped.extend(X for X in spaces if X not in reached)
+        if (spaces and not reached and last is None) or rank > _LAST_RANK or (most_spaces and len(spaces) > most_spaces):
+            return
+        yield from reached
+
+
+def survey(
+    comparer: Comparer,
+    *,
+    budget: float,
+    stop_before: Row | None = None,
+    coverage: Coverage | None = None,
+) -> Survey:
+    """Compare all rows in order until something is wrong or the budget is spent.
+
+    Args:
+        comparer: what compares.
+        budget: seconds.
+        stop_before: do not go to this row or beyond it (used to look below a counterexample).
+        coverage: go on from here instead of from the beginning; it is extended in place.
+    """
+    coverage = coverage or Coverage()
+    coverage.budget += budget
+    deadline = perf_counter() + budget
+    done = {space.X: space for space in coverage.spaces}
+    skipped: list[FlagVariety] = []
+    finding = None
+    ran_out = False
+    with comparer.limit:
+        for X in in_reach(comparer.conjecture, skipped):
+            if stop_before and stop_before.X < X:
+                break
+            space = done.get(X)
+            if space is None:
+                space = SpaceCoverage(X)
+                coverage.spaces.append(space)
+            elif space.complete:
+                continue
+            finding, ran_out = _space(comparer, space, deadline, stop_before)
+            if finding or ran_out or not space.complete:
+                break
+        else:
+            coverage.whole_family = comparer.conjecture.on.last_rank is not None and not skipped
+    coverage.skipped = skipped
+    return Survey(coverage, finding, ran_out)
+
+
+def _space(
+    comparer: Comparer, space: SpaceCoverage, deadline: float, stop_before: Row | None
+) -> tuple[Finding | None, bool]:
+    """Compare one space from where its coverage ends: (finding, whether the time ran out)."""
+    started = perf_counter()
+    seen = 0
+    try:
+        for row in rows(space.X):
+            if stop_before is not None and not row < stop_before:
+                return None, False
+            seen += 1
+            if seen <= space.rows_seen:
+                continue
+            if perf_counter() > deadline:
+                return None, True
+            result = comparer.row(row, deadline=deadline)
+            if result.finding:
+                return result.finding, False
+            if not result.complete:
+                return None, True
+            space.rows_seen = seen
+            space.rows += result.cases > 0
+            space.cases += result.cases
+            space.nonzero += result.nonzero
+        space.complete = True
+        return None, False
+    finally:
+        space.seconds += perf_counter() - started

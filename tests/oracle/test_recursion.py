@@ -1,0 +1,102 @@
+"""The recursion on complete flags: packing, the two routes, forgetting, and the streamed table."""
+
+import random
+
+import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+from conjcheck import Fl, table
+from conjcheck.oracle import recursion
+from conjcheck.oracle.recursion import CompleteFlagRing, complete_flag_ring
+
+RINGS = {n: complete_flag_ring(Fl(n)) for n in (2, 3, 4, 5, 6)}
+
+
+@settings(deadline=None)
+@given(st.sampled_from(sorted(RINGS)), st.data())
+def test_packing_is_one_to_one(n, data):
+    """Every class and every degree up to ``dim X`` in each entry, more than a product can hold, unpacks as it was packed."""
+    ring = RINGS[n]
+    X = ring.X
+    d = tuple(data.draw(st.integers(0, X.dim)) for _ in X.marked)
+    u = data.draw(st.sampled_from(X.classes))
+    assert ring.unpack(u.index + ring.pack(d)) == (u.index, d)
+
+
+def test_packing_leaves_room_for_the_largest_product():
+    """``sum d_i <= dim X`` for every term, because every ``deg q_i`` is 2 and ``l(u) + l(v) <= 2 dim X``: the fields hold that."""
+    for n in range(2, 9):
+        X = Fl(n)
+        ring = CompleteFlagRing(X)
+        assert 1 << ring.bits > X.dim
+        assert 1 << ring.shift > len(X.classes) - 1
+        assert ring.shift + ring.bits * len(X.marked) < 63
+
+
+@settings(deadline=None)
+@given(st.sampled_from(sorted(RINGS)), st.data())
+def test_the_two_routes_agree(n, data):
+    """With Seidel symmetry and memory, and without either."""
+    ring = RINGS[n]
+    u, v = (data.draw(st.sampled_from(ring.X.classes)).index for _ in range(2))
+    assert ring.packed_row(u, v) == ring.direct_row(u, v)
+
+
+def test_the_representatives_fix_n():
+    """Each class is a Seidel image of exactly one class that fixes n."""
+    for n, ring in RINGS.items():
+        X = ring.X
+        assert [X.classes[i].permutation[-1] for i in ring.representatives] == [n] * len(ring.representatives)
+        assert len(ring.representatives) * n == len(X.classes)
+        for u in X.classes:
+            home, g = ring.home[u.index], ring.element[u.index]
+            assert ring.group.images[g, home] == u.index
+
+
+def test_forgetting_changes_nothing(monkeypatch):
+    """With almost no room for remembered products the answers are the same as with plenty."""
+    rng = random.Random(11)
+    pairs = [(rng.randrange(120), rng.randrange(120)) for _ in range(300)]
+    expected = [RINGS[5].packed_row(u, v) for u, v in pairs]
+    monkeypatch.setattr(recursion, "_MOST_STORED_TERMS", 50)
+    small = CompleteFlagRing(Fl(5))
+    assert [small.packed_row(u, v) for u, v in pairs] == expected
+
+
+def stored_terms(ring):
+    """What the ring remembers, counted afresh."""
+    return sum(len(row) for sweep in ring._sweeps.values() for row in sweep.values())
+
+
+def test_the_count_of_stored_terms_is_true(monkeypatch):
+    """What is forgotten, or was never kept, does not count against the room for what is kept."""
+    monkeypatch.setattr(recursion, "_MOST_STORED_TERMS", 2000)
+    ring = CompleteFlagRing(Fl(5))
+    rng = random.Random(5)
+    for _ in range(200):
+        u, v = rng.randrange(120), rng.randrange(120)
+        ring.packed_row(u, v)
+        ring.direct_row(u, v)
+    list(ring.blocks())
+    starts = len(ring._sweeps)
+    assert stored_terms(ring) - starts <= ring._stored <= stored_terms(ring)
+    assert stored_terms(ring) > 500
+
+
+@pytest.mark.parametrize("n", [2, 3, 4, 5])
+def test_blocks_hold_the_rows(n):
+    """The streamed table has one block per class, and each block the rows of its class, zeros left out, nothing twice."""
+    ring = RINGS[n]
+    X = ring.X
+    blocks = list(table(X))
+    assert sorted(block.u.index for block in blocks) == list(range(len(X.classes)))
+    for block in blocks:
+        assert len(block) == len(block.v) == len(block.w) == len(block.d) == len(block.N)
+        assert block.d.shape[1] == len(X.marked)
+        found = {}
+        for v, w, d, count in zip(block.v.tolist(), block.w.tolist(), map(tuple, block.d.tolist()), block.N.tolist(), strict=True):
+            found.setdefault(v, {})[w + ring.pack(d)] = count
+        assert {v: ring.packed_row(block.u.index, v) for v in found} == found
+        assert len(found) == len(X.classes)
+        assert sum(map(len, found.values())) == len(block)
