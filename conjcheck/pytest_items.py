@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import sys
 import traceback
 from collections.abc import Callable, Iterator
 from dataclasses import replace
@@ -52,16 +53,18 @@ class PluginFile(pytest.Module):
         yield from found
 
     def _import_problem(self) -> str:
-        """Import the file under a time limit; the text of what went wrong."""
+        """Import the file under a time limit; the text of what went wrong. Helpers beside the file can be imported by their name."""
+        folder = str(self.path.parent)
+        if folder not in sys.path:
+            sys.path.insert(0, folder)
         with CallLimit(_IMPORT_LIMIT) as limit:
             limit.started = perf_counter()
             try:
                 _ = self.obj
             except CallInterrupted:
                 return f"importing the file took longer than {_IMPORT_LIMIT:g} s"
-            except self.CollectError as error:
-                return str(error)
-            except (Exception, SystemExit) as error:
+            except (Exception, SystemExit) as raised:
+                error = (raised.__cause__ or raised) if isinstance(raised, self.CollectError) else raised
                 frames = [f for f in traceback.extract_tb(error.__traceback__) if f.filename == str(self.path)]
                 lines = traceback.format_list(frames) + traceback.format_exception_only(error)
                 return "".join(lines).rstrip()
@@ -158,7 +161,7 @@ class ConjectureNode(pytest.Collector):
         def spaces() -> list[FlagVariety]:
             return item.spaces()
 
-        fixed = None if settings.default.derandomize or self.config.getoption("--hypothesis-seed", None) is not None else self._seed
+        fixed = None if settings().derandomize or self.config.getoption("--hypothesis-seed", None) is not None else self._seed
         test: Any = probe_test(check, spaces, self.conjecture, fixed_seed=fixed)
         test.hypothesis.inner_test._hypothesis_internal_add_digest = f"{self.nodeid}::{name}".encode()
         item = PartItem.from_parent(self, name=name, callobj=test, part=part)
@@ -237,10 +240,10 @@ class PartItem(pytest.Function):
     def runtest(self) -> None:
         """Run the part, work out what it finds, keep the outcome, and fail unless the status is as expected."""
         examination = self.node.examination
+        if examination.failure and self.name != "case":
+            pytest.skip(f"{examination.failure.status} already, see {self.node.name}::{examination.failure.part}")
         if self._part is None:
             super().runtest()
-        elif examination.failure:
-            self.outcome = examination.repeated(self.name)
         else:
             self._draw(examination)
         outcome = self.outcome
@@ -300,6 +303,6 @@ def _plain(excinfo: pytest.ExceptionInfo[BaseException]) -> Any:
     """The text of an exception as a report without traceback; its first line goes to the short summary."""
     excinfo.value.__notes__ = []  # Hypothesis adds its own account of the example; ours is complete
     shown = excinfo.getrepr(style="value")
-    if getattr(shown, "reprcrash", None) is not None:
+    if shown.reprcrash is not None:
         shown.reprcrash.message = str(excinfo.value).splitlines()[0]
     return shown

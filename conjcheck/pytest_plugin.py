@@ -14,7 +14,6 @@ from typing import TYPE_CHECKING, Any
 import pytest
 
 if TYPE_CHECKING:
-    from collections.abc import Generator
     from pathlib import Path
 
 _FOLDERS = "conjcheck_folders"
@@ -127,7 +126,7 @@ def pytest_pycollect_makemodule(module_path: Path, parent: pytest.Collector) -> 
         return None
     from conjcheck.pytest_items import PluginFile
 
-    return PluginFile.from_parent(parent, path=module_path)  # type: ignore[no-any-return]
+    return PluginFile.from_parent(parent, path=module_path)
 
 
 @pytest.hookimpl(tryfirst=True)
@@ -144,13 +143,6 @@ def pytest_pycollect_makeitem(collector: pytest.Module | pytest.Class, name: str
 
 
 # -- reports --------------------------------------------------------------------------------------------------------------
-
-
-@pytest.hookimpl(wrapper=True)
-def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, pytest.TestReport, pytest.TestReport]:
-    """Let passing reports of refuted rules be seen in the summary: they travel as a section."""
-    report = yield
-    return report
 
 
 def pytest_runtest_logreport(report: pytest.TestReport) -> None:
@@ -180,3 +172,12 @@ def pytest_terminal_summary(terminalreporter: Any, config: pytest.Config) -> Non
     terminalreporter.section("conjectures")
     for line in summary_table(lines):
         terminalreporter.write_line(line)
+    texts = [
+        text for report in terminalreporter.stats.get("passed", []) for title, text in report.sections if "conjcheck" in title
+    ]
+    refuted = [text for text in texts if text.startswith("refuted: ")]
+    if refuted and len({line["conjecture"] for line in lines}) == 1:
+        terminalreporter.write_line("")
+        terminalreporter.write_line(max(refuted, key=len))
+    elif texts:
+        terminalreporter.write_line("the whole report of each part that passed: -rP")

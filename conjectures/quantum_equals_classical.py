@@ -3,8 +3,9 @@
 On ``Gr(k, n)`` write a class as a 01-string (letter j is 0 when the value j is among the first k). ``widen(string, d)``, the
 ``J_d`` of the statement, renames 1 to 2 and then turns the last d zeros and the first d twos into 1: a class on
 ``Fl(k - d, k + d; n)``, that of the kernels and spans of the curves of degree d that meet the Schubert variety. Then
-``N_{u,v}^{w,d}`` is the number of two-step puzzles with ``widen(u)`` on the north-west side, ``widen(v)`` on the north-east side (both clockwise) and the reverse of
-``widen(dual of w)`` along the bottom, for every w of the length that the degree axiom asks for; it is 0 for d above k or n - k.
+``N_{u,v}^{w,d}`` is the number of two-step puzzles with ``widen(u)`` on the north-west side, ``widen(v)`` on the north-east side
+(both clockwise) and the reverse of ``widen(dual of w)`` along the bottom, for every w of the length that the degree axiom asks
+for; it is 0 for d above k or n - k.
 
 Sources: A. S. Buch, A. Kresch and H. Tamvakis, Gromov-Witten invariants on Grassmannians, J. Amer. Math. Soc. 16 (2003), 901-915;
 puzzles as in ``two_step_puzzles.py``.

@@ -90,9 +90,9 @@ def _mixer(weights: Ints) -> tuple[Ints, Ints, Ints]:
     """A linear hash without collisions on the given rows: multipliers, sorted hashes, and the sorting order."""
     for seed in range(100):
         mixer = np.random.default_rng(seed).integers(-(2**62), 2**62, size=weights.shape[1], dtype=np.int64)
-        keys = weights @ mixer  # wraps around modulo 2^64, on purpose
+        keys: Ints = weights @ mixer  # wraps around modulo 2^64, on purpose
         sorter = np.argsort(keys, kind="stable").astype(np.int64)
-        hashes = keys[sorter]
+        hashes: Ints = keys[sorter]
         if (hashes[1:] != hashes[:-1]).all():
             return mixer, hashes, sorter
     raise AssertionError("no injective linear hash among 100: the rows are not distinct")
@@ -120,7 +120,7 @@ def orbit(kind: CartanType, marked: tuple[int, ...]) -> Orbit:
     start = np.array([[int(i + 1 in marked) for i in range(kind.rank)]], dtype=np.int64)
     levels = [start]
     while True:
-        rising = [
+        rising: list[Ints] = [
             level - level[:, i : i + 1] * matrix[i]
             for i in range(kind.rank)
             for level in [levels[-1][levels[-1][:, i] > 0]]

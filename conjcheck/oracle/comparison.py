@@ -74,7 +74,8 @@ class Comparison:
         rho = np.ones((1, kind.rank), dtype=np.int64)
         moved = reflected_by_word(kind, rho, word)[0]
         images = weight_images(kind, self.X.marked)
-        return orbit_of(self.ring.X).locate(np.einsum("k,nkj->nj", moved, images)).tolist()
+        found: list[int] = orbit_of(self.ring.X).locate(np.einsum("k,nkj->nj", moved, images)).tolist()
+        return found
 
     def _reader(self, code: int) -> tuple[Degree, dict[int, SchubertClass]] | None:
         """The degree on X that a packed degree on G/B lifts, and which classes there stand for which here; ``None`` if none."""

@@ -94,7 +94,7 @@ class ResidueTable:
         """``det(powers[rows[a], columns[b]])`` for all a and b, by expansion along the last row, all sizes up to k."""
         p = self.p
         minors = np.ones((1, 1), dtype=np.int64)
-        places = {(): 0}
+        places: dict[tuple[int, ...], int] = {(): 0}
         for size in range(1, self.k + 1):
             chosen = list(combinations(range(self.n), size))
             now = {subset: place for place, subset in enumerate(chosen)}
@@ -104,10 +104,11 @@ class ResidueTable:
             for t in range(size):
                 entries = np.array([subset[t] for subset in chosen])
                 others = np.array([places[subset[:t] + subset[t + 1 :]] for subset in chosen])
-                part = powers[np.ix_(last, entries)] * minors[np.ix_(heads, others)] % p
+                part = powers[last[:, None], entries] * minors[heads[:, None], others] % p
                 total += part if (size - 1 - t) % 2 == 0 else p - part
             minors, places = total % p, now
-        return minors[np.ix_([places[subset] for subset in rows], [places[subset] for subset in columns])]
+        found: Ints = minors[np.array([places[subset] for subset in rows])[:, None], [places[subset] for subset in columns]]
+        return found
 
     def _solve(self, pointwise: Ints) -> Ints:
         """Coefficients in the Schubert basis of functions of J, ``(M, N) -> (M, N)``."""

@@ -2,6 +2,7 @@
 
 import shlex
 import textwrap
+from typing import Any
 
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import SchubertClass
@@ -38,8 +39,6 @@ def text_report(outcome: Outcome, *, replay: str = "") -> str:
     lines = [outcome.verdict, ""]
     if outcome.note:
         lines += _entry("note", outcome.note)
-    if outcome.note.startswith("see "):
-        return "\n".join(lines)
     if outcome.conjecture.statement:
         lines += _entry("statement", outcome.conjecture.statement)
     if finding is None:
@@ -147,28 +146,30 @@ def _entry(label: str, text: str, *, wrap: bool = True) -> list[str]:
     ) or [label]
 
 
-def summary_table(rows: list[dict[str, object]]) -> list[str]:
+def summary_table(outcomes: list[dict[str, Any]]) -> list[str]:
     """The table at the end of a run: one line per conjecture, from the JSON forms of the outcomes of its parts.
 
-    Args:
-        rows: ``Outcome.as_json()`` of every part that ran, in order.
+    Rows, cases and nonzero constants are those of the survey; ``drawn`` counts the rows of the probes.
     """
-    by_name: dict[str, list[dict[str, object]]] = {}
-    for row in rows:
-        by_name.setdefault(str(row["conjecture"]), []).append(row)
-    table = [("conjecture", "status", "rows", "cases", "nonzero", "seconds", "scope")]
+    by_name: dict[str, list[dict[str, Any]]] = {}
+    for outcome in outcomes:
+        by_name.setdefault(outcome["conjecture"], []).append(outcome)
+    table = [("conjecture", "status", "rows", "cases", "nonzero", "drawn", "seconds", "compared, or where it fails")]
     for name, parts in by_name.items():
-        worst = next((p for p in parts if p["status"] != "agrees"), None)
-        survey = next((p for p in parts if p["part"] == "survey"), parts[0])
-        scope = f"{worst['where']} ({'minimal' if worst['minimal'] else 'not known to be minimal'})" if worst else str(survey["where"])
-        shown = [survey] if worst else [p for p in parts if p["part"] != "laws"]
-        totals = [sum(int(str(p[key])) for p in shown) for key in ("rows", "cases", "nonzero")]
-        seconds = sum(float(str(p["seconds"])) for p in parts)
-        status = str(worst["status"]) if worst else "agrees"
-        table.append((name, status, *(f"{total:,}" for total in totals), f"{seconds:.1f}", scope))
+        failures = [part for part in parts if part["status"] != "agrees"]
+        failed = max(failures, key=lambda part: part["cases"], default=None)
+        shown = failed or next((part for part in parts if part["part"] == "survey"), parts[0])
+        drawn = sum(part["rows"] for part in parts if part["part"].startswith("probe"))
+        numbers = [shown["rows"], shown["cases"], shown["nonzero"], drawn]
+        where = shown["where"]
+        if failed:
+            where += " (minimal)" if failed["minimal"] else " (not known to be minimal)"
+        if shown.get("note"):
+            where += f"; {shown['note']}"
+        seconds = sum(part["seconds"] for part in parts)
+        table.append((name, shown["status"], *(f"{number:,}" for number in numbers), f"{seconds:.1f}", where))
     widths = [max(len(line[k]) for line in table) for k in range(len(table[0]) - 1)]
     return [
-        "  ".join(cell.rjust(width) if 1 < k < 6 else cell.ljust(width) for k, (cell, width) in enumerate(zip(line, widths, strict=False)))
-        + f"  {line[-1]}"
+        "  ".join([*(cell.rjust(width) if k > 1 else cell.ljust(width) for k, (cell, width) in enumerate(zip(line, widths, strict=False))), line[-1]])
         for line in table
     ]

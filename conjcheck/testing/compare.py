@@ -96,10 +96,15 @@ class Comparer:
     def inside(self, row: Row) -> bool:
         """Whether the premise on rows holds (a premise on cases is asked case by case).
 
-        Raises whatever the premise raises.
+        A premise that raises counts as holding: then ``Comparer.row`` meets the error and reports it.
         """
-        conjecture = self.conjecture
-        return conjecture.premise is None or not conjecture.premise_by_rows or bool(conjecture.premise(row.X, row.u, row.v))
+        premise = self.conjecture.premise
+        if premise is None or not self.conjecture.premise_by_rows:
+            return True
+        try:
+            return bool(premise(row.X, row.u, row.v))
+        except Exception:
+            return True
 
     def truth(self, row: Row) -> RowTerms:
         """The oracle's nonzero terms that the conjecture speaks about."""
@@ -119,7 +124,8 @@ class Comparer:
 
     def findings(self, row: Row, *, deadline: float = float("inf")) -> list[Finding]:
         """Everything that differs in one row, in order; a failure of the whole row is a single finding."""
-        truth, found, skipped = self.truth(row), [], set()
+        truth, found = self.truth(row), list[Finding]()
+        skipped: set[Key] = set()
         while finding := self._compare(row, truth, deadline=deadline, skipped=skipped).finding:
             found.append(finding)
             if not isinstance(finding.where, Case) or finding.status != "refuted":
@@ -132,25 +138,25 @@ class Comparer:
         return self._compare(case.row, self.truth(case.row), only=(case.w, case.d)).finding
 
     def values(self, row: Row, keys: Iterable[Key]) -> dict[Key, int]:
-        """The rule's nonzero values at some outcomes of a row, as far as it gives values there."""
-        found: dict[Key, int] = {}
+        """The rule's nonzero values at some outcomes of a row (all its values, if it answers by rows); none for a claim.
+
+        Raises whatever the rule raises; ``Comparer.row`` turns that into a finding.
+        """
         if self._is_claim:
-            return found
-        whole: RowTerms | None = None
-        for key in keys:
-            with rule_running(Watch()):
-                try:
+            return {}
+        with rule_running(Watch()):
+            try:
+                self.limit.started = perf_counter()
+                if self.conjecture.by_rows:
+                    return self._whole(self.conjecture.rule(row.X, row.u, row.v), row)
+                found = {}
+                for key in keys:
                     self.limit.started = perf_counter()
-                    if self.conjecture.by_rows:
-                        whole = self._whole(self.conjecture.rule(row.X, row.u, row.v), row) if whole is None else whole
-                        found[key] = whole.get(key, 0)
-                    else:
-                        found[key] = count_of(self.conjecture.rule(*self._arguments(row, *key)))
-                except _ENDINGS:
-                    continue
-                finally:
-                    self.limit.started = 0.0
-        return {key: count for key, count in (whole or found).items() if count}
+                    if count := count_of(self.conjecture.rule(*self._arguments(row, *key))):
+                        found[key] = count
+                return found
+            finally:
+                self.limit.started = 0.0
 
     # -- the comparison itself ---------------------------------------------------------------------------------------
 
@@ -195,7 +201,7 @@ class Comparer:
         rule, classical = conjecture.rule, conjecture.is_classical
         X, u, v = row.X, row.u, row.v
         limit.started = perf_counter()
-        if not self.inside(row):
+        if conjecture.premise is not None and conjecture.premise_by_rows and not conjecture.premise(X, u, v):
             return RowResult(0, 0, None, True)
         premise = None if conjecture.premise_by_rows else conjecture.premise
         size = count_cases(X, u.length + v.length, classical=classical)
@@ -305,7 +311,7 @@ class Comparer:
 
     def _settle(self, finding: Finding) -> Finding:
         """Call the rule once more at the same place: if the answer is another one now, that is the finding."""
-        if finding.status in ("too-slow", "not-independent"):
+        if finding.status in ("too-slow", "not-independent", "unstable"):
             return finding
         first, second = self._portrait(finding), self._answer_again(finding.where)
         if first == second:
@@ -319,10 +325,13 @@ class Comparer:
 
     def _answer_again(self, place: Case | Row) -> str:
         rule, row = self.conjecture.rule, place.row if isinstance(place, Case) else place
+        conjecture = self.conjecture
         with nullcontext() if self._is_claim else rule_running(Watch()):
             try:
                 self.limit.started = perf_counter()
-                if self.conjecture.by_rows:
+                if conjecture.premise is not None and conjecture.premise_by_rows:
+                    conjecture.premise(row.X, row.u, row.v)
+                if conjecture.by_rows:
                     answer = rule(row.X, row.u, row.v, *self._oracle)
                     if self._is_claim:
                         return str(truth_of(answer))

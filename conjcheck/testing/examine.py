@@ -11,8 +11,8 @@ from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.explain import explain
-from conjcheck.testing.finding import Finding, Found, raise_finding
-from conjcheck.testing.laws import broken_laws
+from conjcheck.testing.finding import Finding, Found
+from conjcheck.testing.laws import NoValue, broken_laws
 from conjcheck.testing.minimise import confirm, descend, layer_of, minimise
 from conjcheck.testing.outcome import Outcome
 from conjcheck.testing.probe import ProbeCount, probe_levels, run_probe
@@ -79,8 +79,6 @@ class Examination:
     def survey(self) -> Outcome:
         """Compare everything in order, as far as the budget reaches."""
         started = perf_counter()
-        if self.failure:
-            return self.repeated("survey")
         done = survey(self.comparer, budget=self.effort.survey, coverage=self.coverage)
         if done.finding:
             return self.work_out(done.finding, "survey", started)
@@ -100,8 +98,6 @@ class Examination:
     def laws(self, *, seed: int | None = None) -> Outcome:
         """Hold the rule against the laws on drawn rows of small spaces; no oracle takes part unless a law breaks."""
         started = perf_counter()
-        if self.failure:
-            return self.repeated("laws")
         count = ProbeCount()
         try:
             run_probe(self.law_check(started + self.effort.laws, count), self.small_spaces(), self.conjecture, seed=seed)
@@ -112,8 +108,6 @@ class Examination:
     def probe(self, n: int, spaces: list[FlagVariety], seconds: float, *, seed: int | None = None) -> Outcome:
         """Compare rows drawn at random on some spaces."""
         started = perf_counter()
-        if self.failure:
-            return self.repeated(f"probe[n={n}]")
         count = ProbeCount()
         try:
             run_probe(self.probe_check(started + seconds, count), self.unfinished(spaces), self.conjecture, seed=seed)
@@ -130,44 +124,42 @@ class Examination:
             return Outcome(self.conjecture, "case", "agrees", f"the one case {where}", str(where), 1, 1, seconds=perf_counter() - started)
         return self._describe(Outcome(self.conjecture, "case", finding.status, "one case", finding=finding), started)
 
-    def repeated(self, part: str) -> Outcome:
-        """The failure once more, for a part that has nothing to search any more."""
-        assert self.failure is not None, "only a failure is repeated"
-        return replace(self.failure, part=part, seconds=0.0, note=f"see {self.failure.part}: found there, not searched again")
-
     # -- what a drawn row is checked for --------------------------------------------------------------------------------
 
     def law_check(self, deadline: float, count: ProbeCount) -> Callable[[Row, int], None]:
-        """A check of one row against the laws; raises ``Found``. After the deadline it lets everything pass, unless it failed before."""
+        """A check of one row against the laws; raises ``Found``. After the deadline it lets rows pass, unless one failed before."""
 
         def check(row: Row, choice: int) -> None:
-            if perf_counter() > deadline and not count.failed:
+            if count.is_over(row, deadline):
                 return
             with self.comparer.limit:
                 if not self.comparer.inside(row):
                     return
-                for broken in broken_laws(self.comparer, row, choice):
-                    count.failed = True
-                    finding = next((f for r in sorted(broken.rows) if (f := self.comparer.row(r).finding)), None)
+                try:
+                    broken = next(broken_laws(self.comparer, row, choice), None)
+                    suspects, law = (sorted(set(broken.rows)), f"{broken.law}: {broken.detail}") if broken else ([], "")
+                except NoValue as error:
+                    suspects, law = [error.row], ""
+                if suspects:
+                    count.broken_law = law
+                    finding = next((f for r in suspects if (f := self.comparer.row(r).finding)), None)
                     if finding is None:
-                        raise ConjcheckError(f"the law of {broken.law} is broken ({broken.detail}), but the oracle agrees with every row")
-                    count.broken_law = f"{broken.law}: {broken.detail}"
-                    raise_finding(finding)
+                        raise ConjcheckError(f"a rule breaks a law ({law}) on rows where the oracle agrees with it: {suspects}")
+                    count.fail(finding)
             count.add(row, 0, 0)
 
         return check
 
     def probe_check(self, deadline: float, count: ProbeCount) -> Callable[[Row, int], None]:
-        """A check of one row against the oracle; raises ``Found``. After the deadline it lets everything pass, unless it failed before."""
+        """A check of one row against the oracle; raises ``Found``. After the deadline it lets rows pass, unless one failed before."""
 
         def check(row: Row, choice: int) -> None:
-            if perf_counter() > deadline and not count.failed:
+            if count.is_over(row, deadline):
                 return
             with self.comparer.limit:
                 result = self.comparer.row(row, most_cases=self.effort.most_cases)
             if result.finding:
-                count.failed = True
-                raise_finding(result.finding)
+                count.fail(result.finding)
             if result.cases:
                 count.add(row, result.cases, result.nonzero, sampled=not result.complete)
 
@@ -177,7 +169,7 @@ class Examination:
 
     def small_spaces(self) -> list[FlagVariety]:
         """The spaces on which laws are tried."""
-        small = []
+        small: list[FlagVariety] = []
         for X in in_reach(self.conjecture):
             if X.rank > 4 and small:
                 break
@@ -216,7 +208,7 @@ class Examination:
 
     def work_out(self, finding: Finding, part: str, started: float, broken_law: str = "") -> Outcome:
         """From the first failure to the smallest one, confirmed and explained; remembered for the parts that follow."""
-        if part != "survey":
+        if part != "survey" and finding.status != "too-slow":
             finding = descend(self.comparer, finding, budget=self.effort.minimise / 4)
         minimum = minimise(self.comparer, finding, self.coverage, budget=self.effort.minimise)
         finding = minimum.finding
@@ -241,11 +233,11 @@ class Examination:
 
     def _describe(self, outcome: Outcome, started: float) -> Outcome:
         """Confirm the oracle's value and explain the failure."""
-        finding, changes = outcome.finding, {}
+        finding = outcome.finding
         if finding and finding.status == "refuted":
             finding, how = confirm(finding)
-            changes = {"finding": finding, "confirmed_by": how, "explanation": explain(self.comparer, finding)}
-        return replace(outcome, seconds=perf_counter() - started, **changes)
+            outcome = replace(outcome, finding=finding, confirmed_by=how, explanation=explain(self.comparer, finding))
+        return replace(outcome, seconds=perf_counter() - started)
 
 
 def examine(conjecture: Conjecture, *, effort: str = "normal", seed: int | None = None, **options: Any) -> list[Outcome]:

@@ -2,10 +2,11 @@
 
 from dataclasses import dataclass
 
-from conjcheck.geometry.case import Case, outcomes
+from conjcheck.geometry.case import Case, Row, outcomes
 from conjcheck.oracle.engine import Product
-from conjcheck.testing.compare import Comparer
+from conjcheck.testing.compare import Comparer, Key
 from conjcheck.testing.finding import Finding
+from conjcheck.testing.limits import CallInterrupted
 
 __all__ = ["Explanation", "explain"]
 
@@ -44,7 +45,7 @@ def explain(comparer: Comparer, finding: Finding) -> Explanation:
     partial = len(every) > _MOST_OUTCOMES and not comparer.conjecture.by_rows
     keys = [*truth] if partial else every
     with comparer.limit:
-        values = comparer.values(row, keys)
+        values = _values(comparer, row, keys)
         kinds = []
         if isinstance(finding.where, Case) and finding.rule is not None and finding.oracle is not None:
             case, rule, true = finding.where, finding.rule, finding.oracle
@@ -58,10 +59,18 @@ def explain(comparer: Comparer, finding: Finding) -> Explanation:
                 kinds.append("q-degree")
             mirrored = Case(case.X, case.v, case.u, case.w, case.d)
             if case.u is not case.v and comparer.inside(mirrored.row):
-                other = comparer.values(mirrored.row, [(case.w, case.d)])
+                other = _values(comparer, mirrored.row, [(case.w, case.d)])
                 if other.get((case.w, case.d), 0) != rule:
                     kinds.append("not symmetric")
     return Explanation(tuple(kinds), Product.of(values), by_oracle, partial)
+
+
+def _values(comparer: Comparer, row: Row, keys: list[Key]) -> dict[Key, int]:
+    """The rule's values, none where it has none."""
+    try:
+        return comparer.values(row, keys)
+    except (Exception, SystemExit, CallInterrupted):
+        return {}
 
 
 def _sum(terms: dict, case: Case) -> int:  # type: ignore[type-arg]  # a product or a dictionary of its terms

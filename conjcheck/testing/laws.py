@@ -10,8 +10,9 @@ from conjcheck.geometry.case import Case, Row, count_cases, outcomes, place_in_r
 from conjcheck.geometry.flag_variety import SchubertClass
 from conjcheck.geometry.symmetries import diagram_images, seidel
 from conjcheck.testing.compare import Comparer, Key
+from conjcheck.testing.limits import CallInterrupted
 
-__all__ = ["LAWS", "BrokenLaw", "broken_laws"]
+__all__ = ["LAWS", "BrokenLaw", "NoValue", "broken_laws"]
 
 LAWS = ("one answer", "unit", "commutativity", "Poincare duality", "S3-symmetry", "Seidel symmetry", "diagram symmetry", "associativity")
 """The laws, in the order in which they are tried."""
@@ -37,6 +38,14 @@ class BrokenLaw:
     rows: tuple[Row, ...]
 
 
+class NoValue(Exception):
+    """The rule gives no values on a row that a law asked for; ``.row`` is the row."""
+
+    def __init__(self, row: Row) -> None:
+        super().__init__(str(row))
+        self.row = row
+
+
 def broken_laws(comparer: Comparer, row: Row, choice: int = 0) -> Iterator[BrokenLaw]:
     """The laws that a candidate breaks around one row.
 
@@ -44,6 +53,9 @@ def broken_laws(comparer: Comparer, row: Row, choice: int = 0) -> Iterator[Broke
         comparer: what calls the rule.
         row: a row inside the premise.
         choice: any integer; picks the third class and the Seidel element where a law leaves a choice.
+
+    Raises:
+        NoValue: the rule gives no values on a row that takes part.
 
     Rows with more than 3,000 outcomes are left alone: the survey and the probe are the better tools there.
     """
@@ -65,7 +77,10 @@ class _Neighbourhood:
             return None
         if not self.comparer.inside(row):
             return None
-        return self.comparer.values(row, outcomes(row.X, total, classical=classical))
+        try:
+            return self.comparer.values(row, outcomes(row.X, total, classical=classical))
+        except (Exception, SystemExit, CallInterrupted) as error:
+            raise NoValue(row) from error
 
     def _admits(self, case: Case) -> bool:
         """Whether a premise on cases, if any, holds."""

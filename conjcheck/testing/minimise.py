@@ -103,9 +103,9 @@ def minimise(comparer: Comparer, finding: Finding, coverage: Coverage, *, budget
         budget: seconds.
     """
     started = perf_counter()
-    with comparer.limit:
-        first = comparer.row(finding.row, deadline=started + budget / 4).finding
-    finding = first or finding
+    if finding.status != "too-slow":
+        with comparer.limit:
+            finding = comparer.row(finding.row, deadline=started + budget / 4).finding or finding
     walked = survey(comparer, budget=budget - (perf_counter() - started), stop_before=finding.row, coverage=coverage)
     if walked.finding:
         finding = walked.finding
@@ -124,7 +124,8 @@ def minimise(comparer: Comparer, finding: Finding, coverage: Coverage, *, budget
 def layer_of(comparer: Comparer, finding: Finding, *, budget: float) -> Layer:
     """All failures of the same kind in the space of the smallest one, from there on, within a budget."""
     deadline = perf_counter() + budget
-    X, found, seen, complete = finding.row.X, [], 0, True
+    X, seen, complete = finding.row.X, 0, True
+    found: list[Finding] = []
     start = finding.row.sort_key
     with comparer.limit:
         for row in rows(X):

@@ -2,7 +2,8 @@
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
-from typing import Any
+from time import perf_counter
+from typing import Any, NoReturn
 
 from hypothesis import HealthCheck, Phase, given, seed, settings
 from hypothesis import strategies as st
@@ -10,9 +11,9 @@ from hypothesis import strategies as st
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.geometry.case import Row
 from conjcheck.geometry.families import Varieties
-from conjcheck.geometry.flag_variety import FlagVariety
+from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.strategies import rows
-from conjcheck.testing.finding import STATUSES, Found
+from conjcheck.testing.finding import STATUSES, Finding, Found, raise_finding
 from conjcheck.testing.survey import in_reach
 
 __all__ = ["Check", "ProbeCount", "gravest", "probe_levels", "probe_test", "run_probe"]
@@ -35,6 +36,7 @@ class ProbeCount:
         sampled: rows of which not every zero was compared.
         failed: whether something was found; from then on time limits do not apply, so that shrinking sees one and the same check.
         broken_law: the law that led to it, if one did.
+        slow: a finding that took too long to be met twice; a search that has one repeats it instead of calling the rule again.
     """
 
     rows: int = 0
@@ -43,6 +45,7 @@ class ProbeCount:
     sampled: int = 0
     failed: bool = False
     broken_law: str = ""
+    slow: Finding | None = None
     _seen: set[Row] = field(default_factory=set)
 
     def add(self, row: Row, cases: int, nonzero: int, *, sampled: bool = False) -> None:
@@ -52,6 +55,21 @@ class ProbeCount:
         self.nonzero += nonzero
         self.sampled += sampled
         self._seen.add(row)
+
+    def fail(self, finding: Finding) -> NoReturn:
+        """Raise a finding, and remember that there is one."""
+        self.failed = True
+        if finding.status == "too-slow":
+            self.slow = finding
+        raise_finding(finding)
+
+    def is_over(self, row: Row, deadline: float) -> bool:
+        """Whether a row need not be checked any more: the time is up, or a call was too slow (then that row fails again, unasked)."""
+        if self.slow is not None:
+            if row == self.slow.row:
+                raise_finding(self.slow)
+            return True
+        return not self.failed and perf_counter() > deadline
 
     @property
     def distinct(self) -> int:
@@ -100,16 +118,25 @@ def probe_test(
     """
     premise = conjecture.premise if conjecture.premise_by_rows else None
 
+    def inside(X: FlagVariety, u: SchubertClass, v: SchubertClass) -> bool:
+        """The premise; where it raises, the row is drawn, so that the check meets the error."""
+        try:
+            return premise is None or bool(premise(X, u, v))
+        except Exception:
+            return True
+
     def strategy() -> st.SearchStrategy[Row]:
-        return rows(on=Varieties(*spaces()), premise=premise)
+        return rows(on=Varieties(*spaces()), premise=inside if premise else None, classical=conjecture.is_classical)
+
+    profile = settings()
 
     @settings(
-        settings.default,
+        profile,
         deadline=None,
         suppress_health_check=list(HealthCheck),
         print_blob=False,
         **choices,
-        phases=[phase for phase in settings.default.phases if phase is not Phase.explain],
+        phases=[phase for phase in profile.phases if phase is not Phase.explain],
     )
     @given(row=st.deferred(strategy), choice=st.integers(0, 2**16))
     def probe(row: Row, choice: int) -> None:

@@ -8,7 +8,8 @@ terms that are known already.
 
     python plain_scipy.py 6
 
-Conventions: permutations are tuples of values 0..n-1, positions 0-based; degrees have n - 1 entries, ``d[i]`` the exponent of ``q_{i+1}``.
+Conventions: permutations are tuples of values 0..n-1, positions 0-based; degrees have n - 1 entries, ``d[i]`` the exponent
+of ``q_{i+1}``.
 """
 
 import sys

@@ -1,6 +1,7 @@
-"""The rules are imported by the names of their files."""
+"""The rules and the definitions they are held to are imported by the names of their files."""
 
 import sys
 from pathlib import Path
 
-sys.path.insert(0, str(Path(__file__).parents[2] / "conjectures"))
+HERE = Path(__file__).parent
+sys.path[:0] = [str(HERE), str(HERE.parents[1] / "conjectures")]

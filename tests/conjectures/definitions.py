@@ -45,7 +45,7 @@ def schubert_polynomial(w: Permutation) -> Polynomial:
 
 @cache
 def classical_product(u: Permutation, v: Permutation) -> dict[Permutation, int]:
-    """``{w: c_{u,v}^w}`` on complete flags: the divided difference by w of a polynomial of degree l(w) is its coefficient of S_w."""
+    """``{w: c_{u,v}^w}`` on complete flags: the divided difference by w, in degree l(w), is the coefficient of S_w."""
     f: Polynomial = Counter()
     for a, x in schubert_polynomial(u).items():
         for b, y in schubert_polynomial(v).items():

@@ -4,10 +4,18 @@ import pytest
 import sympy
 from sympy.liealgebras.cartan_matrix import CartanMatrix
 
-from conjcheck.errors import NotationError
-from conjcheck.geometry.cartan import CartanType, automorphisms, cartan_matrix, cominuscule_nodes, opposition, positive_roots
+from conjcheck.errors import NotationError, OutOfReach
+from conjcheck.geometry.cartan import (
+    LARGEST_RANK,
+    CartanType,
+    automorphisms,
+    cartan_matrix,
+    cominuscule_nodes,
+    opposition,
+    positive_roots,
+)
 
-NAMES = "A1 A2 A3 A4 A7 B2 B3 B4 C2 C3 C4 D4 D5 D6 E6 E7 E8 F4 G2".split()
+NAMES = ["A1", "A2", "A3", "A4", "A7", "B2", "B3", "B4", "C2", "C3", "C4", "D4", "D5", "D6", "E6", "E7", "E8", "F4", "G2"]
 
 # Bourbaki, Groupes et algebres de Lie, ch. 4-6, plates I-IX; from memory.
 NUMBER_OF_POSITIVE_ROOTS = {
@@ -30,7 +38,15 @@ HIGHEST_ROOT = {
     "F4": (2, 3, 4, 2),
     "G2": (3, 2),
 }
-DETERMINANT = {"A": lambda r: r + 1, "B": lambda r: 2, "C": lambda r: 2, "D": lambda r: 4, "E": lambda r: 9 - r, "F": lambda r: 1, "G": lambda r: 1}
+DETERMINANT = {
+    "A": lambda r: r + 1,
+    "B": lambda r: 2,
+    "C": lambda r: 2,
+    "D": lambda r: 4,
+    "E": lambda r: 9 - r,
+    "F": lambda r: 1,
+    "G": lambda r: 1,
+}
 
 
 def kind_of(name):
@@ -105,7 +121,10 @@ def test_every_reflection_permutes_the_roots(name):
             assert coroot_of[image] == tuple(b - codown * a for a, b in zip(alpha_vee, beta_vee, strict=True))
 
 
-@pytest.mark.parametrize(("name", "count"), [("A1", 1), ("A4", 2), ("B2", 1), ("B3", 1), ("C3", 1), ("D4", 6), ("D5", 2), ("E6", 2), ("E7", 1), ("F4", 1), ("G2", 1)])
+@pytest.mark.parametrize(
+    ("name", "count"),
+    [("A1", 1), ("A4", 2), ("B2", 1), ("B3", 1), ("C3", 1), ("D4", 6), ("D5", 2), ("E6", 2), ("E7", 1), ("F4", 1), ("G2", 1)],
+)
 def test_diagram_automorphisms(name, count):
     """As many as the picture of the diagram shows, each preserves the Cartan matrix, the identity comes first."""
     kind = kind_of(name)
@@ -114,9 +133,7 @@ def test_diagram_automorphisms(name, count):
     assert found[0] == tuple(range(1, kind.rank + 1))
     for images in found:
         assert sorted(images) == sorted(found[0])
-        assert all(
-            matrix[a - 1][b - 1] == matrix[i][j] for i, a in enumerate(images) for j, b in enumerate(images)
-        )
+        assert all(matrix[a - 1][b - 1] == matrix[i][j] for i, a in enumerate(images) for j, b in enumerate(images))
 
 
 @pytest.mark.parametrize("name", NAMES)
@@ -135,7 +152,17 @@ def test_opposition_is_what_the_longest_element_does(name):
 
 @pytest.mark.parametrize(
     ("name", "nodes"),
-    [("A4", (1, 2, 3, 4)), ("B4", (1,)), ("C4", (4,)), ("D5", (1, 4, 5)), ("E6", (1, 6)), ("E7", (7,)), ("E8", ()), ("F4", ()), ("G2", ())],
+    [
+        ("A4", (1, 2, 3, 4)),
+        ("B4", (1,)),
+        ("C4", (4,)),
+        ("D5", (1, 4, 5)),
+        ("E6", (1, 6)),
+        ("E7", (7,)),
+        ("E8", ()),
+        ("F4", ()),
+        ("G2", ()),
+    ],
 )
 def test_cominuscule_nodes(name, nodes):
     """Bourbaki's list; with the node 0 they number the determinant of the Cartan matrix."""
@@ -155,6 +182,8 @@ def test_cominuscule_nodes(name, nodes):
         ("E", 5, "expected a rank from 6 to 8 for type E, got rank=5"),
         ("F", 3, "expected a rank from 4 to 4 for type F, got rank=3"),
         ("G", 3, "expected a rank from 2 to 2 for type G, got rank=3"),
+        ("A", 2.0, "expected an int for the rank, got rank=2.0"),
+        ("A", "2", "expected an int for the rank, got rank='2'"),
     ],
 )
 def test_types_that_do_not_exist(letter, rank, message):
@@ -162,6 +191,13 @@ def test_types_that_do_not_exist(letter, rank, message):
     with pytest.raises(NotationError) as error:
         CartanType(letter, rank)
     assert str(error.value) == message
+
+
+def test_huge_ranks_are_refused_at_once():
+    """The number of roots grows with the square of the rank: beyond ``LARGEST_RANK`` nothing is listed."""
+    assert CartanType("A", LARGEST_RANK).rank == LARGEST_RANK
+    with pytest.raises(OutOfReach, match=f"expected a rank of at most {LARGEST_RANK}, got rank={LARGEST_RANK + 1}"):
+        CartanType("A", LARGEST_RANK + 1)
 
 
 def test_types_are_ordered_values():

@@ -36,9 +36,9 @@ SMALL = [Gr(1, 2), Gr(2, 4), Fl(3), Fl(1, 3, n=4), Fl(1, 2, n=4), FlagVariety("B
 def test_text_of_cases_and_rows_parses_back(case):
     """``Case.parse(str(case)) == case``, the same for rows, and ``repr`` is that call."""
     assert Case.parse(str(case)) == case
-    assert eval(repr(case)) == case  # noqa: S307 - what repr promises
+    assert eval(repr(case)) == case
     assert Row.parse(str(case.row)) == case.row
-    assert eval(repr(case.row)) == case.row  # noqa: S307
+    assert eval(repr(case.row)) == case.row
     assert pickle.loads(pickle.dumps(case)) == case
     assert pickle.loads(pickle.dumps(case)).u is case.u
     assert hash(Case.parse(str(case))) == hash(case)
@@ -95,7 +95,9 @@ def test_rows_are_complete_and_in_order(X):
 
 @pytest.mark.parametrize("X", SMALL, ids=str)
 def test_outcomes_are_complete_and_in_order(X):
-    """For each total of lengths: all (w, d) that obey the degree axiom, found here in a plain box, once each, in the order of cases."""
+    """For each total of lengths: all (w, d) that obey the degree axiom, found here in a plain box, once each, in the order
+    of cases.
+    """
     for total in range(-1, 2 * X.dim + 1):
         box = product(*(range(max(total, 0) // q + 1) for q in X.q_degrees))
         weights = {d: sum(a * b for a, b in zip(d, X.q_degrees, strict=True)) for d in box}
@@ -116,7 +118,9 @@ def test_outcomes_of_a_row_follow_each_other_as_cases():
 
 
 def test_number_of_outcomes_of_the_point_squared():
-    """``count_cases`` counts without listing: the point squared on ``Fl(5)`` has the number of outcomes that a generating function gives."""
+    """``count_cases`` counts without listing: the point squared on ``Fl(5)`` has the number of outcomes that a generating
+    function gives.
+    """
     X = Fl(5)
     series = [0] * 21
     series[0] = 1
@@ -183,8 +187,22 @@ X, Y = Gr(2, 4), Gr(2, 5)
         (
             lambda: Case.parse("Gr(2,4): (1) * (1) -> (2), q^(-1)"),
             NotationError,
-            "expected a case such as 'Gr(2,4): (2,1) * (2,1) -> (2), q^(1)', got 'Gr(2,4): (1) * (1) -> (2), q^(-1)'",
+            "expected a class such as (2,1), [2143] or <1.3.2>, got '(2), q^(-1)'",
         ),
+        (
+            lambda: Case.parse("Fl(3): [132] * [132] -> [123], q^(1,,0)"),
+            NotationError,
+            "expected a class such as (2,1), [2143] or <1.3.2>, got '[123], q^(1,,0)'",
+        ),
+        (lambda: Case.parse(7), NotationError, "expected a case such as 'Gr(2,4): (2,1) * (2,1) -> (2), q^(1)', got 7"),
+        (lambda: Row.parse(7), NotationError, "expected a row such as 'Gr(2,4): (2,1) * (1)', got 7"),
+        (
+            lambda: Row("Gr(2,4)", X.point, X.point),
+            NotationError,
+            "expected a flag variety for X, got X='Gr(2,4)'; make one with FlagVariety('Gr(2,4)')",
+        ),
+        (lambda: parse_class(X, "(2,,1)"), NotationError, "expected a class such as (2,1), [2143] or <1.3.2>, got '(2,,1)'"),
+        (lambda: parse_class(X, None), NotationError, "expected a class such as (2,1), [2143] or <1.3.2>, got None"),
         (lambda: parse_class(X, "{2,1}"), NotationError, "expected a class such as (2,1), [2143] or <1.3.2>, got '{2,1}'"),
         (lambda: parse_class(X, "[1..2]"), NotationError, "expected a class such as (2,1), [2143] or <1.3.2>, got '[1..2]'"),
         (

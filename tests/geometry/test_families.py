@@ -28,7 +28,9 @@ def everything(n):
     ],
 )
 def test_families_hold_what_they_say_in_order(family, belongs):
-    """``up_to(6)`` is the sorted list of the members with n <= 6, ``of_rank`` its slices, ``in`` agrees, iteration starts the same."""
+    """``up_to(6)`` is the sorted list of the members with n <= 6, ``of_rank`` its slices, ``in`` agrees, iteration starts
+    the same.
+    """
     expected = sorted(X for X in everything(6) if belongs(X))
     assert list(family.up_to(6)) == expected
     assert [X for rank in range(1, 6) for X in family.of_rank(rank)] == expected

@@ -1,6 +1,6 @@
 """Permutations, partitions, strings and words: the conventions, the way back, and every refusal."""
 
-from itertools import combinations
+from itertools import combinations, pairwise
 
 import numpy as np
 import pytest
@@ -36,7 +36,7 @@ def minimal_permutations(draw):
     n, steps = draw(flags())
     w = draw(st.permutations(range(1, n + 1)))
     cuts = [0, *steps, n]
-    return n, steps, tuple(x for a, b in zip(cuts, cuts[1:], strict=False) for x in sorted(w[a:b]))
+    return n, steps, tuple(x for a, b in pairwise(cuts) for x in sorted(w[a:b]))
 
 
 def test_products_compose_as_functions():
@@ -86,7 +86,13 @@ def test_partitions_by_hand(k, n, shape, w):
 
 
 @settings(deadline=None)
-@given(st.integers(2, 9).flatmap(lambda n: st.integers(1, n - 1).flatmap(lambda k: st.tuples(st.just(n), st.just(k), st.lists(st.integers(0, n - k), min_size=k, max_size=k)))))
+@given(
+    st.integers(2, 9).flatmap(
+        lambda n: st.integers(1, n - 1).flatmap(
+            lambda k: st.tuples(st.just(n), st.just(k), st.lists(st.integers(0, n - k), min_size=k, max_size=k))
+        )
+    )
+)
 def test_partition_and_permutation_determine_each_other(case):
     """The formula holds in every row, ``|lambda|`` is the number of inversions, trailing zeros do not matter."""
     n, k, parts = case
@@ -145,7 +151,10 @@ def test_text_of_permutations():
 @pytest.mark.parametrize(
     ("call", "message"),
     [
-        (lambda: read_integers("word", "12"), "expected a sequence of integers for word, got word='12'; write a tuple such as (2, 1)"),
+        (
+            lambda: read_integers("word", "12"),
+            "expected a sequence of integers for word, got word='12'; write a tuple such as (2, 1)",
+        ),
         (lambda: read_integers("word", 12), "expected a sequence of integers for word, got word=12; write a tuple such as (2, 1)"),
         (lambda: read_integers("word", (1, 2.0)), "expected integers in word, got entry 2 = 2.0 of word=(1, 2.0)"),
         (lambda: read_integers("word", [None]), "expected integers in word, got entry 1 = None of word=[None]"),

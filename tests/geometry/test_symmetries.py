@@ -1,14 +1,16 @@
 """Seidel elements and diagram automorphisms as relabellings: formulas of type A, group laws, orbits."""
 
+import itertools
 from collections import Counter
 
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from conjcheck.geometry.case import Case, Row
+from conjcheck import product
+from conjcheck.geometry.case import Case
 from conjcheck.geometry.flag_variety import Fl, FlagVariety, Gr
-from conjcheck.geometry.symmetries import diagram_images, orbit_of_case, orbit_of_row, seidel
+from conjcheck.geometry.symmetries import diagram_images, orbit_of_case, seidel
 
 SPACES = [Gr(1, 2), Gr(2, 4), Gr(2, 5), Fl(3), Fl(4), Fl(1, 3, n=4), Fl(1, 2, n=4), Fl(2, 3, n=5)]
 OTHERS = [FlagVariety(name) for name in ("B2/B", "B3/P2", "C3/P1,3", "D4/B", "D5/P5", "E6/P1", "G2/B")]
@@ -24,7 +26,7 @@ def varieties(draw, most=6):
 def block_sorted(w, X):
     """The minimal representative of a permutation."""
     cuts = [0, *X.steps, X.n]
-    return tuple(x for a, b in zip(cuts, cuts[1:], strict=False) for x in sorted(w[a:b]))
+    return tuple(x for a, b in itertools.pairwise(cuts) for x in sorted(w[a:b]))
 
 
 @settings(deadline=None)
@@ -46,7 +48,9 @@ def test_seidel_elements_of_type_a_rotate_the_values(X):
 
 @pytest.mark.parametrize("X", [*SPACES, *OTHERS], ids=str)
 def test_seidel_elements_form_a_group_that_keeps_degrees(X):
-    """``table`` is a commutative group, ``images`` an action of it, and ``S_g * sigma_u = q^shift sigma_{g u}`` keeps the degree."""
+    """``table`` is a commutative group, ``images`` an action of it, and ``S_g * sigma_u = q^shift sigma_{g u}`` keeps the
+    degree.
+    """
     group = seidel(X)
     size = len(group.units)
     assert group.images[0].tolist() == list(range(len(X.classes)))
@@ -60,7 +64,9 @@ def test_seidel_elements_form_a_group_that_keeps_degrees(X):
         unit = X.classes[group.units[g]]
         for u in X.classes:
             image = X.classes[group.images[g, u.index]]
-            assert unit.length + u.length == image.length + sum(a * b for a, b in zip(group.shifts[g, u.index], X.q_degrees, strict=True))
+            assert unit.length + u.length == image.length + sum(
+                a * b for a, b in zip(group.shifts[g, u.index], X.q_degrees, strict=True)
+            )
         for h in range(size):
             product = group.table[g, h]
             assert (group.images[g][group.images[h]] == group.images[product]).all()
@@ -69,7 +75,9 @@ def test_seidel_elements_form_a_group_that_keeps_degrees(X):
             assert (both == group.shifts[product] + group.shifts[g, group.units[h]]).all()
 
 
-@pytest.mark.parametrize(("name", "size"), [("B3/B", 2), ("C3/B", 2), ("D4/B", 4), ("D5/P1", 4), ("E6/P1", 3), ("E7/P7", 2), ("G2/B", 1), ("F4/P1", 1)])
+@pytest.mark.parametrize(
+    ("name", "size"), [("B3/B", 2), ("C3/B", 2), ("D4/B", 4), ("D5/P1", 4), ("E6/P1", 3), ("E7/P7", 2), ("G2/B", 1), ("F4/P1", 1)]
+)
 def test_order_of_the_seidel_group(name, size):
     """It is the fundamental group of the adjoint group."""
     assert len(seidel(FlagVariety(name)).units) == size
@@ -121,25 +129,43 @@ def test_orbits_of_cases_are_classes_of_an_equivalence(case):
 
 @settings(deadline=None)
 @given(cases())
-def test_orbits_of_rows_are_classes_of_an_equivalence(case):
-    """The same for rows; swapped rows are there, and the rows of an orbit of cases by Seidel elements stay inside."""
-    row = case.row
-    found = orbit_of_row(row)
-    assert row in found
-    assert Row(row.X, row.v, row.u) in found
-    assert all(orbit_of_row(other) == found for other in sorted(found)[:3])
+def test_classical_orbits_stay_classical(case):
+    """Without Seidel elements an orbit is smaller, holds the case, and keeps ``sum d_i``: a classical case meets classical
+    ones only.
+    """
+    found = orbit_of_case(case, seidel_too=False)
+    assert case in found
+    assert found <= orbit_of_case(case)
+    assert {sum(other.d) for other in found} == {sum(case.d)}
+    assert all(orbit_of_case(other, seidel_too=False) == found for other in sorted(found)[:3])
+
+
+def test_orbits_hold_swapped_and_dual_cases():
+    """Law 2 by hand on ``Gr(2,4)``: the orbit holds the factors exchanged, and ``(u, w^vee; v^vee)``."""
+    case = Case.parse("Gr(2,4): (1) * (2,1) -> (2,2), q^(0)")
+    found = orbit_of_case(case, seidel_too=False)
+    assert Case.parse("Gr(2,4): (2,1) * (1) -> (2,2), q^(0)") in found
+    assert Case.parse("Gr(2,4): (1) * () -> (1), q^(0)") in found
+    assert Case.parse("Gr(2,4): () * (1) -> (1), q^(0)") in found
+
+
+def test_seidel_orbits_by_hand():
+    """On P^1 all nonzero constants are one orbit: 1 * 1 = 1, 1 * p = p, p * 1 = p, p * p = q."""
+    names = ["() * () -> (), q^(0)", "(1) * () -> (1), q^(0)", "() * (1) -> (1), q^(0)", "(1) * (1) -> (), q^(1)"]
+    expected = {Case.parse(f"Gr(1,2): {name}") for name in names}
+    assert all(orbit_of_case(case) == expected for case in expected)
 
 
 def test_how_much_symmetry_saves():
-    """On ``Fl(4)`` the 576 rows fall into orbits of at most 2 * 2 * 4^2 = 64, which partition them."""
-    X = Fl(4)
-    left = {Row(X, u, v) for u in X.classes for v in X.classes}
+    """The 45 nonzero constants of ``Fl(3)`` are two orbits: 27 with a Seidel class (123, 231, 312) among the factors, one in
+    each of the 27 rows, and the two terms in each of the 9 rows without."""
+    X = Fl(3)
+    left = {Case(X, u, v, w, d) for u in X.classes for v in X.classes for (w, d) in product(u, v)}
+    assert len(left) == 45
     sizes = []
     while left:
-        found = orbit_of_row(min(left))
+        found = orbit_of_case(min(left))
         assert found <= left
         left -= found
         sizes.append(len(found))
-    assert sum(sizes) == 576
-    assert max(sizes) <= 64
-    assert len(sizes) < 30
+    assert sorted(sizes) == [18, 27]

@@ -1,7 +1,7 @@
 """Orbits of weights against permutations, Poincare polynomials and orders of Weyl groups."""
 
 from collections import Counter
-from itertools import combinations, permutations, product
+from itertools import combinations, pairwise, permutations, product
 from math import comb, factorial, prod
 
 import numpy as np
@@ -61,14 +61,14 @@ def minimal_permutations(n, steps):
     return sorted(allowed, key=lambda w: (inversions(w), w))
 
 
-@pytest.mark.parametrize("name", "A1 A4 A7 B2 B5 C4 D4 D7 E6 E7 E8 F4 G2".split())
+@pytest.mark.parametrize("name", ["A1", "A4", "A7", "B2", "B5", "C4", "D4", "D7", "E6", "E7", "E8", "F4", "G2"])
 def test_order_of_the_weyl_group(name):
     """``|W|`` is the product of the degrees of the basic invariants."""
     kind = kind_of(name)
     assert number_of_cosets(kind, everything(kind)) == prod(DEGREES[kind.letter](kind.rank))
 
 
-@pytest.mark.parametrize("name", "A3 A5 B2 B4 C3 D4 F4 G2".split())
+@pytest.mark.parametrize("name", ["A3", "A5", "B2", "B4", "C3", "D4", "F4", "G2"])
 def test_lengths_follow_the_poincare_polynomial(name):
     """On G/B the number of classes of each length is a coefficient of ``prod (1 + q + ... + q^(d - 1))`` (Chevalley, Solomon)."""
     kind = kind_of(name)
@@ -88,7 +88,17 @@ def test_grassmannian_lengths_are_gaussian_binomials(k, n):
 
 @pytest.mark.parametrize(
     ("name", "marked"),
-    [("A4", (2, 3)), ("A5", (1, 5)), ("B3", (2,)), ("C4", (4,)), ("D5", (1, 4)), ("E6", (1,)), ("E7", (7,)), ("F4", (4,)), ("G2", (1,))],
+    [
+        ("A4", (2, 3)),
+        ("A5", (1, 5)),
+        ("B3", (2,)),
+        ("C4", (4,)),
+        ("D5", (1, 4)),
+        ("E6", (1,)),
+        ("E7", (7,)),
+        ("F4", (4,)),
+        ("G2", (1,)),
+    ],
 )
 def test_number_of_cosets_counts_the_orbit(name, marked):
     """The closed formula of heights agrees with the enumeration."""
@@ -105,7 +115,9 @@ def test_type_a_orbit_is_the_list_of_minimal_permutations(n, steps):
     assert found.lengths.tolist() == [Permutation([x - 1 for x in w]).inversions() for w in expected]
 
 
-@pytest.mark.parametrize(("name", "marked"), [("A3", (1, 2, 3)), ("A4", (2,)), ("B2", (1, 2)), ("C3", (1, 3)), ("D4", (2,)), ("G2", (1, 2))])
+@pytest.mark.parametrize(
+    ("name", "marked"), [("A3", (1, 2, 3)), ("A4", (2,)), ("B2", (1, 2)), ("C3", (1, 3)), ("D4", (2,)), ("G2", (1, 2))]
+)
 def test_words_are_the_first_reduced_words(name, marked):
     """The word of each class is the lexicographically first of all reduced words of it, found by brute force."""
     kind = kind_of(name)
@@ -161,7 +173,9 @@ def test_images_of_fundamental_weights_in_type_a(case):
                 assert drops[index, k - 1, i - 1] == min(k, i) - sum(x <= i for x in head)
 
 
-@pytest.mark.parametrize(("name", "marked"), [("B3", (1, 2, 3)), ("C3", (2,)), ("D4", (2, 3)), ("E6", (1,)), ("G2", (1, 2)), ("F4", (4,))])
+@pytest.mark.parametrize(
+    ("name", "marked"), [("B3", (1, 2, 3)), ("C3", (2,)), ("D4", (2, 3)), ("E6", (1,)), ("G2", (1, 2)), ("F4", (4,))]
+)
 def test_images_of_fundamental_weights_in_every_type(name, marked):
     """They come from the reduced words letter by letter, the last letter first, and the drops are nonnegative sums of roots."""
     kind = kind_of(name)
@@ -199,11 +213,13 @@ def test_dual_is_the_block_sorted_reverse_complement_in_values(n, steps):
     ws = minimal_permutations(n, steps)
     cuts = [0, *steps, n]
     for k, w in enumerate(ws):
-        blocks = [sorted(n + 1 - x for x in w[a:b]) for a, b in zip(cuts, cuts[1:], strict=False)]
+        blocks = [sorted(n + 1 - x for x in w[a:b]) for a, b in pairwise(cuts)]
         assert ws[dual_indices(CartanType("A", n - 1), steps)[k]] == tuple(x for block in blocks for x in block)
 
 
-@pytest.mark.parametrize(("name", "marked"), [("A5", (3,)), ("B3", (1, 3)), ("D5", (5,)), ("E6", (1,)), ("E6", (1, 6)), ("D4", (1, 2, 3, 4))])
+@pytest.mark.parametrize(
+    ("name", "marked"), [("A5", (3,)), ("B3", (1, 3)), ("D5", (5,)), ("E6", (1,)), ("E6", (1, 6)), ("D4", (1, 2, 3, 4))]
+)
 def test_duality_is_an_involution_with_complementary_lengths(name, marked):
     """``l(u) + l(u^vee) = dim`` and ``u^vee^vee = u`` in every type, also where ``-1`` is not in W."""
     kind = kind_of(name)

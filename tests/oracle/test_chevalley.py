@@ -2,7 +2,8 @@
 
 import re
 from collections import Counter
-from itertools import combinations, product as cartesian
+from itertools import combinations
+from itertools import product as cartesian
 from math import factorial
 
 import pytest
@@ -84,7 +85,24 @@ def test_divisors_on_complete_flags_are_quantum_monk(n):
             assert multiply(X, r, one(X, u.index)) == expected
 
 
-NAMES = "A3/B A4/P2,3 A5/P1,3,4 B2/B B3/B B3/P1,3 B4/P2,3 C3/B C3/P1,2 C4/P1,4 D4/B D4/P1,2 D5/P1,5 E6/P1,6 F4/P1,4 G2/B".split()
+NAMES = [
+    "A3/B",
+    "A4/P2,3",
+    "A5/P1,3,4",
+    "B2/B",
+    "B3/B",
+    "B3/P1,3",
+    "B4/P2,3",
+    "C3/B",
+    "C3/P1,2",
+    "C4/P1,4",
+    "D4/B",
+    "D4/P1,2",
+    "D5/P1,5",
+    "E6/P1,6",
+    "F4/P1,4",
+    "G2/B",
+]
 
 
 @pytest.mark.parametrize("name", NAMES)
@@ -165,7 +183,9 @@ def test_the_smallest_lagrangian_grassmannian():
 @settings(deadline=None)
 @given(st.sampled_from(["A4/B", "B3/B", "C3/P1,3", "D4/P2", "E6/P1", "F4/P4", "G2/B"]).map(FlagVariety), st.data())
 def test_every_class_below_a_class_is_reached(X, data):
-    """The classical terms of all divisors of u are exactly the covers of u: each class but the last has one, each but the first is one."""
+    """The classical terms of all divisors of u are exactly the covers of u: each class but the last has one, each but the
+    first is one.
+    """
     u = data.draw(st.sampled_from(X.classes))
     covers = {w for w, d, _ in chevalley(X).terms(u.index) if not any(d)}
     assert bool(covers) == (u is not X.point)

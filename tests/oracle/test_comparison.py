@@ -11,7 +11,22 @@ from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
 from conjcheck.oracle.chevalley import chevalley
 from conjcheck.oracle.comparison import comparison, lift, longest_word
 
-PARTIAL = [Fl(*steps, n=n) for n, steps in [(3, (1,)), (4, (2,)), (4, (1, 3)), (4, (1, 2)), (5, (2,)), (5, (1, 4)), (5, (2, 3)), (5, (1, 3, 4)), (6, (3,)), (6, (2, 4)), (6, (1, 2, 5))]]
+PARTIAL = [
+    Fl(*steps, n=n)
+    for n, steps in [
+        (3, (1,)),
+        (4, (2,)),
+        (4, (1, 3)),
+        (4, (1, 2)),
+        (5, (2,)),
+        (5, (1, 4)),
+        (5, (2, 3)),
+        (5, (1, 3, 4)),
+        (6, (3,)),
+        (6, (2, 4)),
+        (6, (1, 2, 5)),
+    ]
+]
 
 
 def heights(kind, marked, point):
@@ -66,7 +81,17 @@ def test_the_lift_is_the_only_one(case, data):
 
 
 @pytest.mark.parametrize(
-    ("name", "nodes", "length"), [("A3", (), 0), ("A3", (1, 3), 2), ("A3", (1, 2), 3), ("A3", (1, 2, 3), 6), ("B3", (2, 3), 4), ("B3", (1, 2, 3), 9), ("G2", (1, 2), 6), ("E6", (1, 2, 3, 4, 5, 6), 36)]
+    ("name", "nodes", "length"),
+    [
+        ("A3", (), 0),
+        ("A3", (1, 3), 2),
+        ("A3", (1, 2), 3),
+        ("A3", (1, 2, 3), 6),
+        ("B3", (2, 3), 4),
+        ("B3", (1, 2, 3), 9),
+        ("G2", (1, 2), 6),
+        ("E6", (1, 2, 3, 4, 5, 6), 36),
+    ],
 )
 def test_longest_words(name, nodes, length):
     """The word has the length of the longest element, and sends every simple root of its nodes below."""
@@ -92,8 +117,8 @@ def test_divisors_on_partial_flags(X):
 
 @pytest.mark.parametrize("X", [Fl(1, 2, n=4), Fl(1, 3, n=4), Fl(2, n=4), Fl(1, 4, n=5)], ids=str)
 def test_the_whole_ring_of_partial_flags_follows_from_divisors(X, times):
-    """Every product agrees with associativity on G/P alone: ``sigma_i * (sigma_u * sigma_v) = (sigma_i * sigma_u) * sigma_v``, the left
-    factor by the Chevalley formula of G/P and not by the comparison."""
+    """Every product agrees with associativity on G/P alone: ``sigma_i * (sigma_u * sigma_v) = (sigma_i * sigma_u) *
+    sigma_v``, the left factor by the Chevalley formula of G/P and not by the comparison."""
     zero = (0,) * len(X.marked)
 
     def chevalley_times(place, element):

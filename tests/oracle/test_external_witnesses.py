@@ -63,8 +63,16 @@ def classical_row(u, v):
 
 
 def test_schubert_polynomials_by_hand():
-    """``S_1432 = x1^2 x2 + x1^2 x3 + x1 x2^2 + x1 x2 x3 + x2^2 x3`` and ``S_2143 = x1^2 + x1 x2 + x1 x3`` (Lascoux-Schutzenberger)."""
-    assert schubert_polynomial((1, 4, 3, 2)) == {(2, 1, 0, 0): 1, (2, 0, 1, 0): 1, (1, 2, 0, 0): 1, (1, 1, 1, 0): 1, (0, 2, 1, 0): 1}
+    """``S_1432 = x1^2 x2 + x1^2 x3 + x1 x2^2 + x1 x2 x3 + x2^2 x3`` and ``S_2143 = x1^2 + x1 x2 + x1 x3``
+    (Lascoux-Schutzenberger).
+    """
+    assert schubert_polynomial((1, 4, 3, 2)) == {
+        (2, 1, 0, 0): 1,
+        (2, 0, 1, 0): 1,
+        (1, 2, 0, 0): 1,
+        (1, 1, 1, 0): 1,
+        (0, 2, 1, 0): 1,
+    }
     assert schubert_polynomial((2, 1, 4, 3)) == {(2, 0, 0, 0): 1, (1, 1, 0, 0): 1, (1, 0, 1, 0): 1}
 
 
@@ -214,10 +222,11 @@ CRITICAL_POINTS = [
 
 @pytest.mark.parametrize(("X", "points"), CRITICAL_POINTS, ids=str)
 def test_critical_values_of_the_mirror_potential(X, points):
-    """Every critical value of the toric mirror potential at q = 1 is an eigenvalue of ``c_1 *`` (mirror symmetry; exact, by Groebner bases).
+    """Every critical value of the toric mirror potential at q = 1 is an eigenvalue of ``c_1 *`` (mirror symmetry; exact, by
+    Groebner bases).
 
-    As many critical points as classes on P^2, ``Gr(2,5)`` and ``Fl(3)``; the toric potential has too few of them on ``Gr(2,4)`` (4 of 6),
-    ``Fl(1,2;4)`` (11 of 12) and ``Fl(1,3;4)`` (9 of 12): computed, common practice, no source.
+    As many critical points as classes on P^2, ``Gr(2,5)`` and ``Fl(3)``; the toric potential has too few of them on
+    ``Gr(2,4)`` (4 of 6), ``Fl(1,2;4)`` (11 of 12) and ``Fl(1,3;4)`` (9 of 12): computed, common practice, no source.
     """
     potential, variables = mirror_potential(X.steps, X.n)
     assert len(variables) == X.dim

@@ -1,9 +1,11 @@
 """Printed values on complete and partial flag varieties. Each value has its source beside it.
 
-FGP = Fomin, Gelfand, Postnikov, Quantum Schubert polynomials, J. AMS 10 (1997) 565-596. KM = Kirillov, Maeno, Quantum double Schubert
-polynomials, quantum Schubert polynomials and Vafa-Intriligator formula, Discrete Math. 217 (2000) 191-223. CF = Ciocan-Fontanine,
-On quantum cohomology rings of partial flag varieties, Duke Math. J. 98 (1999) 485-524. "seen" means read in the source, "from memory"
-stated in the literature as far as known, "computed" agreed on by independent programs without a published source.
+FGP = Fomin, Gelfand, Postnikov, Quantum Schubert polynomials, J. AMS 10 (1997) 565-596. KM = Kirillov, Maeno, Quantum double
+Schubert polynomials, quantum Schubert polynomials and Vafa-Intriligator formula, Discrete Math. 217 (2000) 191-223. CF =
+Ciocan-Fontanine, On quantum cohomology rings of partial flag varieties, Duke Math. J. 98 (1999) 485-524.
+
+"seen" means read in the source, "from memory" stated in the literature as far as known, "computed" agreed on by independent
+programs without a published source.
 """
 
 import re
@@ -168,7 +170,9 @@ def apply_polynomial(n, text, v):
 
 @pytest.mark.parametrize("line", QUANTUM_SCHUBERT_POLYNOMIALS_OF_FL_4.strip().splitlines(), ids=lambda line: line[:4])
 def test_quantum_schubert_polynomials(line):
-    """The printed polynomial, applied to every ``sigma_v`` through quantum Monk operators, is the oracle's ``sigma_w * sigma_v``."""
+    """The printed polynomial, applied to every ``sigma_v`` through quantum Monk operators, is the oracle's ``sigma_w *
+    sigma_v``.
+    """
     X = Fl(4)
     name, text = line.split(" = ")
     w = X.schubert(permutation=map(int, name))
@@ -254,9 +258,7 @@ def totals(X):
     return everything, quantum, everything - quantum, tuple(largest.tolist())
 
 
-@pytest.mark.parametrize(
-    ("n", "count", "largest"), [(2, 4, (1,)), (3, 45, (1, 1)), (4, 1168, (2, 2, 2)), (5, 62925, (2, 3, 3, 2))]
-)
+@pytest.mark.parametrize(("n", "count", "largest"), [(2, 4, (1,)), (3, 45, (1, 1)), (4, 1168, (2, 2, 2)), (5, 62925, (2, 3, 3, 2))])
 def test_number_of_constants(n, count, largest):
     """Nonzero constants over ordered pairs, and the largest exponents of q (computed by three programs)."""
     everything, _, classical, degree = totals(Fl(n))
@@ -302,7 +304,9 @@ def test_anticanonical_degree(n, degree):
 
 @pytest.mark.parametrize("steps", [(1, 2), (1, 3), (2, 3), (1, 2, 3), (2, 4), (1, 4)])
 def test_degree_of_partial_flags_by_hooks(steps):
-    """The classical ``D^dim`` for ``D = sum k-th divisors`` is ``dim! prod <lambda_P, a^vee>/<rho, a^vee>`` over roots outside the Levi."""
+    """The classical ``D^dim`` for ``D = sum k-th divisors`` is ``dim! prod <lambda_P, a^vee>/<rho, a^vee>`` over roots
+    outside the Levi.
+    """
     n = 5 if 4 in steps else 4
     X = Fl(*steps, n=n)
     above, below = factorial(X.dim), 1

@@ -121,7 +121,8 @@ def rational_curves(m, p, e):
 
 @pytest.mark.parametrize("engine", ENGINES)
 @pytest.mark.parametrize(
-    ("m", "p", "numbers"), [(2, 2, (2, 8, 32, 128)), (3, 2, (5, 55, 610, 6765)), (4, 2, (14, 364, 9842, 265720)), (3, 3, ()), (1, 3, ())]
+    ("m", "p", "numbers"),
+    [(2, 2, (2, 8, 32, 128)), (3, 2, (5, 55, 610, 6765)), (4, 2, (14, 364, 9842, 265720)), (3, 3, ()), (1, 3, ())],
 )
 def test_rational_curves(m, p, numbers, engine, times):
     """The coefficient of ``q^e [pt]`` in ``sigma_1^(mp + e(m+p))`` on ``Gr(p, m+p)`` (RRW, numbers and formula from memory)."""
@@ -170,7 +171,11 @@ def test_quantum_pieri(X):
             lam = padded(u.partition, k)
             expected = {}
             for mu in shapes:
-                if sum(mu) == sum(lam) + p and all(mu[i] >= lam[i] for i in range(k)) and all(lam[i] >= mu[i + 1] for i in range(k - 1)):
+                if (
+                    sum(mu) == sum(lam) + p
+                    and all(mu[i] >= lam[i] for i in range(k))
+                    and all(lam[i] >= mu[i + 1] for i in range(k - 1))
+                ):
                     expected[X.schubert(partition=mu), (0,)] = 1
                 inner = all(lam[i] - 1 >= mu[i] for i in range(k)) and all(mu[i] >= lam[i + 1] - 1 for i in range(k - 1))
                 if sum(mu) == sum(lam) + p - n and inner:
@@ -200,7 +205,9 @@ def test_exponents_of_q(X):
             inside = padded(v.dual.partition, k)
             lam = padded(u.partition, k)
             least = next(
-                d for d in range(k + 1) if all(max(part - d, 0) <= room for part, room in zip((*lam[d:], *[0] * d), inside, strict=True))
+                d
+                for d in range(k + 1)
+                if all(max(part - d, 0) <= room for part, room in zip((*lam[d:], *[0] * d), inside, strict=True))
             )
             exponents = sorted({d for _, (d,) in product(u, v)})
             assert exponents == list(range(least, least + len(exponents)))
@@ -230,7 +237,8 @@ def classical_product(lam, mu, k):
 
 
 def without_rim_hooks(shape, k, n):
-    """``(sign, power, core)`` of a shape of k rows after removal of n-rim hooks until it fits in n - k columns; ``None`` if it dies.
+    """``(sign, power, core)`` of a shape of k rows after removal of n-rim hooks until it fits in n - k columns; ``None`` if
+    it dies.
 
     Bertram, Ciocan-Fontanine, Fulton, J. Algebra 219 (1999) 728-746: a rim hook of height ht contributes ``q (-1)^(k - ht)``.
     """

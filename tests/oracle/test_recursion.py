@@ -55,33 +55,23 @@ def test_the_representatives_fix_n():
 
 
 def test_forgetting_changes_nothing(monkeypatch):
-    """With almost no room for remembered products the answers are the same as with plenty."""
+    """With room for four sweeps only the answers are the same as with plenty, and no more than four are kept."""
     rng = random.Random(11)
     pairs = [(rng.randrange(120), rng.randrange(120)) for _ in range(300)]
     expected = [RINGS[5].packed_row(u, v) for u, v in pairs]
-    monkeypatch.setattr(recursion, "_MOST_STORED_TERMS", 50)
+    monkeypatch.setattr(recursion, "_MOST_PRODUCTS", 1)
     small = CompleteFlagRing(Fl(5))
-    assert [small.packed_row(u, v) for u, v in pairs] == expected
+    for (u, v), row in zip(pairs, expected, strict=True):
+        assert small.packed_row(u, v) == row
+        assert len(small._sweeps) <= 4
 
 
-def stored_terms(ring):
-    """What the ring remembers, counted afresh."""
-    return sum(len(row) for sweep in ring._sweeps.values() for row in sweep.values())
-
-
-def test_the_count_of_stored_terms_is_true(monkeypatch):
-    """What is forgotten, or was never kept, does not count against the room for what is kept."""
-    monkeypatch.setattr(recursion, "_MOST_STORED_TERMS", 2000)
-    ring = CompleteFlagRing(Fl(5))
-    rng = random.Random(5)
-    for _ in range(200):
-        u, v = rng.randrange(120), rng.randrange(120)
-        ring.packed_row(u, v)
-        ring.direct_row(u, v)
+def test_what_is_not_kept_takes_no_room():
+    """The direct route and the streamed table remember no products."""
+    ring = CompleteFlagRing(Fl(4))
+    ring.direct_row(5, 7)
     list(ring.blocks())
-    starts = len(ring._sweeps)
-    assert stored_terms(ring) - starts <= ring._stored <= stored_terms(ring)
-    assert stored_terms(ring) > 500
+    assert not ring._sweeps
 
 
 @pytest.mark.parametrize("n", [2, 3, 4, 5])

@@ -1,7 +1,7 @@
 """The laws that hold on every flag variety, on spaces and classes drawn at random: none of them knows how the oracle computes."""
 
 from cmath import exp, pi
-from itertools import combinations
+from itertools import combinations, pairwise
 from math import prod
 
 import numpy as np
@@ -87,7 +87,7 @@ def test_three_insertions_are_symmetric(triple, data):
 @settings(deadline=None)
 @given(several(2, varieties | larger))
 def test_whole_rows_are_symmetric(pair):
-    """Law 2 for rows: what ``sigma_u * sigma_v`` holds at ``(w, d)`` is what ``sigma_u * sigma_{w^vee}`` holds at ``(v^vee, d)``."""
+    """Law 2 for rows: ``sigma_u * sigma_v`` has at ``(w, d)`` what ``sigma_u * sigma_{w^vee}`` has at ``(v^vee, d)``."""
     u, v = pair
     for (w, d), count in list(product(u, v).items())[:10]:
         assert product(u, w.dual)[v.dual, d] == count
@@ -120,17 +120,21 @@ def test_the_automorphism_of_the_diagram(pair):
 
 
 def rotated(u, i):
-    """``v_i u`` on G/P and the exponent of q: every value lowered by i modulo n; ``omega_i^vee - u^{-1} omega_i^vee`` on the steps."""
+    """``v_i u`` on G/P and the exponent of q: every value lowered by i modulo n; ``omega_i^vee - u^{-1} omega_i^vee`` on the
+    steps.
+    """
     X = u.variety
     values = [(x - 1 - i) % X.n + 1 for x in u.permutation]
     cuts = [0, *X.steps, X.n]
-    line = [x for a, b in zip(cuts, cuts[1:], strict=False) for x in sorted(values[a:b])]
+    line = [x for a, b in pairwise(cuts) for x in sorted(values[a:b])]
     return X.schubert(permutation=line), tuple(min(k, i) - sum(x <= i for x in u.permutation[:k]) for k in X.steps)
 
 
 @pytest.mark.parametrize("cross_check", [False, True])
 def test_seidel_elements_multiply_by_relabelling(cross_check):
-    """Law 4 (Seidel 1997; Chaput, Manivel, Perrin 2009): ``sigma_{v_i} * sigma_w = q^(omega_i^vee - w^-1 omega_i^vee) sigma_{v_i w}``."""
+    """Law 4 (Seidel 1997; Chaput, Manivel, Perrin 2009): ``sigma_{v_i} * sigma_w = q^(omega_i^vee - w^-1 omega_i^vee)
+    sigma_{v_i w}``.
+    """
 
     @settings(deadline=None)
     @given(several(1, varieties | st.sampled_from([Fl(6), Fl(2, 4, n=6)])), st.data())
@@ -178,7 +182,9 @@ def test_fl_n_sits_in_fl_n_plus_1(pair):
 @settings(deadline=None)
 @given(st.integers(2, 5).flatmap(lambda n: st.tuples(st.just(n), st.sets(st.integers(1, n - 1), min_size=1))), st.data())
 def test_the_classical_ring_of_g_p_sits_in_that_of_g_b(pair, data):
-    """The pull-back ``H*(G/P) -> H*(G/B)`` sends ``sigma_w`` to ``sigma_w``: constants with d = 0 are those of the complete flags."""
+    """The pull-back ``H*(G/P) -> H*(G/B)`` sends ``sigma_w`` to ``sigma_w``: constants with d = 0 are those of the complete
+    flags.
+    """
     n, steps = pair
     X = Fl(*sorted(steps), n=n)
     u, v = data.draw(st.sampled_from(X.classes)), data.draw(st.sampled_from(X.classes))
@@ -241,8 +247,8 @@ def test_spectrum_of_the_first_chern_class(X):
 @settings(deadline=None)
 @given(several(2))
 def test_degrees_of_a_product_have_one_smallest(pair):
-    """Among the powers of q in a product of Schubert classes one divides all others (G/B: Postnikov, Quantum Bruhat graph and Schubert
-    polynomials, Proc. AMS 133 (2005); G/P: Buch, Chung, Li, Mihalcea 2020; both from memory)."""
+    """Among the powers of q in a product of Schubert classes one divides all others (G/B: Postnikov, Quantum Bruhat graph
+    and Schubert polynomials, Proc. AMS 133 (2005); G/P: Buch, Chung, Li, Mihalcea 2020; both from memory)."""
     degrees = {d for _, d in product(*pair)}
     least = tuple(map(min, zip(*degrees, strict=True)))
     assert least in degrees

@@ -1,0 +1,3 @@
+"""Benchmarks are programs, not tests: pytest collects nothing here."""
+
+collect_ignore_glob = ["*.py"]

@@ -1,0 +1,280 @@
+"""The benchmark program: one run measures ours and the plain way side by side on this machine and prints the ratios.
+
+    python tests/benchmarks/run.py             # everything, about two minutes
+    python tests/benchmarks/run.py table probe # only these parts
+
+Every measurement is made in a fresh interpreter and repeated; the median is printed, the measurements of the two sides
+alternate. Imports are not timed (but for the part ``import``); set-up is, in the part ``table``.
+"""
+
+import argparse
+import json
+import os
+import platform
+import random
+import statistics
+import subprocess
+import sys
+from collections.abc import Callable
+from pathlib import Path
+from time import perf_counter
+
+HERE = Path(__file__).resolve()
+CONSTANTS_OF_FL_6 = 6_531_372
+
+# --- measurements: each runs alone in a fresh interpreter and returns one number ---
+
+
+def table_ours() -> float:
+    """Seconds for the whole table of Fl(6), every constant delivered in the block arrays and added up."""
+    from conjcheck import Fl, table
+
+    began = perf_counter()
+    count = total = degrees = 0
+    for block in table(Fl(6)):
+        count += len(block)
+        total += int(block.N.sum())
+        degrees += int(block.d.sum()) + int(block.v.sum()) + int(block.w.sum())
+    seconds = perf_counter() - began
+    assert count == CONSTANTS_OF_FL_6 < total < degrees
+    return seconds
+
+
+def table_plain() -> float:
+    """Seconds of the plain script for the same, left in its matrices."""
+    from plain_scipy import fill
+
+    began = perf_counter()
+    count = sum(matrix.nnz for matrix in fill(6).matrices)
+    seconds = perf_counter() - began
+    assert count == CONSTANTS_OF_FL_6
+    return seconds
+
+
+def _products(n: int, count: int, *, forgetting: bool) -> float:
+    """Median milliseconds of ``product`` over random rows after set-up; with ``forgetting`` each row starts without
+    remembered products.
+    """
+    from conjcheck import Fl, product
+    from conjcheck.oracle.recursion import complete_flag_ring
+
+    X = Fl(n)
+    ring = complete_flag_ring(X)
+    product(X.point, X.point)  # set-up
+    chooser = random.Random(2024)
+    times = []
+    for _ in range(count):
+        u, v = chooser.choice(X.classes), chooser.choice(X.classes)
+        if forgetting:
+            ring._sweeps.clear()
+        began = perf_counter()
+        product(u, v)
+        times.append(perf_counter() - began)
+    return 1000 * statistics.median(times)
+
+
+def products_6() -> float:
+    """Milliseconds per product on Fl(6), nothing remembered from other rows."""
+    return _products(6, 200, forgetting=True)
+
+
+def products_7() -> float:
+    """Milliseconds per product on Fl(7), nothing remembered from other rows."""
+    return _products(7, 50, forgetting=True)
+
+
+def products_6_remembering() -> float:
+    """Milliseconds per product on Fl(6) in the course of many."""
+    return _products(6, 200, forgetting=False)
+
+
+def products_7_remembering() -> float:
+    """Milliseconds per product on Fl(7) in the course of many."""
+    return _products(7, 50, forgetting=False)
+
+
+def _plain_rows(n: int, count: int) -> float:
+    """Median milliseconds of a plain recursion for one row: dictionaries, quantum Monk, no symmetry."""
+    from plain_rows import one_row, prepare
+
+    from conjcheck import Fl, product
+
+    ring = prepare(n)
+    chooser = random.Random(2024)
+    times = []
+    for _ in range(count):
+        u, v = chooser.choice(ring.perms), chooser.choice(ring.perms)
+        began = perf_counter()
+        row = one_row(ring, u, v)
+        times.append(perf_counter() - began)
+    factors = (Fl(n).schubert(permutation=[x + 1 for x in w]) for w in (u, v))
+    expected = {(tuple(x - 1 for x in w.permutation), d): count for (w, d), count in product(*factors).items()}
+    assert row == expected, "both sides must compute the same"
+    return 1000 * statistics.median(times)
+
+
+def plain_rows_6() -> float:
+    """The plain recursion on Fl(6)."""
+    return _plain_rows(6, 200)
+
+
+def plain_rows_7() -> float:
+    """The plain recursion on Fl(7)."""
+    return _plain_rows(7, 50)
+
+
+def _import_seconds(module: str) -> float:
+    """Milliseconds that a fresh interpreter takes to import a module and end."""
+    command = [sys.executable, "-c", f"import {module}"]
+    subprocess.run(command, check=True)  # fill the caches of the file system
+    began = perf_counter()
+    subprocess.run(command, check=True)
+    return 1000 * (perf_counter() - began)
+
+
+def import_ours() -> float:
+    """``import conjcheck``."""
+    return _import_seconds("conjcheck")
+
+
+def import_numpy() -> float:
+    """``import numpy``."""
+    return _import_seconds("numpy")
+
+
+def import_nothing() -> float:
+    """``import sys``: the interpreter alone."""
+    return _import_seconds("sys")
+
+
+def _free_rule(X):
+    """A rule on X, case by case, that costs next to nothing and is right: a look-up in a dictionary made before the clock
+    starts.
+    """
+    from conjcheck import Varieties, candidate, product
+
+    known = {(u, v, w, d): count for u in X.classes for v in X.classes for (w, d), count in product(u, v).items()}
+
+    @candidate(on=Varieties(X))
+    def looked_up(X, u, v, w, d):
+        return known.get((u, v, w, d), 0)
+
+    return looked_up
+
+
+def survey_ours() -> float:
+    """Cases per second of a survey of Fl(4), zeros included, with a rule that costs next to nothing."""
+    from conjcheck import Fl
+    from conjcheck.testing.compare import Comparer
+    from conjcheck.testing.survey import survey
+
+    rule = _free_rule(Fl(4))
+    began = perf_counter()
+    found = survey(Comparer(rule), budget=600.0)
+    seconds = perf_counter() - began
+    assert found.finding is None
+    assert not found.ran_out
+    assert found.coverage.whole_family
+    return found.coverage.cases / seconds
+
+
+def probe_ours() -> float:
+    """Cases per second of a probe of Fl(5): Hypothesis draws rows, each compared whole."""
+    from hypothesis import settings
+
+    from conjcheck import Fl
+    from conjcheck.testing.compare import Comparer
+    from conjcheck.testing.probe import run_probe
+
+    X = Fl(5)
+    comparer, counted = Comparer(_free_rule(X)), 0
+
+    def check(row, choice) -> None:
+        nonlocal counted
+        result = comparer.row(row)
+        assert result.finding is None
+        assert result.complete
+        counted += result.cases
+
+    settings.register_profile("benchmark", max_examples=300)
+    settings.load_profile("benchmark")
+    began = perf_counter()
+    with comparer.limit:
+        run_probe(check, [X], comparer.conjecture, seed=1)
+    return counted / (perf_counter() - began)
+
+
+def hypothesis_plain_4() -> float:
+    """Cases per second of the plain Hypothesis test on Fl(4)."""
+    from plain_hypothesis import cases_per_second
+
+    return cases_per_second(4, 3000)
+
+
+def hypothesis_plain_5() -> float:
+    """Cases per second of the plain Hypothesis test on Fl(5)."""
+    from plain_hypothesis import cases_per_second
+
+    return cases_per_second(5, 3000)
+
+
+# --- the table of what is set against what ---
+
+Measurement = Callable[[], float]
+Line = tuple[str, str, Measurement, Measurement | None, int]
+
+PARTS: dict[str, list[Line]] = {
+    "table": [("whole table of Fl(6), every constant", "s", table_ours, table_plain, 5)],
+    "product": [
+        ("one product on Fl(6), nothing remembered", "ms", products_6, plain_rows_6, 3),
+        ("one product on Fl(7), nothing remembered", "ms", products_7, plain_rows_7, 3),
+        ("one product on Fl(6), in the course of 200", "ms", products_6_remembering, plain_rows_6, 3),
+        ("one product on Fl(7), in the course of 50", "ms", products_7_remembering, plain_rows_7, 3),
+    ],
+    "import": [
+        ("import conjcheck | import numpy", "ms", import_ours, import_numpy, 7),
+        ("(the interpreter alone)", "ms", import_nothing, None, 7),
+    ],
+    "survey": [("survey of Fl(4), free rule by cases | one case per example", "cases/s", survey_ours, hypothesis_plain_4, 3)],
+    "probe": [("probe of Fl(5), free rule by cases | one case per example", "cases/s", probe_ours, hypothesis_plain_5, 3)],
+}
+
+
+def measured(measurement: Measurement) -> float:
+    """One measurement in a fresh interpreter."""
+    command = [sys.executable, str(HERE), "--measure", measurement.__name__]
+    done = subprocess.run(command, check=True, capture_output=True, text=True, cwd=HERE.parent)
+    return float(json.loads(done.stdout.splitlines()[-1]))
+
+
+def main() -> None:
+    """Measure the parts named on the command line, or all, and print the table."""
+    parser = argparse.ArgumentParser(description=__doc__.splitlines()[0])
+    parser.add_argument("parts", nargs="*", help=f"any of {', '.join(PARTS)}")
+    parser.add_argument("--measure", help=argparse.SUPPRESS)
+    chosen = parser.parse_args()
+    if chosen.measure:
+        print(json.dumps(globals()[chosen.measure]()))
+        return
+    if unknown := set(chosen.parts) - set(PARTS):
+        parser.error(f"expected parts among {', '.join(PARTS)}, got {', '.join(sorted(unknown))}")
+    print(f"Python {platform.python_version()}, {os.cpu_count()} cores, {platform.machine()}; medians; fresh interpreters")
+    print(f"{'':60}{'ours':>12}{'plain':>12} {'':8}{'ratio':>8}")
+    for part in chosen.parts or PARTS:
+        for title, unit, ours, plain, repeats in PARTS[part]:
+            mine, theirs = [], []
+            for _ in range(repeats):
+                mine.append(measured(ours))
+                if plain is not None:
+                    theirs.append(measured(plain))
+            a = statistics.median(mine)
+            if not theirs:
+                print(f"{title:60}{a:12,.3f}{'':12} {unit:8}", flush=True)
+                continue
+            b = statistics.median(theirs)
+            ratio = a / b if unit.endswith("/s") else b / a
+            print(f"{title:60}{a:12,.3f}{b:12,.3f} {unit:8}{ratio:8.1f}", flush=True)
+
+
+if __name__ == "__main__":
+    main()
