@@ -18,6 +18,7 @@ from conjcheck.conjecture.discover import conjectures_in
 from conjcheck.errors import ConjcheckError, RecordError
 from conjcheck.evidence.record import Counterexample, Record, parse_place, read_record, write_record
 from conjcheck.geometry.flag_variety import FlagVariety
+from conjcheck.oracle.guard import Watch, watched
 from conjcheck.pytest_plugin import _STATE, _seconds
 from conjcheck.report.text import text_report
 from conjcheck.testing.examine import EFFORTS, Examination
@@ -57,7 +58,8 @@ class PluginFile(pytest.Module):
         folder = str(self.path.parent)
         if folder not in sys.path:
             sys.path.insert(0, folder)
-        with CallLimit(_IMPORT_LIMIT) as limit:
+        watch = Watch(forbidding=False)
+        with CallLimit(_IMPORT_LIMIT) as limit, watched(watch):
             limit.started = perf_counter()
             try:
                 _ = self.obj
@@ -68,6 +70,7 @@ class PluginFile(pytest.Module):
                 frames = [f for f in traceback.extract_tb(error.__traceback__) if f.filename == str(self.path)]
                 lines = traceback.format_list(frames) + traceback.format_exception_only(error)
                 return "".join(lines).rstrip()
+        self.asked_oracle = watch.asked
         return ""
 
 
@@ -256,6 +259,9 @@ class PartItem(pytest.Function):
         elif self.expected is not None and self.expected.status == "refuted" and outcome.status == "agrees":
             outcome = replace(outcome, note="on record as refuted; the budget ended before the counterexample")
             expected = True
+        if getattr(self.node.parent, "asked_oracle", False) and self.node.conjecture.role == "candidate":
+            warning = "the file asked the oracle while it was imported: the verdict is no more independent than the use made of that"
+            outcome = replace(outcome, note=f"{outcome.note}; {warning}" if outcome.note else warning)
         self.outcome = outcome
         self.user_properties.append(("conjcheck", json.dumps(outcome.as_json())))
         text = text_report(outcome, replay=f"pytest '{self.node.nodeid}'")

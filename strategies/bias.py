@@ -1,9 +1,9 @@
 """Which Schubert classes are drawn more often: those far from being Seidel classes.
 
-A Seidel class only relabels: its products have one term, with coefficient 1 (source: ``conjcheck.geometry.symmetries``). The *depth*
-of a class is the least length in its Seidel orbit, 0 for the Seidel classes. Coefficients do not change along Seidel orbits,
-and they grow with the depth: on ``Fl(6)`` every product with a class of depth 0 or 1 is free of coefficients above 1, and 80 %
-of the products of two classes of the greatest depth 6 have one (computed).
+A Seidel class only relabels: its products have one term, with coefficient 1 (source: ``conjcheck.geometry.symmetries``). The
+*depth* of a class is the least length in its Seidel orbit, 0 for the Seidel classes. Coefficients do not change along Seidel
+orbits, and they grow with the depth: on ``Fl(6)`` every product with a class of depth 0 or 1 is free of coefficients above 1, and
+80 % of the products of two classes of the greatest depth 6 have one (computed).
 """
 
 from bisect import bisect_right
@@ -15,8 +15,9 @@ from hypothesis import strategies as st
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass, orbit_of
 from conjcheck.geometry.symmetries import seidel
 from conjcheck.geometry.weyl import Ints
+from conjcheck.strategies.indices import draw_below
 
-__all__ = ["biased_classes", "depths"]
+__all__ = ["depths", "draw_class"]
 
 
 @lru_cache(maxsize=64)
@@ -40,15 +41,14 @@ def _ranks(X: FlagVariety) -> list[int]:
     return ranks
 
 
-@lru_cache(maxsize=4096)
-def biased_classes(X: FlagVariety, *, longest: int | None = None) -> st.SearchStrategy[SchubertClass]:
-    """Schubert classes of length up to ``longest`` (all by default), each at least a third as often as without bias.
+def draw_class(draw: st.DrawFn, X: FlagVariety, *, longest: int | None = None) -> SchubertClass:
+    """A Schubert class of length up to ``longest`` (all by default), each at least a third as often as without bias.
 
-    Shrinks towards the first classes in the order of ``X.classes``: one choice, a rank in a table in which deep classes have many
-    places, and higher ranks never belong to earlier classes.
+    Shrinks towards the first classes in the order of ``X.classes``: what is drawn is a rank in a table in which deep classes have
+    many places, and higher ranks never belong to earlier classes.
 
     Cost: constant, after the Seidel orbits are known (``Fl(8)``: 0.6 s, once).
     """
     ranks, classes = _ranks(X), X.classes
     last = classes[-1] if longest is None or longest >= X.dim else X.of_length(longest)[-1]
-    return st.integers(0, ranks[last.index] - 1).map(lambda rank: classes[bisect_right(ranks, rank)])
+    return classes[bisect_right(ranks, draw_below(draw, ranks[last.index]))]

@@ -12,6 +12,7 @@ from conjcheck.geometry.flag_variety import MOST_CLASSES, Degree, SchubertClass
 from conjcheck.geometry.symmetries import seidel
 from conjcheck.strategies.arguments import read_choice
 from conjcheck.strategies.degrees import degrees
+from conjcheck.strategies.indices import draw_below
 from conjcheck.strategies.rows import rows
 from conjcheck.strategies.steps import home, ladder, steps
 
@@ -76,7 +77,7 @@ def _inside(draw: st.DrawFn, row: Row) -> Outcome:
     d: Degree = (0,) * len(row.X.marked)
     for divisor in ladder(a):
         ways = [step for step in steps(w) if divisor in step.divisors]
-        step = ways[draw(st.integers(0, len(ways) - 1))]
+        step = ways[draw_below(draw, len(ways))]
         w, d = step.w, tuple(x + y for x, y in zip(d, step.d, strict=True))
     group = seidel(row.X)
     d = tuple(x + y for x, y in zip(d, (group.shifts[g, w.index] - group.shifts[g, a.index]).tolist(), strict=True))
@@ -87,7 +88,7 @@ def _inside(draw: st.DrawFn, row: Row) -> Outcome:
 def _near(draw: st.DrawFn, row: Row) -> Outcome:
     """One of the near misses of an inside case, smallest first."""
     misses = _misses(*_inside(draw, row))
-    return misses[draw(st.integers(0, len(misses) - 1))]
+    return misses[draw_below(draw, len(misses))]
 
 
 def _misses(w: SchubertClass, d: Degree) -> list[Outcome]:
@@ -111,7 +112,7 @@ def _outside(draw: st.DrawFn, row: Row) -> Outcome:
     X, total = row.X, row.u.length + row.v.length
     d = draw(degrees(X, max_total=total))
     right = X.of_length(total - sum(x * y for x, y in zip(d, X.q_degrees, strict=True)))
-    place = draw(st.integers(0, len(X.classes) - len(right) - 1))
+    place = draw_below(draw, len(X.classes) - len(right))
     return X.classes[place + len(right) if right and place >= right[0].index else place], d
 
 

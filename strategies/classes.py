@@ -11,6 +11,7 @@ from conjcheck.errors import NotationError
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.geometry.notation import read_integers
 from conjcheck.strategies.arguments import read_integer, read_variety
+from conjcheck.strategies.indices import sampled_evenly
 from conjcheck.strategies.patterns import contains
 
 __all__ = ["schubert_classes"]
@@ -66,7 +67,7 @@ def schubert_classes(
             f"expected restrictions that some class of {X} satisfies, got none with grassmannian={grassmannian}, at={at}, "
             f"descents={wanted}, avoiding={patterns or None}"
         )
-    return st.sampled_from(found)
+    return sampled_evenly(found)
 
 
 def _read_nodes(X: FlagVariety, descents: Iterable[int]) -> tuple[int, ...]:

@@ -64,7 +64,7 @@ def steps(u: SchubertClass) -> tuple[Step, ...]:
 
 @lru_cache(maxsize=100_000)
 def ladder(v: SchubertClass) -> tuple[int, ...]:
-    """Divisors whose product contains ``sigma_v``, as 0-based places in ``X.marked``: one for each letter of its word, last first."""
+    """Divisors whose product contains ``sigma_v``, as 0-based places in ``X.marked``: one for each letter of its word."""
     X, word = v.variety, v.word
     rungs, below = [], X.identity
     for start in range(len(word) - 1, -1, -1):

@@ -7,6 +7,7 @@ from conjcheck.geometry.families import Family
 from conjcheck.geometry.flag_variety import MOST_CLASSES, FlagVariety
 from conjcheck.geometry.weyl import number_of_cosets
 from conjcheck.strategies.arguments import read_family, read_integer
+from conjcheck.strategies.indices import sampled_evenly
 
 __all__ = ["flag_varieties", "members"]
 
@@ -37,7 +38,7 @@ def flag_varieties(
     >>> find(flag_varieties(Grassmannians()), lambda X: X.dim >= 3)
     FlagVariety('Gr(1,4)')
     """
-    return st.sampled_from(members(on, min_n=min_n, max_n=max_n, max_classes=max_classes))
+    return sampled_evenly(members(on, min_n=min_n, max_n=max_n, max_classes=max_classes))
 
 
 def members(on: Family, *, min_n: int, max_n: int | None, max_classes: int) -> tuple[FlagVariety, ...]:

@@ -18,6 +18,7 @@ import numpy as np
 from conjcheck.geometry.cartan import cartan_matrix
 from conjcheck.geometry.flag_variety import Degree, FlagVariety, orbit_of
 from conjcheck.geometry.weyl import Ints, roots, weight_images
+from conjcheck.oracle.guard import note_question
 
 __all__ = ["Chevalley", "chevalley"]
 
@@ -53,6 +54,7 @@ class Chevalley:
 
     def terms(self, u: int) -> list[tuple[int, Degree, Degree]]:
         """The terms of the class with index u."""
+        note_question()
         known = self._known.get(u)
         if known is None:
             zero = (0,) * self._steps.shape[1]

@@ -24,6 +24,7 @@ import numpy as np
 from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
 from conjcheck.geometry.weyl import Ints
 from conjcheck.oracle.engine import Block, RowTerms
+from conjcheck.oracle.guard import note_question
 
 __all__ = ["MOST_CLASSES", "ResidueTable", "dimension", "residue_table"]
 
@@ -116,6 +117,7 @@ class ResidueTable:
 
     def coefficients(self, u: int, v: int) -> Ints:
         """All coefficients of ``sigma_u * sigma_v`` at q = 1, one per class."""
+        note_question()
         found: Ints = self._solve((self.values[u] * self.values[v] % self.p)[None, :])[0]
         assert found.max() <= min(self.bounds[u], self.bounds[v]), "a residue exceeds the bound: not a structure constant"
         return found
@@ -133,6 +135,7 @@ class ResidueTable:
 
     def constant(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree) -> int:
         """One constant: a sum over J."""
+        note_question()
         if u.length + v.length != w.length + d[0] * self.n:
             return 0
         pointwise = self.values[u.index] * self.values[v.index] % self.p

@@ -5,37 +5,46 @@ from contextlib import contextmanager
 
 from conjcheck.errors import NotIndependent
 
-__all__ = ["Watch", "note_question", "rule_running"]
+__all__ = ["Watch", "note_question", "watched"]
 
 
 class Watch:
-    """What was noticed while a rule ran; ``asked`` stays true even if the rule swallowed the error."""
+    """What was noticed while somebody else's code ran.
 
-    __slots__ = ("asked",)
+    Args:
+        forbidding: whether a question raises ``NotIndependent``; otherwise it is only noticed.
 
-    def __init__(self) -> None:
+    Attributes:
+        asked: whether the oracle was asked; it stays true even if the code swallowed the error.
+    """
+
+    __slots__ = ("asked", "forbidding")
+
+    def __init__(self, *, forbidding: bool = True) -> None:
         self.asked = False
+        self.forbidding = forbidding
 
 
-_running: list[Watch] = []
+_watches: list[Watch] = []
 
 
 @contextmanager
-def rule_running(watch: Watch) -> Iterator[None]:
-    """Everything inside the block is the rule's own doing."""
-    _running.append(watch)
+def watched(watch: Watch) -> Iterator[None]:
+    """Everything inside the block is somebody else's doing."""
+    _watches.append(watch)
     try:
         yield
     finally:
-        _running.pop()
+        _watches.pop()
 
 
 def note_question() -> None:
-    """Called by the oracle at each question.
+    """Called by the oracle, and by each of its engines, at each question.
 
     Raises:
         NotIndependent: a rule is running.
     """
-    if _running:
-        _running[-1].asked = True
-        raise NotIndependent("the oracle was asked by the rule that it is meant to judge; compute the value from the rule alone")
+    if _watches:
+        _watches[-1].asked = True
+        if _watches[-1].forbidding:
+            raise NotIndependent("the oracle was asked by the rule that it is meant to judge; compute the value from the rule alone")

@@ -22,6 +22,7 @@ from conjcheck.geometry.symmetries import seidel
 from conjcheck.geometry.weyl import Ints
 from conjcheck.oracle.chevalley import chevalley
 from conjcheck.oracle.engine import Block, RowTerms
+from conjcheck.oracle.guard import note_question
 
 __all__ = ["CompleteFlagRing", "complete_flag_ring"]
 
@@ -102,8 +103,8 @@ class CompleteFlagRing:
             found = self._relations[w] = (r, z, [(key, sign) for key, sign in terms if key != w])
         return found
 
-    def _times(self, w: int, y: int, known: dict[int, Packed]) -> Packed:
-        """``sigma_w * sigma_y``, remembering in ``known`` every ``sigma_z * sigma_y`` on the way."""
+    def _times(self, w: int, known: dict[int, Packed]) -> Packed:
+        """``sigma_w * y``, where ``known`` holds ``sigma_e * y``; every ``sigma_z * y`` on the way is remembered there."""
         mask = (1 << self.shift) - 1
         stack = [w]
         while stack:
@@ -140,6 +141,7 @@ class CompleteFlagRing:
 
     def packed_row(self, u: int, v: int) -> Packed:
         """``sigma_u * sigma_v`` on packed terms, through the Seidel representatives."""
+        note_question()
         a, b, g, h = int(self.home[u]), int(self.home[v]), int(self.element[u]), int(self.element[v])
         if a in self._sweeps.get(b, ()):
             reduced = self._sweeps[b][a]
@@ -147,7 +149,7 @@ class CompleteFlagRing:
             reduced = self._sweeps[a][b]
         else:
             short, long = sorted((a, b))
-            reduced = self._times(short, long, self._sweep(long))
+            reduced = self._times(short, self._sweep(long))
         if g == h == 0:
             return reduced
         both = self.group.table[g, h]
@@ -158,7 +160,8 @@ class CompleteFlagRing:
 
     def direct_row(self, u: int, v: int) -> Packed:
         """``sigma_u * sigma_v`` without any symmetry and without any memory: the second route."""
-        return dict(self._times(u, v, {0: {v: 1}}))
+        note_question()
+        return dict(self._times(u, {0: {v: 1}}))
 
     @lru_cache(maxsize=None)  # noqa: B019  # a ring lives as long as the process
     def _moved(self, g: int) -> tuple[list[int], list[int]]:
@@ -181,13 +184,14 @@ class CompleteFlagRing:
 
     def blocks(self) -> Iterator[Block]:
         """The whole table: one sweep per representative, every other row of its Seidel orbit by relabelling whole arrays."""
+        note_question()
         X, group, shift = self.X, self.group, self.shift
         mask = (1 << shift) - 1
         places = self.bits * np.arange(len(X.marked), dtype=np.int64) + shift
         field = (1 << self.bits) - 1
         for a in self.representatives.tolist():
             known: dict[int, Packed] = {0: {a: 1}}
-            rows = [self._times(b, a, known) for b in self.representatives.tolist()]
+            rows = [self._times(b, known) for b in self.representatives.tolist()]
             sizes = [len(row) for row in rows]
             keys = np.fromiter((key for row in rows for key in row), dtype=np.int64, count=sum(sizes))
             counts = np.fromiter((c for row in rows for c in row.values()), dtype=np.int64, count=sum(sizes))

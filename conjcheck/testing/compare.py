@@ -14,7 +14,7 @@ from conjcheck.geometry.case import Case, Row, count_cases, degrees_of_total, ou
 from conjcheck.geometry.flag_variety import Degree, SchubertClass
 from conjcheck.oracle import row_terms
 from conjcheck.oracle.engine import RowTerms
-from conjcheck.oracle.guard import Watch, rule_running
+from conjcheck.oracle.guard import Watch, watched
 from conjcheck.testing.answer import WrongAnswer, count_of, shown_objects, truth_of
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.limits import CallInterrupted, CallLimit
@@ -144,7 +144,7 @@ class Comparer:
         """
         if self._is_claim:
             return {}
-        with rule_running(Watch()):
+        with watched(Watch()):
             try:
                 self.limit.started = perf_counter()
                 if self.conjecture.by_rows:
@@ -170,7 +170,7 @@ class Comparer:
         watch = Watch()
         self._progress = None, 0, 0
         try:
-            with nullcontext() if self._is_claim else rule_running(watch):
+            with nullcontext() if self._is_claim else watched(watch):
                 result = self._walk(row, truth, **choices)
         except _ENDINGS as error:
             self.limit.started = 0.0
@@ -326,7 +326,7 @@ class Comparer:
     def _answer_again(self, place: Case | Row) -> str:
         rule, row = self.conjecture.rule, place.row if isinstance(place, Case) else place
         conjecture = self.conjecture
-        with nullcontext() if self._is_claim else rule_running(Watch()):
+        with nullcontext() if self._is_claim else watched(Watch()):
             try:
                 self.limit.started = perf_counter()
                 if conjecture.premise is not None and conjecture.premise_by_rows:

@@ -24,6 +24,7 @@ Check = Callable[[Row, int], None]
 _FEWEST_CLASSES = 20
 _MOST_LEVELS = 3
 _MOST_SPACES = 200
+_LAST_RANK = 11
 
 
 @dataclass
@@ -88,7 +89,7 @@ def probe_levels(conjecture: Conjecture, most_classes: int) -> list[tuple[int, l
     With more than three n to choose from, the smallest, the middle and the largest are taken.
     """
     levels: dict[int, list[FlagVariety]] = {}
-    for X in in_reach(conjecture, most_spaces=_MOST_SPACES):
+    for X in in_reach(conjecture, last_rank=_LAST_RANK, most_spaces=_MOST_SPACES):
         if X.number_of_classes > most_classes or (X.n == 8 and not X.is_grassmannian and most_classes < 40_320):
             continue
         if X.number_of_classes >= _FEWEST_CLASSES:

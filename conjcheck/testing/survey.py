@@ -2,10 +2,10 @@
 
 from collections.abc import Iterator
 from dataclasses import dataclass, field
-from itertools import count
 from time import perf_counter
 
 from conjcheck.conjecture.declare import Conjecture
+from conjcheck.geometry.cartan import LARGEST_RANK
 from conjcheck.geometry.case import Row, rows
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.oracle import engines_for
@@ -13,8 +13,6 @@ from conjcheck.testing.compare import Comparer
 from conjcheck.testing.finding import Finding
 
 __all__ = ["Coverage", "SpaceCoverage", "Survey", "in_reach", "survey"]
-
-_LAST_RANK = 11
 
 
 @dataclass(slots=True)
@@ -89,19 +87,19 @@ class Survey:
 
 
 def in_reach(
-    conjecture: Conjecture, skipped: list[FlagVariety] | None = None, *, most_spaces: int | None = None
+    conjecture: Conjecture, skipped: list[FlagVariety] | None = None, *, last_rank: int = LARGEST_RANK, most_spaces: int = 5_000
 ) -> Iterator[FlagVariety]:
     """The spaces of a conjecture in order, as far as some engine reaches; the others go to ``skipped``.
 
-    Ends before a rank that is out of reach as a whole, or that has more than ``most_spaces`` spaces.
+    Ends before a rank that is out of reach as a whole, that is above ``last_rank``, or that has more than ``most_spaces`` spaces.
     """
     last = conjecture.on.last_rank
-    for rank in count(1) if last is None else range(1, last + 1):
+    for rank in range(1, min(last_rank, last or last_rank) + 1):
         spaces = conjecture.on.of_rank(rank)
         reached = [X for X in spaces if engines_for(X)]
         if skipped is not None:
             skipped.extend(X for X in spaces if X not in reached)
-        if (spaces and not reached and last is None) or rank > _LAST_RANK or (most_spaces and len(spaces) > most_spaces):
+        if (spaces and not reached and last is None) or len(spaces) > most_spaces:
             return
         yield from reached
 

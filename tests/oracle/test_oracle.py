@@ -9,7 +9,7 @@ import conjcheck
 from conjcheck import Case, Fl, FlagVariety, Gr, Product, constant, product, table
 from conjcheck.errors import DifferentVarieties, EnginesDisagree, NotationError, NotIndependent, OutOfReach
 from conjcheck.oracle import ENGINES, engines_for, row_terms, witnesses
-from conjcheck.oracle.guard import Watch, note_question, rule_running
+from conjcheck.oracle.guard import Watch, note_question, watched
 
 
 def s(X, *partition):
@@ -155,7 +155,7 @@ def test_while_a_rule_runs_the_oracle_refuses_and_notices():
         note_question,
     ):
         watch = Watch()
-        with rule_running(watch):
+        with watched(watch):
             assert not watch.asked
             with pytest.raises(NotIndependent):
                 ask()
@@ -166,7 +166,7 @@ def test_while_a_rule_runs_the_oracle_refuses_and_notices():
 def test_nested_and_broken_rules_leave_the_guard_in_order():
     """An error inside the block ends the watch; the innermost watch is the one that notices."""
     outer, inner = Watch(), Watch()
-    with pytest.raises(NotIndependent), rule_running(outer), rule_running(inner):
+    with pytest.raises(NotIndependent), watched(outer), watched(inner):
         note_question()
     assert (outer.asked, inner.asked) == (False, True)
     note_question()

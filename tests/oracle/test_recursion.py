@@ -2,6 +2,7 @@
 
 import random
 
+import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
@@ -74,6 +75,15 @@ def test_what_is_not_kept_takes_no_room():
     assert not ring._sweeps
 
 
+def test_the_direct_route_does_not_lean_on_the_symmetries():
+    """Its products stay right when everything that the Seidel elements contribute is spoilt: the two routes share no symmetry."""
+    expected = {(u, v): RINGS[4].direct_row(u, v) for u in range(24) for v in range(24)}
+    ring = CompleteFlagRing(Fl(4))
+    ring.home[:], ring.element[:], ring.packed_shifts[:] = 0, 1, 77
+    assert {pair: ring.direct_row(*pair) for pair in expected} == expected
+    assert ring.packed_row(3, 5) != expected[3, 5]
+
+
 @pytest.mark.parametrize("n", [2, 3, 4, 5])
 def test_blocks_hold_the_rows(n):
     """The streamed table has one block per class, and each block the rows of its class, zeros left out, nothing twice."""
@@ -90,3 +100,53 @@ def test_blocks_hold_the_rows(n):
         assert {v: ring.packed_row(block.u.index, v) for v in found} == found
         assert len(found) == len(X.classes)
         assert sum(map(len, found.values())) == len(block)
+
+
+def test_blocks_of_fl_6_hold_the_direct_rows():
+    """On ``Fl(6)``, where degrees reach 4 and constants 3: some rows of every block against the route without symmetries."""
+    ring = RINGS[6]
+    X = ring.X
+    rng = random.Random(13)
+    weights = np.array([1 << (ring.bits * k) for k in range(len(X.marked))]) << ring.shift
+    for block in table(X):
+        for _ in range(2):
+            v = rng.randrange(720)
+            here = block.v == v
+            keys = block.w[here] + block.d[here] @ weights
+            row = ring.direct_row(block.u.index, v) if block.u.length < X.classes[v].length else ring.direct_row(v, block.u.index)
+            assert dict(zip(keys.tolist(), block.N[here].tolist(), strict=True)) == row
+
+
+@pytest.mark.parametrize("n", [6, 7])
+def test_the_two_routes_agree_further_out(n):
+    """On ``Fl(6)`` and ``Fl(7)``: each representative once as a factor, the other one at random."""
+    ring = complete_flag_ring(Fl(n))
+    X = ring.X
+    rng = random.Random(n)
+    longest = 0
+    for a in ring.representatives.tolist():
+        v = rng.choice(X.of_length(rng.randrange(1, 6))).index
+        u = int(ring.group.images[rng.randrange(n), a])
+        row = ring.direct_row(v, u)
+        assert ring.packed_row(u, v) == row
+        longest = max(longest, len(row))
+    assert longest > 5
+
+
+@pytest.mark.parametrize(
+    ("n", "u", "v", "largest"),
+    [
+        (3, (3, 2, 1), (3, 2, 1), (1, 1)),
+        (4, (4, 3, 2, 1), (4, 3, 2, 1), (2, 2, 2)),
+        (5, (5, 4, 3, 2, 1), (5, 4, 3, 2, 1), (2, 3, 3, 2)),
+        (6, (6, 4, 5, 2, 3, 1), (6, 5, 4, 3, 2, 1), (2, 3, 4, 3, 2)),
+        (6, (6, 5, 4, 3, 2, 1), (6, 5, 4, 3, 2, 1), (2, 3, 4, 3, 2)),
+    ],
+)
+def test_no_degree_is_cut_off_on_the_direct_route(n, u, v, largest):
+    """Without symmetries the route passes through the largest degrees there are; a guessed box of degrees would lose terms here."""
+    ring = RINGS[n]
+    u, v = (ring.X.schubert(permutation=w).index for w in (u, v))
+    row = ring.direct_row(u, v)
+    assert row == ring.packed_row(u, v)
+    assert tuple(map(max, zip(*(ring.unpack(key)[1] for key in row), strict=True))) == largest
