@@ -6,17 +6,19 @@ import json
 import sys
 import traceback
 from collections.abc import Callable, Iterator
-from dataclasses import replace
+from dataclasses import dataclass, replace
+from pathlib import Path
 from time import perf_counter
 from typing import Any
 
 import pytest
 from hypothesis import settings
+from hypothesis.errors import Unsatisfiable
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.conjecture.discover import conjectures_in
 from conjcheck.errors import ConjcheckError, RecordError
 from conjcheck.evidence.record import Counterexample, Record, parse_place, read_record, write_record
+from conjcheck.geometry.case import Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.oracle.guard import Watch, watched
 from conjcheck.pytest_plugin import _STATE, _seconds
@@ -24,7 +26,7 @@ from conjcheck.report.text import text_report
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.limits import CallInterrupted, CallLimit
 from conjcheck.testing.outcome import Outcome
-from conjcheck.testing.probe import ProbeCount, gravest, probe_test
+from conjcheck.testing.probe import Check, ProbeCount, gravest, probe_test
 
 __all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
 
@@ -45,7 +47,7 @@ class PluginFile(pytest.Module):
             yield BrokenFile.from_parent(self, name="import", problem=problem)
             return
         found = list(super().collect())
-        if not found and not conjectures_in(self.obj):
+        if not found:
             text = (
                 "expected at least one @candidate or @claim in the file, got none; decorate a function, or give a file of helpers a name "
                 "that begins with _"
@@ -55,9 +57,7 @@ class PluginFile(pytest.Module):
 
     def _import_problem(self) -> str:
         """Import the file under a time limit; the text of what went wrong. Helpers beside the file can be imported by their name."""
-        folder = str(self.path.parent)
-        if folder not in sys.path:
-            sys.path.insert(0, folder)
+        _prefer_helpers_of(self.path.parent)
         watch = Watch(forbidding=False)
         with CallLimit(_IMPORT_LIMIT) as limit, watched(watch):
             limit.started = perf_counter()
@@ -69,13 +69,26 @@ class PluginFile(pytest.Module):
                 error = (raised.__cause__ or raised) if isinstance(raised, self.CollectError) else raised
                 frames = [f for f in traceback.extract_tb(error.__traceback__) if f.filename == str(self.path)]
                 lines = traceback.format_list(frames) + traceback.format_exception_only(error)
+                if type(error).__name__ == "ImportPathMismatchError":
+                    lines.append("two plug-ins have this file name: rename one, or run pytest with --import-mode=importlib")
                 return "".join(lines).rstrip()
         self.asked_oracle = watch.asked
         return ""
 
 
+def _prefer_helpers_of(folder: Path) -> None:
+    """Let plug-ins import the files beside them, and not files of the same name beside other plug-ins."""
+    if str(folder) in sys.path:
+        sys.path.remove(str(folder))
+    sys.path.insert(0, str(folder))
+    for helper in folder.glob("*.py"):
+        loaded = sys.modules.get(helper.stem)
+        if loaded is not None and helper.name.startswith("_") and Path(loaded.__file__ or "") != helper:
+            del sys.modules[helper.stem]
+
+
 class BrokenFile(pytest.Item):
-    """The failing item of a file that cannot be used."""
+    """The failing item of a file, a record or a family that cannot be used."""
 
     def __init__(self, *, problem: str, **kwargs: Any) -> None:
         super().__init__(**kwargs)
@@ -84,7 +97,8 @@ class BrokenFile(pytest.Item):
     def runtest(self) -> None:
         """Fail."""
         last = self.problem.rstrip().splitlines()[-1].strip()
-        raise Verdict(f"cannot be imported: {self.path.name}: {last}\n\n{self.problem}")
+        what = {"import": "cannot be imported", "record": "record cannot be used"}.get(self.name, "family cannot be listed")
+        raise Verdict(f"{what}: {self.path.name}: {last}\n\n{self.problem}")
 
     def repr_failure(self, excinfo: pytest.ExceptionInfo[BaseException], style: Any = None) -> Any:
         """The problem, without a traceback through pytest."""
@@ -93,6 +107,16 @@ class BrokenFile(pytest.Item):
     def reportinfo(self) -> tuple[Any, int | None, str]:
         """Where it is."""
         return self.path, 0, f"{self.path.name}: import"
+
+
+@dataclass(frozen=True)
+class Draws:
+    """What a drawing part needs when it runs: its count, the check of a row, where to draw, and the outcome if nothing is found."""
+
+    count: ProbeCount
+    check: Check
+    spaces: list[FlagVariety]
+    agrees: Callable[[], Outcome | None]
 
 
 class ConjectureNode(pytest.Collector):
@@ -120,10 +144,15 @@ class ConjectureNode(pytest.Collector):
         if record.status == "refuted":
             yield self._plain_item("survey", lambda examination: examination.survey(), expected=record)
             return
+        try:
+            levels = self.examination.levels()
+        except Exception as error:  # the predicate of a family is the user's
+            problem = "".join(traceback.format_exception_only(error))
+            yield BrokenFile.from_parent(self, name="family", problem=problem)
+            return
         if conjecture.role == "candidate":
             yield self._drawing_item("laws", self._laws)
         yield self._plain_item("survey", lambda examination: examination.survey())
-        levels = self.examination.levels()
         for n, spaces in levels:
             yield self._drawing_item(f"probe[n={n}]", self._probe(n, spaces, len(levels)))
 
@@ -154,45 +183,44 @@ class ConjectureNode(pytest.Collector):
         item: PartItem = PartItem.from_parent(self, name=name, callobj=run, expected=expected)
         return item
 
-    def _drawing_item(self, name: str, part: Callable[[PartItem], tuple[Any, ...]]) -> PartItem:
-        """A part that draws: its test function is a Hypothesis test."""
+    def _drawing_item(self, name: str, draws: Callable[[], Draws]) -> PartItem:
+        """A part that draws: its test function is a Hypothesis test, made now; what it checks is settled when it runs."""
         item: PartItem
 
-        def check(row: Any, choice: int) -> None:
-            item.check(row, choice)
-
-        def spaces() -> list[FlagVariety]:
-            return item.spaces()
+        def check(row: Row, choice: int) -> None:
+            item.draws.check(row, choice)
 
         fixed = None if settings().derandomize or self.config.getoption("--hypothesis-seed", None) is not None else self._seed
-        test: Any = probe_test(check, spaces, self.conjecture, fixed_seed=fixed)
+        test: Any = probe_test(
+            check, lambda: item.draws.spaces, self.examination.comparer, lambda: item.draws.count.time_is_up(), fixed_seed=fixed
+        )
         test.hypothesis.inner_test._hypothesis_internal_add_digest = f"{self.nodeid}::{name}".encode()
-        item = PartItem.from_parent(self, name=name, callobj=test, part=part)
+        item = PartItem.from_parent(self, name=name, callobj=test, make_draws=draws)
         return item
 
     @property
     def _seed(self) -> Any:
         return self.config.stash[_STATE]["seed"]
 
-    def _laws(self, item: PartItem) -> tuple[Any, ...]:
+    def _laws(self) -> Draws:
         examination, started = self.examination, perf_counter()
-        count = ProbeCount()
-        check = examination.law_check(started + examination.effort.laws, count)
-        return check, examination.small_spaces, lambda: examination.laws_agree(count, started), count
+        count = ProbeCount(started + examination.effort.laws)
+        return Draws(
+            count, examination.law_check(count), examination.small_spaces(), lambda: examination.laws_agree(count, started)
+        )
 
-    def _probe(self, n: int, spaces: list[FlagVariety], share: int) -> Callable[[PartItem], tuple[Any, ...]]:
-        def part(item: PartItem) -> tuple[Any, ...]:
+    def _probe(self, n: int, spaces: list[FlagVariety], share: int) -> Callable[[], Draws]:
+        def draws() -> Draws:
             examination, started = self.examination, perf_counter()
-            count = ProbeCount()
-            check = examination.probe_check(started + examination.effort.probe / share, count)
-            return (
-                check,
-                lambda: examination.unfinished(spaces),
-                lambda: examination.probe_agrees(n, spaces, count, started),
+            count = ProbeCount(started + examination.effort.probe / share)
+            return Draws(
                 count,
+                examination.probe_check(count),
+                examination.unfinished(spaces),
+                lambda: examination.probe_agrees(n, spaces, count, started),
             )
 
-        return part
+        return draws
 
     def reportinfo(self) -> tuple[Any, int | None, str]:
         """Where the rule is written."""
@@ -227,12 +255,12 @@ def recorded(examination: Examination, record: Record) -> Outcome:
 class PartItem(pytest.Function):
     """One part of an examination."""
 
-    def __init__(self, *, expected: Record | None = None, part: Any = None, **kwargs: Any) -> None:
+    draws: Draws
+
+    def __init__(self, *, expected: Record | None = None, make_draws: Callable[[], Draws] | None = None, **kwargs: Any) -> None:
         super().__init__(**kwargs)
-        self.expected, self._part = expected, part
+        self.expected, self._make_draws = expected, make_draws
         self.outcome: Outcome | None = None
-        self.check: Callable[[Any, int], None] = lambda row, choice: None
-        self.spaces: Callable[[], list[FlagVariety]] = list
 
     @property
     def node(self) -> ConjectureNode:
@@ -245,13 +273,13 @@ class PartItem(pytest.Function):
         examination = self.node.examination
         if examination.failure and self.name != "case":
             pytest.skip(f"{examination.failure.status} already, see {self.node.name}::{examination.failure.part}")
-        if self._part is None:
+        if self._make_draws is None:
             super().runtest()
         else:
-            self._draw(examination)
+            self._draw(examination, self._make_draws())
         outcome = self.outcome
         assert outcome is not None, "every part ends in an outcome"
-        if self._part is not None:
+        if self._make_draws is not None:
             outcome = replace(outcome, seed=str(self.config.stash[_STATE]["seed"]))
         expected = self.expected is not None and outcome.status == "refuted" and self.expected.status == "refuted"
         if expected:
@@ -267,24 +295,29 @@ class PartItem(pytest.Function):
         text = text_report(outcome, replay=f"pytest '{self.node.nodeid}'")
         if outcome.status == "agrees" or expected:
             self.add_report_section("call", "conjcheck", text)
-        if outcome.status == "refuted" and self.config.getoption("--conjcheck-record"):
+        if outcome.minimum and outcome.status == "refuted" and self.config.getoption("--conjcheck-record"):
             self._record(outcome)
         if outcome.status != "agrees" and not expected:
             raise Verdict(text)
 
-    def _draw(self, examination: Examination) -> None:
+    def _draw(self, examination: Examination, draws: Draws) -> None:
         """Run the Hypothesis test of this item."""
         started = perf_counter()
-        self.check, self.spaces, agrees, count = self._part(self)
+        self.draws = draws
         try:
-            super().runtest()
+            if draws.spaces:
+                super().runtest()
+        except Unsatisfiable:
+            pass  # no row inside the premise was met
         except BaseException as error:
             found = gravest(error)
             if found is None:
                 raise
-            self.outcome = examination.work_out(found.finding, self.name, started, count.broken_law)
-        else:
-            self.outcome = agrees()
+            self.outcome = examination.work_out(found.finding, self.name, started, draws.count.broken_law)
+            return
+        self.outcome = draws.agrees()
+        if self.outcome is None:
+            pytest.skip("no row inside the premise was drawn: nothing compared")
 
     def _record(self, outcome: Outcome) -> None:
         finding, conjecture = outcome.finding, self.node.conjecture

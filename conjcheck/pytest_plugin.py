@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING, Any
 import pytest
 
 if TYPE_CHECKING:
+    from collections.abc import Generator
     from pathlib import Path
 
 _FOLDERS = "conjcheck_folders"
@@ -111,13 +112,14 @@ def _is_plugin_file(path: Path, config: pytest.Config) -> bool:
     return any(config.rootpath.joinpath(folder).resolve() in path.resolve().parents for folder in config.getini(_FOLDERS))
 
 
-def pytest_collect_file(file_path: Path, parent: pytest.Collector) -> pytest.Module | None:
-    """Plug-in files that pytest would not take by itself."""
-    if not _is_plugin_file(file_path, parent.config) or parent.session.isinitpath(file_path):
-        return None
-    if any(file_path.match(pattern) for pattern in parent.config.getini("python_files")):
-        return None
-    return pytest_pycollect_makemodule(file_path, parent)
+@pytest.hookimpl(wrapper=True)
+def pytest_collect_file(file_path: Path, parent: pytest.Collector) -> Generator[None, list[Any], list[Any]]:
+    """Plug-in files that pytest would not take by itself; and no second import of them in search of doctests."""
+    found = yield
+    if not _is_plugin_file(file_path, parent.config):
+        return found
+    modules = [node for node in found if isinstance(node, pytest.Module) and type(node).__name__ != "DoctestModule"]
+    return modules or [pytest_pycollect_makemodule(file_path, parent)]
 
 
 def pytest_pycollect_makemodule(module_path: Path, parent: pytest.Collector) -> pytest.Module | None:
@@ -135,11 +137,13 @@ def pytest_pycollect_makeitem(collector: pytest.Module | pytest.Class, name: str
     declare = sys.modules.get("conjcheck.conjecture.declare")
     if declare is None or not isinstance(obj, declare.Conjecture):
         return None
-    if obj.rule.__module__ != getattr(collector.obj, "__name__", None) or name != obj.name:
+    module = collector.obj
+    own = obj.rule.__module__ == getattr(module, "__name__", None)
+    if not own or (name != obj.name and getattr(module, obj.name, None) is obj):
         return []
     from conjcheck.pytest_items import ConjectureNode
 
-    return [ConjectureNode.from_parent(collector, name=name, conjecture=obj)]
+    return [ConjectureNode.from_parent(collector, name=name, conjecture=obj.called(name))]
 
 
 # -- reports --------------------------------------------------------------------------------------------------------------

@@ -6,18 +6,16 @@ orbits, and they grow with the depth: on ``Fl(6)`` every product with a class of
 80 % of the products of two classes of the greatest depth 6 have one (computed).
 """
 
-from bisect import bisect_right
 from functools import lru_cache
 
 import numpy as np
-from hypothesis import strategies as st
 
-from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass, orbit_of
+from conjcheck.geometry.flag_variety import FlagVariety, orbit_of
 from conjcheck.geometry.symmetries import seidel
 from conjcheck.geometry.weyl import Ints
-from conjcheck.strategies.indices import draw_below
+from conjcheck.strategies.urns import Urn
 
-__all__ = ["depths", "draw_class"]
+__all__ = ["biased_urn", "depths"]
 
 
 @lru_cache(maxsize=64)
@@ -28,27 +26,13 @@ def depths(X: FlagVariety) -> Ints:
 
 
 @lru_cache(maxsize=64)
-def _ranks(X: FlagVariety) -> list[int]:
-    """Entry k is the number of ranks of the classes 0..k: one for a class of depth c, and ``2 * 3^c / (mean of 3^depth)`` more.
+def biased_urn(X: FlagVariety) -> Urn:
+    """All classes: one ball for a class of depth c, and ``2 * 3^c / (mean of 3^depth)`` more, so at least a third of the fair share.
 
     At most 16 powers of 3 matter, so that the integers stay small. A trivial Seidel group says nothing: all classes alike.
+
+    Cost: the Seidel orbits, once (``Fl(8)``: 0.6 s).
     """
-    if len(seidel(X).units) == 1:
-        return list(range(1, len(X.classes) + 1))
-    depth = depths(X)
+    depth = depths(X) if len(seidel(X).units) > 1 else np.zeros(len(X.classes), dtype=np.int64)
     powers = 3 ** np.maximum(depth - depth.max() + 16, 0)
-    ranks: list[int] = np.cumsum(1 + 2 * len(powers) * powers // powers.sum()).tolist()
-    return ranks
-
-
-def draw_class(draw: st.DrawFn, X: FlagVariety, *, longest: int | None = None) -> SchubertClass:
-    """A Schubert class of length up to ``longest`` (all by default), each at least a third as often as without bias.
-
-    Shrinks towards the first classes in the order of ``X.classes``: what is drawn is a rank in a table in which deep classes have
-    many places, and higher ranks never belong to earlier classes.
-
-    Cost: constant, after the Seidel orbits are known (``Fl(8)``: 0.6 s, once).
-    """
-    ranks, classes = _ranks(X), X.classes
-    last = classes[-1] if longest is None or longest >= X.dim else X.of_length(longest)[-1]
-    return classes[bisect_right(ranks, draw_below(draw, ranks[last.index]))]
+    return Urn(X.classes, (1 + 2 * len(powers) * powers // powers.sum()).tolist())

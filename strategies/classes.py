@@ -11,8 +11,9 @@ from conjcheck.errors import NotationError
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.geometry.notation import read_integers
 from conjcheck.strategies.arguments import read_integer, read_variety
-from conjcheck.strategies.indices import sampled_evenly
+from conjcheck.strategies.indices import MOST_EVEN
 from conjcheck.strategies.patterns import contains
+from conjcheck.strategies.urns import Urn
 
 __all__ = ["schubert_classes"]
 
@@ -27,9 +28,10 @@ def schubert_classes(
     descents: Iterable[int] | None = None,
     avoiding: Iterable[int] | Iterable[Iterable[int]] | None = None,
 ) -> st.SearchStrategy[SchubertClass]:
-    """Schubert classes of a flag variety, each with the same probability. Restrictions add up.
+    """Schubert classes of a flag variety, each with about the same probability. Restrictions add up.
 
-    Shrinks towards the first of the allowed classes in the order of ``X.classes`` (length, then lexicographic). One choice.
+    Shrinks towards the first of the allowed classes in the order of ``X.classes`` (length, then lexicographic). Up to 256 classes
+    one choice; beyond, the length first, then the place among the classes of that length.
 
     Args:
         X: the flag variety.
@@ -67,7 +69,12 @@ def schubert_classes(
             f"expected restrictions that some class of {X} satisfies, got none with grassmannian={grassmannian}, at={at}, "
             f"descents={wanted}, avoiding={patterns or None}"
         )
-    return sampled_evenly(found)
+    return st.sampled_from(found) if len(found) <= MOST_EVEN else _drawn(Urn(found, [1] * len(found)))
+
+
+@st.composite
+def _drawn(draw: st.DrawFn, urn: Urn) -> SchubertClass:
+    return urn.draw(draw)
 
 
 def _read_nodes(X: FlagVariety, descents: Iterable[int]) -> tuple[int, ...]:

@@ -1,27 +1,24 @@
-"""Indices into long sequences, drawn evenly.
+"""Indices into long sequences, drawn evenly."""
 
-Hypothesis draws integers evenly only up to 256 and then prefers the small ones, so that the long classes of a large variety would
-hardly be seen. Here a long range is cut into at most 256 blocks: first the block is drawn, then the place in it.
-"""
-
-from collections.abc import Sequence
 from functools import lru_cache
-from typing import TypeVar
 
 from hypothesis import strategies as st
 
-__all__ = ["draw_below", "sampled_evenly"]
+__all__ = ["MOST_EVEN", "draw_below"]
 
-T = TypeVar("T")
-
-_BASE = 256
+MOST_EVEN = 256
+"""Hypothesis draws integers evenly from ranges up to this length; from longer ones it prefers the small integers."""
 
 
 def draw_below(draw: st.DrawFn, count: int) -> int:
-    """An integer from 0 to ``count - 1``, shrinking towards 0: one choice up to 256, two up to 65,536, three up to 2^24."""
+    """An integer from 0 to ``count - 1``, shrinking towards 0: one choice up to 256, two up to 65,536, three up to 2^24.
+
+    A long range is cut into at most 256 blocks: first the block is drawn, then the place in it. Shrinking does not get from the first
+    place of a block to the last one of the block before, so a block should not matter: inside one length of classes, for example.
+    """
     low, high = 0, count
-    while high - low > _BASE:
-        blocks = min(_BASE, -(-(high - low) // _BASE))
+    while high - low > MOST_EVEN:
+        blocks = min(MOST_EVEN, -(-(high - low) // MOST_EVEN))
         block = draw(_places(blocks))
         low, high = low + block * (high - low) // blocks, low + (block + 1) * (high - low) // blocks
     return low + draw(_places(high - low))
@@ -31,13 +28,3 @@ def draw_below(draw: st.DrawFn, count: int) -> int:
 def _places(count: int) -> st.SearchStrategy[int]:
     """A range as ``sampled_from``, which unlike ``integers`` does not favour the two ends."""
     return st.sampled_from(range(count))
-
-
-def sampled_evenly(elements: Sequence[T]) -> st.SearchStrategy[T]:
-    """One of the elements, shrinking towards the first."""
-    return st.sampled_from(elements) if len(elements) <= _BASE else _sampled(elements)
-
-
-@st.composite
-def _sampled(draw: st.DrawFn, elements: Sequence[T]) -> T:
-    return elements[draw_below(draw, len(elements))]

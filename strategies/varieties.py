@@ -7,7 +7,6 @@ from conjcheck.geometry.families import Family
 from conjcheck.geometry.flag_variety import MOST_CLASSES, FlagVariety
 from conjcheck.geometry.weyl import number_of_cosets
 from conjcheck.strategies.arguments import read_family, read_integer
-from conjcheck.strategies.indices import sampled_evenly
 
 __all__ = ["flag_varieties", "members"]
 
@@ -17,7 +16,7 @@ _DEFAULT_MAX_N = 5
 def flag_varieties(
     on: Family, *, min_n: int = 2, max_n: int | None = None, max_classes: int = MOST_CLASSES
 ) -> st.SearchStrategy[FlagVariety]:
-    """Flag varieties of a family, each with the same probability.
+    """Flag varieties of a family, up to 256 of them each with the same probability.
 
     Shrinks towards the smallest variety of the family, in the order of ``FlagVariety.sort_key`` (rank, marked nodes, dimension).
     One choice.
@@ -38,7 +37,7 @@ def flag_varieties(
     >>> find(flag_varieties(Grassmannians()), lambda X: X.dim >= 3)
     FlagVariety('Gr(1,4)')
     """
-    return sampled_evenly(members(on, min_n=min_n, max_n=max_n, max_classes=max_classes))
+    return st.sampled_from(members(on, min_n=min_n, max_n=max_n, max_classes=max_classes))
 
 
 def members(on: Family, *, min_n: int, max_n: int | None, max_classes: int) -> tuple[FlagVariety, ...]:

@@ -3,7 +3,7 @@
 import functools
 import inspect
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 from conjcheck.errors import DeclarationError
@@ -21,6 +21,7 @@ class Conjecture:
     """One conjecture; still an ordinary function: calling it calls the rule.
 
     Attributes:
+        name: the name of the function, or the name in its module if that is another one.
         rule: the function as written.
         role: ``"candidate"`` (a formula for constants) or ``"claim"`` (a statement about them).
         by_rows: whether one call answers a whole row ``(X, u, v)`` instead of one case.
@@ -31,6 +32,7 @@ class Conjecture:
         references, contributors: for the report and for the citation.
     """
 
+    name: str
     rule: Rule
     role: str
     by_rows: bool
@@ -47,11 +49,6 @@ class Conjecture:
         return self.rule(*args, **kwargs)
 
     @property
-    def name(self) -> str:
-        """The name of the function."""
-        return self.rule.__name__
-
-    @property
     def file(self) -> str:
         """The file it was written in."""
         return inspect.getsourcefile(self.rule) or "<unknown>"
@@ -60,6 +57,10 @@ class Conjecture:
     def is_classical(self) -> bool:
         """Whether only ``d = 0`` is compared."""
         return self.ring == "classical"
+
+    def called(self, name: str) -> "Conjecture":
+        """The same conjecture under another name: that of the variable that holds it."""
+        return self if name == self.name else _with_page(replace(self, name=name))
 
     def __repr__(self) -> str:
         return f"<{self.role} {self.name} on {self.on}>"
@@ -151,10 +152,20 @@ def _declare(
     oracle = ("N",) if role == "claim" else ()
     by_rows = _signature(place, "the rule", rule, (*single, *oracle), (*whole, *oracle))
     premise_by_rows = premise is None or _signature(place, "the premise", premise, single, whole)
-    made = Conjecture(
-        rule, role, by_rows, on, ring, premise, premise_by_rows, statement, tuple(references), tuple(contributors)
+    if role == "claim" and by_rows and not premise_by_rows:
+        raise DeclarationError(
+            f"{place}: expected a premise on rows, with the arguments ({', '.join(whole)}), since the claim is about rows, got one on cases"
+        )
+    return _with_page(
+        Conjecture(
+            rule.__name__, rule, role, by_rows, on, ring, premise, premise_by_rows, statement, tuple(references), tuple(contributors)
+        )
     )
-    vars(made).update(__doc__=rule.__doc__, __name__=rule.__name__, __wrapped__=rule)  # a value with a function's page
+
+
+def _with_page(made: Conjecture) -> Conjecture:
+    """Give a conjecture the page of its function, so that ``help`` and doctests find it."""
+    vars(made).update(__doc__=made.rule.__doc__, __name__=made.name, __wrapped__=made.rule)
     return made
 
 

@@ -16,7 +16,7 @@ from conjcheck.errors import DifferentVarieties, NotationError
 from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
 from conjcheck.geometry.notation import read_integers
 
-__all__ = ["Case", "Row", "count_cases", "degrees_of_total", "outcomes", "parse_class", "place_in_row", "read_degree", "rows"]
+__all__ = ["Case", "Row", "count_below", "count_cases", "degrees_of_total", "outcomes", "parse_class", "place_in_row", "read_degree", "rows"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -210,6 +210,20 @@ def _count_degrees(weights: tuple[int, ...], total: int) -> int:
         parts, rest = divmod(total, weights[0])
         return 0 if rest else comb(parts + len(weights) - 1, len(weights) - 1)
     return sum(_count_degrees(weights[1:], total - x) for x in range(0, total + 1, weights[0]))
+
+
+def count_below(X: FlagVariety, total: int, outcome: tuple[SchubertClass, Degree], *, classical: bool = False) -> int:
+    """The number of outcomes of ``count_cases`` that are smaller than a given outcome, without making them."""
+    w, d = outcome
+    smaller = 0
+    for length in [total] if classical else range(min(total, X.dim) + 1):
+        level = X.of_length(length)
+        for e in degrees_of_total(X, total - length) if level else ():
+            if e == d:
+                smaller += sum(x.index < w.index for x in level)
+            elif (sum(e), e) < (sum(d), d):
+                smaller += len(level)
+    return smaller
 
 
 def rows(X: FlagVariety) -> Iterator[Row]:

@@ -2,11 +2,13 @@
 
 import shlex
 import textwrap
+from pathlib import PurePath
 from typing import Any
 
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import SchubertClass
 from conjcheck.oracle.engine import Product
+from conjcheck.testing.answer import shown_number
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer
 from conjcheck.testing.outcome import Outcome, environment
@@ -68,7 +70,7 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
             lines += ["", *("    " + line for line in finding.trace.rstrip().splitlines()), ""]
         return lines + _entry("minimal", _minimality(outcome))
     if finding.rule is not None:
-        lines += _entry("rule", f"{finding.rule}")
+        lines += _entry("rule", shown_number(finding.rule))
         if finding.objects is not None:
             lines += _entry("objects", "; ".join(finding.objects) or "none")
     if finding.oracle is not None:
@@ -107,7 +109,7 @@ def _layer(layer: Layer, row: Row) -> list[str]:
         text = f"at least {pairs} of {row.X}: {cases:,} failing {'case' if cases == 1 else 'cases'} in {orbits} among {layer.rows:,} rows"
     lines = _entry("layer", text)
     for finding in layer.findings[:_MOST_LINES]:
-        values = f": rule {finding.rule}, oracle {finding.oracle}" if finding.rule is not None else ""
+        values = f": rule {shown_number(finding.rule)}, oracle {finding.oracle}" if finding.rule is not None else ""
         lines += _entry("", str(finding.where).removeprefix(f"{row.X}: ") + values, wrap=False)
     if cases > _MOST_LINES:
         lines += _entry("", f"... {cases - _MOST_LINES:,} more")
@@ -151,18 +153,20 @@ def summary_table(outcomes: list[dict[str, Any]]) -> list[str]:
 
     Rows, cases and nonzero constants are those of the survey; ``drawn`` counts the rows of the probes.
     """
-    by_name: dict[str, list[dict[str, Any]]] = {}
+    by_name: dict[tuple[str, str], list[dict[str, Any]]] = {}
     for outcome in outcomes:
-        by_name.setdefault(outcome["conjecture"], []).append(outcome)
+        by_name.setdefault((outcome["file"], outcome["conjecture"]), []).append(outcome)
+    names = [name for _, name in by_name]
     table = [("conjecture", "status", "rows", "cases", "nonzero", "drawn", "seconds", "compared, or where it fails")]
-    for name, parts in by_name.items():
+    for (file, plain), parts in by_name.items():
+        name = plain if names.count(plain) == 1 else f"{plain} ({PurePath(file).parent.name}/{PurePath(file).name})"
         failures = [part for part in parts if part["status"] != "agrees"]
         failed = max(failures, key=lambda part: part["cases"], default=None)
         shown = failed or next((part for part in parts if part["part"] == "survey"), parts[0])
         drawn = sum(part["rows"] for part in parts if part["part"].startswith("probe"))
         numbers = [shown["rows"], shown["cases"], shown["nonzero"], drawn]
         where = shown["where"]
-        if failed:
+        if failed and "rule" in failed:
             where += " (minimal)" if failed["minimal"] else " (not known to be minimal)"
         if shown.get("note"):
             where += f"; {shown['note']}"

@@ -3,10 +3,10 @@
 from collections.abc import Iterable, Mapping
 from typing import Any
 
-__all__ = ["WrongAnswer", "count_of", "shown_objects", "truth_of"]
+__all__ = ["WrongAnswer", "count_of", "shown_number", "shown_objects", "truth_of"]
 
 _MOST_SHOWN = 12
-_MOST_OBJECTS = 1_000_000
+_MOST_OBJECTS = 100_000
 
 
 class WrongAnswer(Exception):
@@ -32,6 +32,11 @@ def shown_objects(answer: Any) -> tuple[str, ...] | None:
     return shown if len(objects) <= _MOST_SHOWN else (*shown, f"... {len(objects) - _MOST_SHOWN} more")
 
 
+def shown_number(number: int) -> str:
+    """An integer in digits, or its size if it has too many of them."""
+    return str(number) if number.bit_length() < 4_000 else f"an integer of {number.bit_length():,} bits"
+
+
 def _counted(answer: Any) -> tuple[int, list[Any] | None]:
     if type(answer) is int:
         number = answer
@@ -39,19 +44,21 @@ def _counted(answer: Any) -> tuple[int, list[Any] | None]:
         number = whole
     elif answer is None:
         raise WrongAnswer("expected a count, got None; does the rule return on every path?")
-    elif isinstance(answer, (str, bytes, Mapping)) or not isinstance(answer, Iterable):
+    elif isinstance(answer, (str, bytes, bytearray, memoryview, Mapping)) or hasattr(answer, "__array__") or not isinstance(answer, Iterable):
         raise WrongAnswer(
             f"expected an int of 0 or more or an iterable of objects, got {_kind(answer)} {answer!r}; a count is exact: return an int"
         )
     else:
         return _distinct(answer)
     if number < 0:
-        raise WrongAnswer(f"expected a count of 0 or more, got the negative number {number}")
+        raise WrongAnswer(f"expected a count of 0 or more, got the negative number {shown_number(number)}")
     return number, None
 
 
 def _index(answer: Any) -> int | None:
-    """The exact integer behind a number of any library, ``None`` if there is none (an array has the method, but no answer)."""
+    """The exact integer behind a number of any library, ``None`` if there is none (also for an array with one entry)."""
+    if getattr(answer, "ndim", 0):
+        return None
     try:
         return int(answer.__index__())
     except (AttributeError, TypeError):

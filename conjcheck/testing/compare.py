@@ -1,7 +1,6 @@
 """The one way to compare: a rule against the oracle, a row at a time, zeros included."""
 
 import random
-import traceback
 from collections.abc import Container, Iterable, Mapping
 from contextlib import nullcontext
 from dataclasses import dataclass
@@ -9,22 +8,25 @@ from time import perf_counter
 from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.errors import NotationError, NotIndependent, OutsideDomain
-from conjcheck.geometry.case import Case, Row, count_cases, degrees_of_total, outcomes, place_in_row, read_degree
+from conjcheck.errors import NotationError
+from conjcheck.geometry.case import Case, Row, count_below, count_cases, degrees_of_total, outcomes, place_in_row, read_degree
 from conjcheck.geometry.flag_variety import Degree, SchubertClass
 from conjcheck.oracle import row_terms
 from conjcheck.oracle.engine import RowTerms
 from conjcheck.oracle.guard import Watch, watched
-from conjcheck.testing.answer import WrongAnswer, count_of, shown_objects, truth_of
+from conjcheck.testing.answer import WrongAnswer, count_of, shown_number, shown_objects, truth_of
+from conjcheck.testing.asker import Asker
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.limits import CallInterrupted, CallLimit
+from conjcheck.testing.trouble import trouble
 
-__all__ = ["Asker", "Comparer", "Key", "RowResult"]
+__all__ = ["Comparer", "Key", "RowResult"]
 
 Key = tuple[SchubertClass, Degree]
 
-_ENDINGS = (Exception, SystemExit, CallInterrupted)
-"""How a call of a rule can end otherwise than by an answer; Ctrl-C is the user's and goes through."""
+_DOUBTS = 8
+_DOUBT_SECONDS = 0.5
+"""A wrong answer is asked for again up to eight times, but after half a second only once."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -44,35 +46,6 @@ class RowResult:
     complete: bool
 
 
-class Asker:
-    """The oracle in a claim's hand: ``N(u, v, w, d)`` is a constant, ``N.product(u, v)`` a product; remembers the last row."""
-
-    __slots__ = ("_classical", "_key", "_terms")
-
-    def __init__(self, classical: bool) -> None:
-        self._classical = classical
-        self._key: tuple[SchubertClass, SchubertClass] | None = None
-        self._terms: RowTerms = {}
-
-    def _row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
-        if self._key != (u, v):
-            Row(u.variety, u, v)
-            terms = row_terms(u, v)
-            self._terms = {key: n for key, n in terms.items() if not any(key[1])} if self._classical else terms
-            self._key = (u, v)
-        return self._terms
-
-    def __call__(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Iterable[int] | None = None) -> int:
-        """The constant ``N_{u,v}^{w,d}``; without d the classical one."""
-        degree = (0,) * len(u.variety.marked) if d is None else d if type(d) is tuple else read_degree(u.variety, d)
-        return self._row(u, v).get((w, degree), 0)
-
-    def product(self, u: SchubertClass, v: SchubertClass) -> dict[Any, int]:
-        """The product ``{(w, d): N}``, or ``{w: N}`` in the classical ring; nonzero terms only."""
-        terms = self._row(u, v)
-        return {w: n for (w, _), n in terms.items()} if self._classical else dict(terms)
-
-
 class Comparer:
     """Compares one conjecture with the oracle.
 
@@ -90,21 +63,38 @@ class Comparer:
         self.limit = CallLimit(call_limit)
         self.asker = Asker(conjecture.is_classical)
         self._is_claim = conjecture.role == "claim"
+        self._premise_hangs = False
         self._oracle: tuple[Asker, ...] = (self.asker,) if self._is_claim else ()
         self._progress: tuple[Key | None, int, int] = None, 0, 0
 
     def inside(self, row: Row) -> bool:
         """Whether the premise on rows holds (a premise on cases is asked case by case).
 
-        A premise that raises counts as holding: then ``Comparer.row`` meets the error and reports it.
+        A premise that raises or hangs counts as holding: then ``Comparer.row`` meets that and reports it.
         """
         premise = self.conjecture.premise
-        if premise is None or not self.conjecture.premise_by_rows:
+        if premise is None or not self.conjecture.premise_by_rows or self._premise_hangs:
             return True
         try:
+            self.limit.started = perf_counter()
             return bool(premise(row.X, row.u, row.v))
-        except Exception:
+        except KeyboardInterrupt:
+            raise
+        except CallInterrupted:
+            self._premise_hangs = True
             return True
+        except BaseException:
+            return True
+        finally:
+            self.limit.started = 0.0
+
+    def admits(self, case: Case) -> bool:
+        """Whether a premise on cases, if that is what there is, holds; raises what it raises."""
+        conjecture = self.conjecture
+        if conjecture.premise is None or conjecture.premise_by_rows:
+            return True
+        tail = (case.w,) if conjecture.is_classical else (case.w, case.d)
+        return bool(conjecture.premise(case.X, case.u, case.v, *tail))
 
     def truth(self, row: Row) -> RowTerms:
         """The oracle's nonzero terms that the conjecture speaks about."""
@@ -122,36 +112,45 @@ class Comparer:
         """
         return self._compare(row, self.truth(row), deadline=deadline, most_cases=most_cases)
 
-    def findings(self, row: Row, *, deadline: float = float("inf")) -> list[Finding]:
-        """Everything that differs in one row, in order; a failure of the whole row is a single finding."""
+    def findings(self, row: Row, *, deadline: float = float("inf")) -> tuple[list[Finding], bool]:
+        """Everything that differs in one row, in order, and whether the whole row was looked at.
+
+        A failure of the whole row is a single finding.
+        """
         truth, found = self.truth(row), list[Finding]()
         skipped: set[Key] = set()
-        while finding := self._compare(row, truth, deadline=deadline, skipped=skipped).finding:
-            found.append(finding)
-            if not isinstance(finding.where, Case) or finding.status != "refuted":
-                break
-            skipped.add((finding.where.w, finding.where.d))
-        return found
+        while True:
+            result = self._compare(row, truth, deadline=deadline, skipped=skipped)
+            if result.finding is None:
+                return found, result.complete
+            found.append(result.finding)
+            if not isinstance(result.finding.where, Case) or result.finding.status != "refuted":
+                return found, True
+            skipped.add((result.finding.where.w, result.finding.where.d))
 
     def case(self, case: Case) -> Finding | None:
         """Compare one single case."""
         return self._compare(case.row, self.truth(case.row), only=(case.w, case.d)).finding
 
     def values(self, row: Row, keys: Iterable[Key]) -> dict[Key, int]:
-        """The rule's nonzero values at some outcomes of a row (all its values, if it answers by rows); none for a claim.
+        """The rule's nonzero values at those of some outcomes of a row that the premise admits; none for a claim.
 
-        Raises whatever the rule raises; ``Comparer.row`` turns that into a finding.
+        A rule that answers by rows gives all its admitted values, also at other outcomes. Raises whatever the rule raises; ``Comparer.row`` turns that into a finding.
         """
         if self._is_claim:
             return {}
+        by_cases = not self.conjecture.premise_by_rows
         with watched(Watch()):
             try:
                 self.limit.started = perf_counter()
                 if self.conjecture.by_rows:
-                    return self._whole(self.conjecture.rule(row.X, row.u, row.v), row)
+                    whole = self._whole(self.conjecture.rule(row.X, row.u, row.v), row)
+                    return {key: n for key, n in whole.items() if self.admits(Case(row.X, row.u, row.v, *key))}
                 found = {}
                 for key in keys:
                     self.limit.started = perf_counter()
+                    if by_cases and not self.admits(Case(row.X, row.u, row.v, *key)):
+                        continue
                     if count := count_of(self.conjecture.rule(*self._arguments(row, *key))):
                         found[key] = count
                 return found
@@ -172,7 +171,9 @@ class Comparer:
         try:
             with nullcontext() if self._is_claim else watched(watch):
                 result = self._walk(row, truth, **choices)
-        except _ENDINGS as error:
+        except KeyboardInterrupt:
+            raise
+        except BaseException as error:  # whatever else ends a call, SystemExit and pytest.skip included, is the rule's doing
             self.limit.started = 0.0
             key, cases, nonzero = self._progress
             place = Case(row.X, row.u, row.v, *key) if key else row
@@ -250,8 +251,9 @@ class Comparer:
                     count = answer if type(answer) is int and answer >= 0 else count_of(answer)
             if count != true:
                 limit.started = 0.0
-                place = Case(X, u, v, w, d)
-                return RowResult(cases, nonzero, self._difference(place, count, true), complete)
+                if values is not None and premise is None:
+                    cases = count_below(X, u.length + v.length, key, classical=classical)
+                return RowResult(cases, nonzero, self._difference(Case(X, u, v, w, d), count, true), complete)
             cases += 1
             if true:
                 nonzero += 1
@@ -295,32 +297,28 @@ class Comparer:
             objects = shown_objects(answer)
         except WrongAnswer:
             objects = None
-        return Finding("refuted", place, count, true, f"the rule gives {count}, the oracle {true}", objects)
+        return Finding("refuted", place, count, true, f"the rule gives {shown_number(count)}, the oracle {true}", objects)
 
     def _trouble(self, place: Case | Row, error: BaseException) -> Finding:
-        """The finding for a call that ended with an exception."""
-        if isinstance(error, CallInterrupted):
-            return Finding("too-slow", place, detail=f"one call took longer than {self.limit.seconds:g} s")
-        if isinstance(error, OutsideDomain):
-            return Finding("undefined", place, detail=f"the rule says that this is outside its domain: {error or 'no reason given'}")
-        if isinstance(error, NotIndependent):
-            return Finding("not-independent", place, detail=str(error))
-        if isinstance(error, WrongAnswer):
-            return Finding("not-a-count", place, detail=str(error))
-        return Finding("crashed", place, detail=f"{type(error).__name__}: {error}", trace=_trace(error, self.conjecture.file))
+        return trouble(place, error, limit=self.limit.seconds, file=self.conjecture.file)
 
     def _settle(self, finding: Finding) -> Finding:
-        """Call the rule once more at the same place: if the answer is another one now, that is the finding."""
+        """Call the rule again at the same place, some times: if the answer is another one now, that is the finding."""
         if finding.status in ("too-slow", "not-independent", "unstable"):
             return finding
-        first, second = self._portrait(finding), self._answer_again(finding.where)
-        if first == second:
-            return finding
-        return Finding("unstable", finding.where, detail=f"expected one answer for one case, got {first}, then {second}")
+        first, until = self._portrait(finding), perf_counter() + _DOUBT_SECONDS
+        for _ in range(_DOUBTS):
+            again = self._answer_again(finding.where)
+            if again != first:
+                detail = f"expected one answer for one case, got {first}, and another time {again}"
+                return Finding("unstable", finding.where, detail=detail)
+            if perf_counter() > until:
+                break
+        return finding
 
     def _portrait(self, finding: Finding) -> str:
         if finding.status == "refuted":
-            return "False" if self._is_claim else str(finding.rule)
+            return "False" if self._is_claim else shown_number(finding.rule or 0)
         return finding.detail
 
     def _answer_again(self, place: Case | Row) -> str:
@@ -331,17 +329,21 @@ class Comparer:
                 self.limit.started = perf_counter()
                 if conjecture.premise is not None and conjecture.premise_by_rows:
                     conjecture.premise(row.X, row.u, row.v)
+                if isinstance(place, Case):
+                    self.admits(place)
                 if conjecture.by_rows:
                     answer = rule(row.X, row.u, row.v, *self._oracle)
                     if self._is_claim:
                         return str(truth_of(answer))
                     values = self._whole(answer, row)
-                    return str(values.get((place.w, place.d), 0)) if isinstance(place, Case) else "an answer"
+                    return shown_number(values.get((place.w, place.d), 0)) if isinstance(place, Case) else "an answer"
                 if not isinstance(place, Case):
                     return "an answer"
                 answer = rule(*self._arguments(row, place.w, place.d))
-                return str(truth_of(answer) if self._is_claim else count_of(answer))
-            except _ENDINGS as error:
+                return str(truth_of(answer)) if self._is_claim else shown_number(count_of(answer))
+            except KeyboardInterrupt:
+                raise
+            except BaseException as error:
                 return self._trouble(place, error).detail
             finally:
                 self.limit.started = 0.0
@@ -361,13 +363,3 @@ def _sample(row: Row, truth: RowTerms, most: int, classical: bool) -> list[Key]:
         if weights[left]:
             keys.add((w, chooser.choice(weights[left])))
     return sorted(keys, key=place_in_row)
-
-
-def _trace(error: BaseException, file: str) -> str:
-    """The traceback from the plug-in file on, without the harness."""
-    frames = traceback.extract_tb(error.__traceback__)
-    first = next((k for k, frame in enumerate(frames) if frame.filename == file), len(frames) - 1)
-    lines = traceback.format_list(frames[first:][:3] + (frames[-3:] if len(frames) - first > 6 else frames[first + 3 :]))
-    return "".join(lines) + "".join(traceback.format_exception_only(error))
-
-

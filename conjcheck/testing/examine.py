@@ -2,24 +2,28 @@
 
 from collections.abc import Callable
 from dataclasses import dataclass, field, replace
+from itertools import islice
 from time import perf_counter
 from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.errors import ConjcheckError
+from conjcheck.errors import NotationError
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.explain import explain
 from conjcheck.testing.finding import Finding, Found
 from conjcheck.testing.laws import NoValue, broken_laws
-from conjcheck.testing.minimise import confirm, descend, layer_of, minimise
+from conjcheck.testing.minimise import Minimum, certified, confirm, descend, layer_of, minimise
 from conjcheck.testing.outcome import Outcome
 from conjcheck.testing.probe import ProbeCount, probe_levels, run_probe
 from conjcheck.testing.scope import probe_scope, survey_scope, survey_spaces
 from conjcheck.testing.survey import Coverage, in_reach, survey
 
 __all__ = ["EFFORTS", "Effort", "Examination", "examine"]
+
+
+_LARGEST_N = 12
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,8 +85,11 @@ class Examination:
         started = perf_counter()
         done = survey(self.comparer, budget=self.effort.survey, coverage=self.coverage)
         if done.finding:
-            return self.work_out(done.finding, "survey", started)
+            minimum = certified(done.finding, self.coverage, self.coverage.cases + done.in_row)
+            return self.work_out(done.finding, "survey", started, minimum=minimum)
         coverage = self.coverage
+        if not coverage.rows:
+            return Outcome(self.conjecture, "survey", "undefined", _nothing(coverage), survey_spaces(coverage))
         return Outcome(
             self.conjecture,
             "survey",
@@ -95,22 +102,27 @@ class Examination:
             seconds=perf_counter() - started,
         )
 
-    def laws(self, *, seed: int | None = None) -> Outcome:
-        """Hold the rule against the laws on drawn rows of small spaces; no oracle takes part unless a law breaks."""
+    def laws(self, *, seed: int | None = None) -> Outcome | None:
+        """Hold the rule against the laws on drawn rows of small spaces; no oracle takes part unless a law breaks.
+
+        Returns:
+            The outcome; ``None`` if no row inside the premise was met.
+        """
         started = perf_counter()
-        count = ProbeCount()
+        count = ProbeCount(started + self.effort.laws)
         try:
-            run_probe(self.law_check(started + self.effort.laws, count), self.small_spaces(), self.conjecture, seed=seed)
+            if spaces := self.small_spaces():
+                run_probe(self.law_check(count), spaces, self.comparer, count, seed=seed)
         except Found as found:
-            return self.work_out(found.finding, "laws", started)
+            return self.work_out(found.finding, "laws", started, count.broken_law)
         return self.laws_agree(count, started)
 
-    def probe(self, n: int, spaces: list[FlagVariety], seconds: float, *, seed: int | None = None) -> Outcome:
-        """Compare rows drawn at random on some spaces."""
+    def probe(self, n: int, spaces: list[FlagVariety], seconds: float, *, seed: int | None = None) -> Outcome | None:
+        """Compare rows drawn at random on some spaces; ``None`` if no row inside the premise was met."""
         started = perf_counter()
-        count = ProbeCount()
+        count = ProbeCount(started + seconds)
         try:
-            run_probe(self.probe_check(started + seconds, count), self.unfinished(spaces), self.conjecture, seed=seed)
+            run_probe(self.probe_check(count), self.unfinished(spaces), self.comparer, count, seed=seed)
         except Found as found:
             return self.work_out(found.finding, f"probe[n={n}]", started)
         return self.probe_agrees(n, spaces, count, started)
@@ -118,19 +130,32 @@ class Examination:
     def case(self, where: Case | Row) -> Outcome:
         """Compare one single case, or row, and nothing else."""
         started = perf_counter()
+        conjecture, row = self.conjecture, where.row if isinstance(where, Case) else where
+        if where.X not in conjecture.on:
+            raise NotationError(f"expected a case on {conjecture.on}, the family of {conjecture.name}, got {where}")
+        if isinstance(where, Case) and conjecture.is_classical and any(where.d):
+            raise NotationError(f"expected a case with d = 0, since {conjecture.name} is about the classical ring, got {where}")
         with self.comparer.limit:
-            finding = self.comparer.case(where) if isinstance(where, Case) else self.comparer.row(where).finding
+            admitted = self.comparer.inside(row) and (not isinstance(where, Case) or self.comparer.admits(where))
+            if not admitted:
+                raise NotationError(f"expected a case inside the premise of {conjecture.name}, got {where}; nothing was compared")
+            if isinstance(where, Case):
+                finding, cases = self.comparer.case(where), 1
+            else:
+                result = self.comparer.row(row)
+                finding, cases = result.finding, result.cases
         if finding is None:
-            return Outcome(self.conjecture, "case", "agrees", f"the one case {where}", str(where), 1, 1, seconds=perf_counter() - started)
-        return self._describe(Outcome(self.conjecture, "case", finding.status, "one case", finding=finding), started)
+            scope = f"the one case {where}" if isinstance(where, Case) else f"the one row {where}, {cases:,} cases"
+            return Outcome(conjecture, "case", "agrees", scope, str(where), 1, cases, seconds=perf_counter() - started)
+        return self._describe(Outcome(conjecture, "case", finding.status, "one case", finding=finding), started)
 
     # -- what a drawn row is checked for --------------------------------------------------------------------------------
 
-    def law_check(self, deadline: float, count: ProbeCount) -> Callable[[Row, int], None]:
+    def law_check(self, count: ProbeCount) -> Callable[[Row, int], None]:
         """A check of one row against the laws; raises ``Found``. After the deadline it lets rows pass, unless one failed before."""
 
         def check(row: Row, choice: int) -> None:
-            if count.is_over(row, deadline):
+            if count.is_over(row):
                 return
             with self.comparer.limit:
                 if not self.comparer.inside(row):
@@ -144,17 +169,18 @@ class Examination:
                     count.broken_law = law
                     finding = next((f for r in suspects if (f := self.comparer.row(r).finding)), None)
                     if finding is None:
-                        raise ConjcheckError(f"a rule breaks a law ({law}) on rows where the oracle agrees with it: {suspects}")
+                        # No wrong value now, though a law was broken or a value was missing before: the rule is not a function.
+                        finding = Finding("unstable", row, detail=law or "the rule gave no value, but gives one when asked again")
                     count.fail(finding)
             count.add(row, 0, 0)
 
         return check
 
-    def probe_check(self, deadline: float, count: ProbeCount) -> Callable[[Row, int], None]:
+    def probe_check(self, count: ProbeCount) -> Callable[[Row, int], None]:
         """A check of one row against the oracle; raises ``Found``. After the deadline it lets rows pass, unless one failed before."""
 
         def check(row: Row, choice: int) -> None:
-            if count.is_over(row, deadline):
+            if count.is_over(row):
                 return
             with self.comparer.limit:
                 result = self.comparer.row(row, most_cases=self.effort.most_cases)
@@ -169,13 +195,9 @@ class Examination:
 
     def small_spaces(self) -> list[FlagVariety]:
         """The spaces on which laws are tried."""
-        small: list[FlagVariety] = []
-        for X in in_reach(self.conjecture):
-            if X.rank > 4 and small:
-                break
-            if len(X.classes) <= 130:
-                small.append(X)
-        return small
+        reached = list(islice(in_reach(self.conjecture, last_rank=_LARGEST_N - 1), 60))
+        small = [X for X in reached if X.rank <= 4 and X.number_of_classes <= 130]
+        return small or sorted(reached, key=lambda X: X.number_of_classes)[:3]
 
     def levels(self) -> list[tuple[int, list[FlagVariety]]]:
         """The levels of the probe, n rising."""
@@ -188,13 +210,17 @@ class Examination:
 
     # -- outcomes --------------------------------------------------------------------------------------------------------
 
-    def laws_agree(self, count: ProbeCount, started: float) -> Outcome:
-        """The outcome of laws that hold."""
+    def laws_agree(self, count: ProbeCount, started: float) -> Outcome | None:
+        """The outcome of laws that hold; ``None`` if they were tried nowhere."""
+        if not count.rows:
+            return None
         scope = f"the laws hold around {count.rows:,} rows drawn at random ({count.distinct:,} distinct)"
         return Outcome(self.conjecture, "laws", "agrees", scope, rows=count.rows, seconds=perf_counter() - started)
 
-    def probe_agrees(self, n: int, spaces: list[FlagVariety], count: ProbeCount, started: float) -> Outcome:
-        """The outcome of a probe that found nothing."""
+    def probe_agrees(self, n: int, spaces: list[FlagVariety], count: ProbeCount, started: float) -> Outcome | None:
+        """The outcome of a probe that found nothing wrong; ``None`` if it compared nothing."""
+        if not count.rows:
+            return None
         return Outcome(
             self.conjecture,
             f"probe[n={n}]",
@@ -206,11 +232,14 @@ class Examination:
             seconds=perf_counter() - started,
         )
 
-    def work_out(self, finding: Finding, part: str, started: float, broken_law: str = "") -> Outcome:
+    def work_out(
+        self, finding: Finding, part: str, started: float, broken_law: str = "", minimum: Minimum | None = None
+    ) -> Outcome:
         """From the first failure to the smallest one, confirmed and explained; remembered for the parts that follow."""
-        if part != "survey" and finding.status != "too-slow":
-            finding = descend(self.comparer, finding, budget=self.effort.minimise / 4)
-        minimum = minimise(self.comparer, finding, self.coverage, budget=self.effort.minimise)
+        if minimum is None:
+            if finding.status != "too-slow":
+                finding = descend(self.comparer, finding, budget=self.effort.minimise / 4)
+            minimum = minimise(self.comparer, finding, self.coverage, budget=self.effort.minimise)
         finding = minimum.finding
         layer = layer_of(self.comparer, finding, budget=self.effort.layer) if finding.status == "refuted" else None
         coverage = self.coverage
@@ -253,13 +282,22 @@ def examine(conjecture: Conjecture, *, effort: str = "normal", seed: int | None 
         The outcomes in the order in which the parts ran; ``print(outcome.verdict)`` says the most important thing of each.
     """
     examination = Examination(conjecture, EFFORTS[effort], **options)
-    outcomes = [examination.survey()]
+    outcomes: list[Outcome | None] = [examination.survey()]
     if conjecture.role == "candidate" and not examination.failure:
         outcomes.append(examination.laws(seed=seed))
     levels = examination.levels()
     for n, spaces in levels:
         if not examination.failure:
             outcomes.append(examination.probe(n, spaces, examination.effort.probe / len(levels), seed=seed))
-    return outcomes
+    return [outcome for outcome in outcomes if outcome]
+
+
+def _nothing(coverage: Coverage) -> str:
+    """What to say of a survey without a row: it must not be taken for agreement."""
+    where = survey_spaces(coverage) or "no space in reach of the oracle"
+    return (
+        f"nothing compared: expected a row inside the premise among those reached ({where}), got none; restrict the family with .where() so "
+        "that it begins where the premise holds, or raise the budget"
+    )
 
 

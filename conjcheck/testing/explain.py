@@ -6,7 +6,6 @@ from conjcheck.geometry.case import Case, Row, outcomes
 from conjcheck.oracle.engine import Product
 from conjcheck.testing.compare import Comparer, Key
 from conjcheck.testing.finding import Finding
-from conjcheck.testing.limits import CallInterrupted
 
 __all__ = ["Explanation", "explain"]
 
@@ -69,7 +68,9 @@ def _values(comparer: Comparer, row: Row, keys: list[Key]) -> dict[Key, int]:
     """The rule's values, none where it has none."""
     try:
         return comparer.values(row, keys)
-    except (Exception, SystemExit, CallInterrupted):
+    except KeyboardInterrupt:
+        raise
+    except BaseException:
         return {}
 
 

@@ -10,7 +10,6 @@ from conjcheck.geometry.case import Case, Row, count_cases, outcomes, place_in_r
 from conjcheck.geometry.flag_variety import SchubertClass
 from conjcheck.geometry.symmetries import diagram_images, seidel
 from conjcheck.testing.compare import Comparer, Key
-from conjcheck.testing.limits import CallInterrupted
 
 __all__ = ["LAWS", "BrokenLaw", "NoValue", "broken_laws"]
 
@@ -79,16 +78,10 @@ class _Neighbourhood:
             return None
         try:
             return self.comparer.values(row, outcomes(row.X, total, classical=classical))
-        except (Exception, SystemExit, CallInterrupted) as error:
+        except KeyboardInterrupt:
+            raise
+        except BaseException as error:
             raise NoValue(row) from error
-
-    def _admits(self, case: Case) -> bool:
-        """Whether a premise on cases, if any, holds."""
-        conjecture = self.conjecture
-        if conjecture.premise is None or conjecture.premise_by_rows:
-            return True
-        tail = (case.w,) if conjecture.is_classical else (case.w, case.d)
-        return bool(conjecture.premise(case.X, case.u, case.v, *tail))
 
     def _compare(self, law: str, expected: Values, row: Row, found: Values, back: dict[Key, Case] | None = None) -> Iterator[BrokenLaw]:
         """Differences between two sets of values on ``row``; ``back`` gives the case that an expected value came from."""
@@ -96,7 +89,7 @@ class _Neighbourhood:
             here, there = expected.get((w, d), 0), found.get((w, d), 0)
             second = Case(row.X, row.u, row.v, w, d)
             first = (back or {}).get((w, d), second)
-            if here != there and self._admits(first) and self._admits(second):
+            if here != there and self.comparer.admits(first) and self.comparer.admits(second):
                 yield BrokenLaw(law, f"{here} at {first}, but {there} at {second}", (first.row, row))
 
     def broken(self) -> Iterator[BrokenLaw]:

@@ -21,19 +21,23 @@ class CallInterrupted(BaseException):
 
 
 class CallLimit:
-    """Context manager. Set ``started = time.perf_counter()`` before a call and ``started = 0.0`` after it.
+    """Context manager, also inside itself. Set ``started = time.perf_counter()`` before a call and ``started = 0.0`` after it.
 
     Args:
         seconds: how long one call may take.
     """
 
-    __slots__ = ("_before", "_done", "_target", "_thread", "seconds", "started")
+    __slots__ = ("_before", "_depth", "_done", "_target", "_thread", "seconds", "started")
 
     def __init__(self, seconds: float) -> None:
         self.seconds = seconds
         self.started = 0.0
+        self._depth = 0
 
     def __enter__(self) -> "CallLimit":
+        self._depth += 1
+        if self._depth > 1:
+            return self
         self.started = 0.0
         self._thread: threading.Thread | None = None
         if hasattr(signal, "setitimer") and threading.current_thread() is threading.main_thread():
@@ -46,6 +50,9 @@ class CallLimit:
         return self
 
     def __exit__(self, kind: type[BaseException] | None, value: BaseException | None, trace: TracebackType | None) -> None:
+        self._depth -= 1
+        if self._depth:
+            return
         self.started = 0.0
         if self._thread is not None:
             self._done.set()

@@ -11,7 +11,7 @@ from conjcheck.testing.compare import Comparer
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.survey import Coverage, survey
 
-__all__ = ["Layer", "Minimum", "confirm", "descend", "layer_of", "minimise"]
+__all__ = ["Layer", "Minimum", "certified", "confirm", "descend", "layer_of", "minimise"]
 
 _MOST_IN_LAYER = 2_000
 
@@ -102,23 +102,35 @@ def minimise(comparer: Comparer, finding: Finding, coverage: Coverage, *, budget
         coverage: what has been compared already, from the beginning of the order on.
         budget: seconds.
     """
-    started = perf_counter()
+    deadline = perf_counter() + budget
+    row_known, in_row = False, 0
     if finding.status != "too-slow":
         with comparer.limit:
-            finding = comparer.row(finding.row, deadline=started + budget / 4).finding or finding
-    walked = survey(comparer, budget=budget - (perf_counter() - started), stop_before=finding.row, coverage=coverage)
+            again = comparer.row(finding.row, deadline=perf_counter() + budget / 4)
+        if again.finding:
+            finding, row_known, in_row = again.finding, True, again.cases
+        elif again.complete:
+            finding = Finding("unstable", finding.where, detail=f"{finding.detail or finding.status}, but not when asked again")
+    walked = survey(comparer, budget=deadline - perf_counter(), stop_before=finding.row, coverage=coverage)
     if walked.finding:
-        finding = walked.finding
-    gaps = [X for X in coverage.skipped if X < finding.row.X]
-    below = coverage.cases
+        return certified(walked.finding, coverage, coverage.cases + walked.in_row)
     if walked.ran_out:
         last = coverage.spaces[-1] if coverage.spaces else None
-        where = f"; stopped in {last.X} after {last.rows_seen:,} of {len(last.X.classes) ** 2:,} rows" if last else ""
-        return Minimum(finding, False, below, f"no smaller one among the first {below:,} cases{where}")
-    if gaps:
-        names = ", ".join(X.name for X in gaps[:5]) + (" ..." if len(gaps) > 5 else "")
-        return Minimum(finding, False, below, f"all {below:,} smaller cases in reach agree; out of reach of the oracle: {names}")
-    return Minimum(finding, True, below)
+        where = f"; stopped in {last.X} after {last.rows_seen:,} of {last.X.number_of_classes**2:,} rows" if last else ""
+        return Minimum(finding, False, coverage.cases, f"no smaller one among the first {coverage.cases:,} cases{where}")
+    if not row_known:
+        reach = f"all {coverage.cases:,} cases of smaller rows agree; its own row was not compared completely"
+        return Minimum(finding, False, coverage.cases, reach)
+    return certified(finding, coverage, coverage.cases + in_row)
+
+
+def certified(finding: Finding, coverage: Coverage, below: int) -> Minimum:
+    """The minimum, certified unless spaces below it are out of reach."""
+    gaps = [X for X in coverage.skipped if X < finding.row.X]
+    if not gaps:
+        return Minimum(finding, True, below)
+    names = ", ".join(X.name for X in gaps[:5]) + (" ..." if len(gaps) > 5 else "")
+    return Minimum(finding, False, below, f"all {below:,} smaller cases in reach agree; out of reach of the oracle: {names}")
 
 
 def layer_of(comparer: Comparer, finding: Finding, *, budget: float) -> Layer:
@@ -135,7 +147,11 @@ def layer_of(comparer: Comparer, finding: Finding, *, budget: float) -> Layer:
                 complete = False
                 break
             seen += 1
-            found += [f for f in comparer.findings(row, deadline=deadline) if f.status == finding.status]
+            differing, whole = comparer.findings(row, deadline=deadline)
+            found += [f for f in differing if f.status == finding.status]
+            if not whole:
+                complete = False
+                break
     return Layer(tuple(found), seen, complete, _orbits(found, comparer.conjecture.is_classical), len(X.classes) ** 2)
 
 

@@ -8,6 +8,7 @@ from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.geometry.case import Case
+from conjcheck.testing.answer import shown_number
 from conjcheck.testing.explain import Explanation
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer, Minimum
@@ -56,14 +57,16 @@ class Outcome:
     def verdict(self) -> str:
         """The verdict in one line; it begins with the status and the name."""
         head = f"{self.status}: {self.conjecture.name}"
+        if self.finding is None and self.status != "agrees":
+            return f"{head}: {self.scope}"
         if self.finding is None:
             return f"{head} as far as checked: {self.scope}"
         if self.status != "refuted":
-            return f"{head} at {self.finding.where}: {self.finding.detail}"
+            return " ".join(f"{head} at {self.finding.where}: {self.finding.detail}".split())
         if self.finding.rule is None:
             values = "the claim is false" + (f", the constant is {self.finding.oracle}" if self.finding.oracle is not None else "")
         else:
-            values = f"rule {self.finding.rule}, oracle {self.finding.oracle}"
+            values = f"rule {shown_number(self.finding.rule)}, oracle {self.finding.oracle}"
         return f"{head} at {self.finding.where}: {values} ({self.minimality})"
 
     @property
@@ -79,6 +82,7 @@ class Outcome:
         """The outcome in JSON types: for junit properties, other processes and programs."""
         found: dict[str, Any] = {
             "conjecture": self.conjecture.name,
+            "file": self.conjecture.file,
             "part": self.part,
             "status": self.status,
             "verdict": self.verdict,
@@ -89,14 +93,16 @@ class Outcome:
             "nonzero": self.nonzero,
             "seconds": round(self.seconds, 3),
         }
+        found["minimal"] = bool(self.minimum and self.minimum.certified)
         if self.seed:
             found["seed"] = self.seed
         if self.note:
             found["note"] = self.note
         if self.finding:
-            found["rule"], found["oracle"] = self.finding.rule, self.finding.oracle
+            rule = self.finding.rule
+            found["rule"] = rule if rule is None or rule.bit_length() < 64 else shown_number(rule)
+            found["oracle"] = self.finding.oracle
             found["kinds"] = list(self.explanation.kinds) if self.explanation else []
-            found["minimal"] = bool(self.minimum and self.minimum.certified)
             found["confirmed_by"] = self.confirmed_by
         if self.layer:
             found["layer"] = {

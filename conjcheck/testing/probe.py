@@ -7,12 +7,14 @@ from typing import Any, NoReturn
 
 from hypothesis import HealthCheck, Phase, given, seed, settings
 from hypothesis import strategies as st
+from hypothesis.errors import Unsatisfiable
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.geometry.case import Row
 from conjcheck.geometry.families import Varieties
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.strategies import rows
+from conjcheck.testing.compare import Comparer
 from conjcheck.testing.finding import STATUSES, Finding, Found, raise_finding
 from conjcheck.testing.survey import in_reach
 
@@ -31,6 +33,9 @@ _LAST_RANK = 11
 class ProbeCount:
     """What a random search has compared so far.
 
+    Args:
+        deadline: the ``perf_counter()`` time after which rows pass unchecked, unless one has failed.
+
     Attributes:
         rows: rows compared, drawn independently, repetitions included.
         cases, nonzero: cases compared, and those with a nonzero constant.
@@ -40,6 +45,7 @@ class ProbeCount:
         slow: a finding that took too long to be met twice; a search that has one repeats it instead of calling the rule again.
     """
 
+    deadline: float = float("inf")
     rows: int = 0
     cases: int = 0
     nonzero: int = 0
@@ -64,13 +70,17 @@ class ProbeCount:
             self.slow = finding
         raise_finding(finding)
 
-    def is_over(self, row: Row, deadline: float) -> bool:
+    def time_is_up(self) -> bool:
+        """Whether the deadline has passed; not after a failure, so that shrinking sees one and the same check."""
+        return not self.failed and perf_counter() > self.deadline
+
+    def is_over(self, row: Row) -> bool:
         """Whether a row need not be checked any more: the time is up, or a call was too slow (then that row fails again, unasked)."""
         if self.slow is not None:
             if row == self.slow.row:
                 raise_finding(self.slow)
             return True
-        return not self.failed and perf_counter() > deadline
+        return self.time_is_up()
 
     @property
     def distinct(self) -> int:
@@ -103,7 +113,8 @@ def probe_levels(conjecture: Conjecture, most_classes: int) -> list[tuple[int, l
 def probe_test(
     check: Check,
     spaces: Callable[[], list[FlagVariety]],
-    conjecture: Conjecture,
+    comparer: Comparer,
+    time_is_up: Callable[[], bool],
     *,
     fixed_seed: int | None = None,
     **choices: Any,
@@ -113,21 +124,22 @@ def probe_test(
     Args:
         check: called with each row and a free integer.
         spaces: called at the first draw: where to draw.
-        conjecture: its premise is respected.
+        comparer: whose premise is respected.
+        time_is_up: when it says so, the search for rows inside the premise ends.
         fixed_seed: makes the draws reproducible; ``None`` leaves the choice to Hypothesis.
         choices: further Hypothesis settings; the others are those of the profile in force.
     """
-    premise = conjecture.premise if conjecture.premise_by_rows else None
+    conjecture = comparer.conjecture
 
     def inside(X: FlagVariety, u: SchubertClass, v: SchubertClass) -> bool:
-        """The premise; where it raises, the row is drawn, so that the check meets the error."""
-        try:
-            return premise is None or bool(premise(X, u, v))
-        except Exception:
+        if time_is_up():
             return True
+        with comparer.limit:
+            return comparer.inside(Row(X, u, v))
 
     def strategy() -> st.SearchStrategy[Row]:
-        return rows(on=Varieties(*spaces()), premise=inside if premise else None, classical=conjecture.is_classical)
+        premise = inside if conjecture.premise and conjecture.premise_by_rows else None
+        return rows(on=Varieties(*spaces()), premise=premise, classical=conjecture.is_classical)
 
     profile = settings()
 
@@ -146,11 +158,15 @@ def probe_test(
     return seed(fixed_seed)(probe) if fixed_seed is not None else probe
 
 
-def run_probe(check: Check, spaces: list[FlagVariety], conjecture: Conjecture, *, seed: int | None = None) -> None:
+def run_probe(
+    check: Check, spaces: list[FlagVariety], comparer: Comparer, count: ProbeCount, *, seed: int | None = None
+) -> None:
     """Run the search outside pytest; raises what the check raises at the smallest failure found."""
-    test = probe_test(check, lambda: spaces, conjecture, fixed_seed=seed, database=None)
+    test = probe_test(check, lambda: spaces, comparer, count.time_is_up, fixed_seed=seed, database=None)
     try:
         test()
+    except Unsatisfiable:
+        return  # no row inside the premise was found: the count says so
     except BaseExceptionGroup as group:
         raise gravest(group) or group from None
 

@@ -25,7 +25,7 @@ def survey_spaces(coverage: Coverage) -> str:
 def survey_scope(coverage: Coverage, conjecture: Conjecture) -> str:
     """What a survey has compared: the complete spaces, how far into the last, the numbers of rows and cases."""
     if not coverage.rows:
-        return "nothing yet: no row inside the premise was reached" if coverage.spaces else "nothing: no space in reach of the oracle"
+        return "nothing smaller"
     premise = " inside the premise" if conjecture.premise else ""
     numbers = f"{coverage.rows:,} rows, {coverage.cases:,} cases{premise}, {coverage.nonzero:,} of them nonzero"
     text = f"{survey_spaces(coverage)}; {numbers}"
@@ -41,8 +41,6 @@ def survey_scope(coverage: Coverage, conjecture: Conjecture) -> str:
 def probe_scope(n: int, spaces: list[FlagVariety], count: ProbeCount) -> str:
     """What a probe has compared, and the largest share of failing rows that is still compatible with it at 95 %."""
     where = spaces[0].name if len(spaces) == 1 else f"{len(spaces)} spaces with n = {n}"
-    if not count.rows:
-        return f"no row inside the premise was drawn on {where}"
     sampled = f" ({count.sampled:,} rows with all nonzero cases and a sample of the zeros)" if count.sampled else ""
     return (
         f"{count.rows:,} rows drawn at random on {where}, {count.distinct:,} of them distinct, {count.cases:,} cases{sampled}; "

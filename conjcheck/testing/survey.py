@@ -9,10 +9,13 @@ from conjcheck.geometry.cartan import LARGEST_RANK
 from conjcheck.geometry.case import Row, rows
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.oracle import engines_for
-from conjcheck.testing.compare import Comparer
+from conjcheck.testing.compare import Comparer, RowResult
 from conjcheck.testing.finding import Finding
 
 __all__ = ["Coverage", "SpaceCoverage", "Survey", "in_reach", "survey"]
+
+
+_MOST_EMPTY_RANKS = 12
 
 
 @dataclass(slots=True)
@@ -78,28 +81,42 @@ class Survey:
     Attributes:
         coverage: how far it got.
         finding: the first thing wrong: by the order of cases also the smallest.
+        in_row: cases before the finding in its own row; they were compared, too, and agree.
         ran_out: whether the budget ended it before it was through.
     """
 
     coverage: Coverage
     finding: Finding | None
+    in_row: int
     ran_out: bool
 
 
 def in_reach(
-    conjecture: Conjecture, skipped: list[FlagVariety] | None = None, *, last_rank: int = LARGEST_RANK, most_spaces: int = 5_000
+    conjecture: Conjecture,
+    skipped: list[FlagVariety] | None = None,
+    *,
+    last_rank: int = LARGEST_RANK,
+    most_spaces: int = 5_000,
+    deadline: float = float("inf"),
 ) -> Iterator[FlagVariety]:
     """The spaces of a conjecture in order, as far as some engine reaches; the others go to ``skipped``.
 
-    Ends before a rank that is out of reach as a whole, that is above ``last_rank``, or that has more than ``most_spaces`` spaces.
+    Ends before a rank that is out of reach as a whole, that is above ``last_rank``, or that has more than ``most_spaces`` spaces; after
+    a dozen ranks without any space; and when the deadline has passed, which is looked at before each rank.
     """
     last = conjecture.on.last_rank
+    empty = 0
     for rank in range(1, min(last_rank, last or last_rank) + 1):
+        if perf_counter() > deadline:
+            return
         spaces = conjecture.on.of_rank(rank)
         reached = [X for X in spaces if engines_for(X)]
         if skipped is not None:
             skipped.extend(X for X in spaces if X not in reached)
         if (spaces and not reached and last is None) or len(spaces) > most_spaces:
+            return
+        empty = 0 if spaces else empty + 1
+        if last is None and empty > _MOST_EMPTY_RANKS:
             return
         yield from reached
 
@@ -124,10 +141,9 @@ def survey(
     deadline = perf_counter() + budget
     done = {space.X: space for space in coverage.spaces}
     skipped: list[FlagVariety] = []
-    finding = None
-    ran_out = False
+    result, ran_out = None, False
     with comparer.limit:
-        for X in in_reach(comparer.conjecture, skipped):
+        for X in in_reach(comparer.conjecture, skipped, deadline=deadline):
             if stop_before and stop_before.X < X:
                 break
             space = done.get(X)
@@ -136,19 +152,20 @@ def survey(
                 coverage.spaces.append(space)
             elif space.complete:
                 continue
-            finding, ran_out = _space(comparer, space, deadline, stop_before)
-            if finding or ran_out or not space.complete:
+            result, ran_out = _space(comparer, space, deadline, stop_before)
+            if result or not space.complete:
                 break
         else:
-            coverage.whole_family = comparer.conjecture.on.last_rank is not None and not skipped
+            ran_out = perf_counter() > deadline
+            coverage.whole_family = comparer.conjecture.on.last_rank is not None and not skipped and not ran_out
     coverage.skipped = skipped
-    return Survey(coverage, finding, ran_out)
+    return Survey(coverage, result.finding if result else None, result.cases if result else 0, ran_out)
 
 
 def _space(
     comparer: Comparer, space: SpaceCoverage, deadline: float, stop_before: Row | None
-) -> tuple[Finding | None, bool]:
-    """Compare one space from where its coverage ends: (finding, whether the time ran out)."""
+) -> tuple[RowResult | None, bool]:
+    """Compare one space from where its coverage ends: (the row with a finding, whether the time ran out)."""
     started = perf_counter()
     seen = 0
     try:
@@ -162,7 +179,7 @@ def _space(
                 return None, True
             result = comparer.row(row, deadline=deadline)
             if result.finding:
-                return result.finding, False
+                return result, False
             if not result.complete:
                 return None, True
             space.rows_seen = seen

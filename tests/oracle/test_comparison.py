@@ -10,6 +10,7 @@ from conjcheck import Fl, product
 from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
 from conjcheck.oracle.chevalley import chevalley
 from conjcheck.oracle.comparison import comparison, lift, longest_word
+from conjcheck.oracle.recursion import CompleteFlagRing
 
 PARTIAL = [
     Fl(*steps, n=n)
@@ -144,3 +145,12 @@ def test_the_direct_route_reads_the_same_products():
     for u in X.classes[::3]:
         for v in X.classes[::2]:
             assert home.row(u, v) == home.row(u, v, direct=True)
+
+
+def test_the_direct_route_asks_the_direct_route(monkeypatch):
+    """``direct=True`` reads the products of the complete flags that use no symmetry, and the plain call the others."""
+    X = Fl(1, 2, n=4)
+    right = {(u, v): comparison(X).row(u, v) for u in X.classes for v in X.classes}
+    monkeypatch.setattr(CompleteFlagRing, "packed_row", lambda self, u, v: {})
+    assert {pair: comparison(X).row(*pair, direct=True) for pair in right} == right
+    assert comparison(X).row(X.point, X.point) == {}
