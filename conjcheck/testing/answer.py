@@ -1,11 +1,16 @@
 """What a rule may answer: an exact count, or distinct objects that are counted."""
 
 from collections.abc import Iterable, Mapping
+from reprlib import Repr
 from typing import Any
 
 __all__ = ["WrongAnswer", "count_of", "shown_number", "shown_objects", "truth_of"]
 
 _MOST_SHOWN = 12
+_SHORT, _LONG = Repr(), Repr()
+_SHORT.maxstring = _SHORT.maxother = 80
+_LONG.maxtuple = _LONG.maxlist = _LONG.maxset = _LONG.maxfrozenset = _LONG.maxdict = 60
+_LONG.maxlevel, _LONG.maxstring, _LONG.maxother = 8, 300, 300
 _MOST_OBJECTS = 100_000
 
 
@@ -28,7 +33,7 @@ def shown_objects(answer: Any) -> tuple[str, ...] | None:
     _, objects = _counted(answer)
     if objects is None:
         return None
-    shown = tuple(repr(thing) for thing in objects[:_MOST_SHOWN])
+    shown = tuple(_LONG.repr(thing) for thing in objects[:_MOST_SHOWN])
     return shown if len(objects) <= _MOST_SHOWN else (*shown, f"... {len(objects) - _MOST_SHOWN} more")
 
 
@@ -46,7 +51,7 @@ def _counted(answer: Any) -> tuple[int, list[Any] | None]:
         raise WrongAnswer("expected a count, got None; does the rule return on every path?")
     elif isinstance(answer, (str, bytes, bytearray, memoryview, Mapping)) or hasattr(answer, "__array__") or not isinstance(answer, Iterable):
         raise WrongAnswer(
-            f"expected an int of 0 or more or an iterable of objects, got {_kind(answer)} {answer!r}; a count is exact: return an int"
+            f"expected an int of 0 or more or an iterable of objects, got {_kind(answer)} {_SHORT.repr(answer)}; a count is exact: return an int"
         )
     else:
         return _distinct(answer)
@@ -69,13 +74,13 @@ def _distinct(answer: Iterable[Any]) -> tuple[int, list[Any]]:
     objects, seen = [], set()
     for place, thing in enumerate(answer, start=1):
         try:
-            known = thing in seen
+            hash(thing)
         except TypeError:
             raise WrongAnswer(
-                f"expected hashable objects, got object {place} = {thing!r} of type {type(thing).__name__}; return tuples instead"
+                f"expected hashable objects, got object {place} = {_SHORT.repr(thing)} of type {type(thing).__name__}; return tuples instead"
             ) from None
-        if known:
-            raise WrongAnswer(f"expected distinct objects, got {thing!r} a second time, as object {place}")
+        if thing in seen:
+            raise WrongAnswer(f"expected distinct objects, got {_SHORT.repr(thing)} a second time, as object {place}")
         seen.add(thing)
         objects.append(thing)
         if place > _MOST_OBJECTS:
@@ -93,7 +98,7 @@ def truth_of(answer: Any) -> bool:
         return bool(answer)
     if type(answer).__name__ in ("bool", "bool_", "BooleanTrue", "BooleanFalse"):
         return bool(answer)
-    raise WrongAnswer(f"expected True or False from a claim, got {_kind(answer)} {answer!r}")
+    raise WrongAnswer(f"expected True or False from a claim, got {_kind(answer)} {_SHORT.repr(answer)}")
 
 
 def _kind(answer: Any) -> str:

@@ -1,6 +1,7 @@
 """The one way to compare: a rule against the oracle, a row at a time, zeros included."""
 
 import random
+import reprlib
 from collections.abc import Container, Iterable, Mapping
 from contextlib import nullcontext
 from dataclasses import dataclass
@@ -267,7 +268,7 @@ class Comparer:
         """
         expected = "{w: count}" if self.conjecture.is_classical else "{(w, d): count}"
         if not isinstance(answer, Mapping):
-            raise WrongAnswer(f"expected a mapping {expected} for a whole product, got {type(answer).__name__} {answer!r}"[:300])
+            raise WrongAnswer(f"expected a mapping {expected} for a whole product, got {type(answer).__name__} {reprlib.repr(answer)}")
         zero = (0,) * len(row.X.marked)
         values: RowTerms = {}
         for key, value in answer.items():
@@ -277,11 +278,11 @@ class Comparer:
                     raise NotationError(f"w={w!r} is no class of {row.X}")
                 d = read_degree(row.X, d)
             except (TypeError, ValueError, NotationError) as error:
-                raise WrongAnswer(f"expected keys as in {expected}, got the key {key!r} ({error})") from None
-            count = value if type(value) is int and value >= 0 else count_of(value)
-            if count:
-                values[w, d] = count
-        return values
+                raise WrongAnswer(f"expected keys as in {expected}, got the key {reprlib.repr(key)} ({error})") from None
+            if (w, d) in values:
+                raise WrongAnswer(f"expected one value for each outcome, got two keys for {w!r} and d={d}")
+            values[w, d] = value if type(value) is int and value >= 0 else count_of(value)
+        return {key: count for key, count in values.items() if count}
 
     def _difference(self, place: Case, count: int, true: int) -> Finding:
         """The finding for two values that differ, with the rule's objects if it gives objects."""
