@@ -190,11 +190,12 @@ class ConjectureNode(pytest.Collector):
         def check(row: Row, choice: int) -> None:
             item.draws.check(row, choice)
 
+        def time_is_up() -> bool:
+            return item.draws.count.time_is_up()
+
         fixed = None if settings().derandomize or self.config.getoption("--hypothesis-seed", None) is not None else self._seed
-        test: Any = probe_test(
-            check, lambda: item.draws.spaces, self.examination.comparer, lambda: item.draws.count.time_is_up(), fixed_seed=fixed
-        )
-        test.hypothesis.inner_test._hypothesis_internal_add_digest = f"{self.nodeid}::{name}".encode()
+        test: Any = probe_test(check, lambda: item.draws.spaces, self.examination.comparer, time_is_up, fixed_seed=fixed)
+        test.hypothesis.inner_test._hypothesis_internal_add_digest = f"{self.nodeid}::{name}".encode()  # noqa: SLF001  # one database key per item
         item = PartItem.from_parent(self, name=name, callobj=test, make_draws=draws)
         return item
 
@@ -238,7 +239,9 @@ def recorded(examination: Examination, record: Record) -> Outcome:
         outcome = examination.case(known.where)
         found = outcome.finding
         if found is None or found.status != "refuted":
-            what = "the rule and the oracle agree there now" if found is None else f"the rule is {found.status} there: {found.detail}"
+            what = (
+                "the rule and the oracle agree there now" if found is None else f"the rule is {found.status} there: {found.detail}"
+            )
             raise RecordError(
                 f"stale record: expected {examination.conjecture.name} to be refuted at {known.where}, but {what}; "
                 "if the rule was repaired, remove the counterexample from its record"
@@ -288,7 +291,9 @@ class PartItem(pytest.Function):
             outcome = replace(outcome, note="on record as refuted; the budget ended before the counterexample")
             expected = True
         if getattr(self.node.parent, "asked_oracle", False) and self.node.conjecture.role == "candidate":
-            warning = "the file asked the oracle while it was imported: the verdict is no more independent than the use made of that"
+            warning = (
+                "the file asked the oracle while it was imported: the verdict is no more independent than the use made of that"
+            )
             outcome = replace(outcome, note=f"{outcome.note}; {warning}" if outcome.note else warning)
         self.outcome = outcome
         self.user_properties.append(("conjcheck", json.dumps(outcome.as_json())))

@@ -47,7 +47,9 @@ def pytest_addoption(parser: pytest.Parser) -> None:
     group.addoption("--conjcheck-cross-check", action="store_true", help="compute every product of the oracle in two ways")
     group.addoption("--conjcheck-record", action="store_true", help="write refutations to records/<name>.json beside the plug-in")
     group.addoption("--conjcheck-installed", action="store_true", help="also collect the conjectures offered by installed packages")
-    parser.addini(_FOLDERS, "folders whose .py files are plug-ins, relative to the root directory", type="args", default=["conjectures"])
+    parser.addini(
+        _FOLDERS, "folders whose .py files are plug-ins, relative to the root directory", type="args", default=["conjectures"]
+    )
     parser.addini("conjcheck_effort", "quick, normal or thorough", default="normal")
     parser.addini("conjcheck_budget", "seconds for the survey of each conjecture", default="")
     parser.addini("conjcheck_call_limit", "seconds one call of a rule may take", default="10")
@@ -176,9 +178,7 @@ def pytest_terminal_summary(terminalreporter: Any, config: pytest.Config) -> Non
     terminalreporter.section("conjectures")
     for line in summary_table(lines):
         terminalreporter.write_line(line)
-    texts = [
-        text for report in terminalreporter.stats.get("passed", []) for title, text in report.sections if "conjcheck" in title
-    ]
+    texts = [text for report in terminalreporter.stats.get("passed", []) for title, text in report.sections if "conjcheck" in title]
     refuted = [text for text in texts if text.startswith("refuted: ")]
     if refuted and len({line["conjecture"] for line in lines}) == 1:
         terminalreporter.write_line("")

@@ -14,6 +14,7 @@ puzzles as in ``two_step_puzzles.py``.
 from functools import lru_cache
 
 from _puzzles import Puzzle, step_pieces
+
 from conjcheck import FlagVariety, Grassmannians, SchubertClass, candidate
 
 __all__ = ["quantum_equals_classical"]

@@ -16,6 +16,7 @@ a reconstruction; it gives every product in the premise up to n = 6 (computed).
 from functools import cache
 
 from _puzzles import Pieces, Puzzle
+
 from conjcheck import CompleteFlags, FlagVariety, SchubertClass, candidate
 
 __all__ = ["separated_descents"]

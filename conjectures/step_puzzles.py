@@ -13,6 +13,7 @@ H. Tamvakis, The puzzle conjecture for the cohomology of two-step flag manifolds
 """
 
 from _puzzles import Puzzle, classes_by_string, step_pieces
+
 from conjcheck import FlagVariety, PartialFlags, SchubertClass, candidate
 
 __all__ = ["step_puzzles"]

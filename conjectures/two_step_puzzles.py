@@ -10,6 +10,7 @@ the cohomology of two-step flag manifolds, J. Algebraic Combin. 44 (2016), 973-1
 """
 
 from _puzzles import Puzzle, classes_by_string, step_pieces
+
 from conjcheck import FlagVariety, SchubertClass, StepFlags, candidate
 
 __all__ = ["two_step_puzzles"]

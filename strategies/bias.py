@@ -27,9 +27,9 @@ def depths(X: FlagVariety) -> Ints:
 
 @lru_cache(maxsize=64)
 def biased_urn(X: FlagVariety) -> Urn:
-    """All classes: one ball for a class of depth c, and ``2 * 3^c / (mean of 3^depth)`` more, so at least a third of the fair share.
+    """All classes: one ball for a class of depth c, and ``2 * 3^c / (mean of 3^depth)`` more, rounded down.
 
-    At most 16 powers of 3 matter, so that the integers stay small. A trivial Seidel group says nothing: all classes alike.
+    So none has less than a third of its fair share. At most 16 powers of 3 matter, so that the integers stay small. A trivial Seidel group says nothing: all classes alike.
 
     Cost: the Seidel orbits, once (``Fl(8)``: 0.6 s).
     """

@@ -13,8 +13,8 @@ MOST_EVEN = 256
 def draw_below(draw: st.DrawFn, count: int) -> int:
     """An integer from 0 to ``count - 1``, shrinking towards 0: one choice up to 256, two up to 65,536, three up to 2^24.
 
-    A long range is cut into at most 256 blocks: first the block is drawn, then the place in it. Shrinking does not get from the first
-    place of a block to the last one of the block before, so a block should not matter: inside one length of classes, for example.
+    A long range is cut into at most 256 blocks: first the block is drawn, then the place in it. Shrinking does not get from the
+    first place of a block to the last one of the block before: good enough among classes of one length, not among all.
     """
     low, high = 0, count
     while high - low > MOST_EVEN:

@@ -16,7 +16,8 @@ class Urn:
     """Classes in the order of ``X.classes``, each with a number of balls.
 
     With up to 256 balls, one choice, the ball. With more, first the length, then a ball of that length: small numbers, which
-    Hypothesis draws evenly, and lengths are what shrinking should bring down first. A length gets its share of 256 tickets, at least one.
+    Hypothesis draws evenly, and the length is what shrinking should bring down first. Each length has its share of 256 tickets,
+    at least one, so that the identity and the point are seen on every variety.
 
     Args:
         classes: at least one class, rising.

@@ -50,9 +50,7 @@ def members(on: Family, *, min_n: int, max_n: int | None, max_classes: int) -> t
         high = family.last_rank + 1 if family.last_rank is not None else max(low, _DEFAULT_MAX_N)
     if high < low:
         raise InvalidArgument(f"expected max_n of at least min_n={low}, got max_n={high}")
-    found = tuple(
-        X for rank in range(low - 1, high) for X in family.of_rank(rank) if number_of_cosets(X.kind, X.marked) <= most
-    )
+    found = tuple(X for rank in range(low - 1, high) for X in family.of_rank(rank) if number_of_cosets(X.kind, X.marked) <= most)
     if not found:
         raise InvalidArgument(
             f"expected at least one variety of {family} with {low} <= n <= {high} and at most {most:,} classes, got none; "

@@ -158,7 +158,17 @@ def _declare(
         )
     return _with_page(
         Conjecture(
-            rule.__name__, rule, role, by_rows, on, ring, premise, premise_by_rows, statement, tuple(references), tuple(contributors)
+            rule.__name__,
+            rule,
+            role,
+            by_rows,
+            on,
+            ring,
+            premise,
+            premise_by_rows,
+            statement,
+            tuple(references),
+            tuple(contributors),
         )
     )
 

@@ -35,5 +35,7 @@ def _file(point: EntryPoint) -> Path:
     except ImportError:
         spec = None
     if spec is None or not spec.origin or not Path(spec.origin).is_file():
-        raise DeclarationError(f"expected a module with a source file for the entry point {point.name!r} of {GROUP}, got {point.value!r}")
+        raise DeclarationError(
+            f"expected a module with a source file for the entry point {point.name!r} of {GROUP}, got {point.value!r}"
+        )
     return Path(spec.origin)

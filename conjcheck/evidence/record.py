@@ -101,7 +101,9 @@ def _entry(path: Path, place: int, entry: object) -> Counterexample:
     for key in ("rule", "oracle"):
         value = entry.get(key)
         if value is not None and (type(value) is not int or value < 0):
-            raise RecordError(f'{path}: expected null or an integer of 0 or more under "{key}" of counterexample {place}, got {value!r}')
+            raise RecordError(
+                f'{path}: expected null or an integer of 0 or more under "{key}" of counterexample {place}, got {value!r}'
+            )
     try:
         where = parse_place(entry["where"])
     except ConjcheckError as error:

@@ -111,9 +111,9 @@ def positive_roots(kind: CartanType) -> tuple[tuple[Vector, Vector], ...]:
             if down >= 0:
                 continue
             codown = sum(c * matrix[j][i] for i, c in enumerate(coroot))
-            image = root[:j] + (root[j] - down,) + root[j + 1 :]
+            image = (*root[:j], root[j] - down, *root[j + 1 :])
             if image not in found:
-                found[image] = coroot[:j] + (coroot[j] - codown,) + coroot[j + 1 :]
+                found[image] = (*coroot[:j], coroot[j] - codown, *coroot[j + 1 :])
                 todo.append(image)
     return tuple(sorted(found.items(), key=lambda pair: (sum(pair[0]), pair[0])))
 
@@ -132,8 +132,7 @@ def automorphisms(kind: CartanType) -> tuple[Vector, ...]:
             (*images, x)
             for images in partial
             for x in range(r)
-            if x not in images
-            and all(matrix[x][y] == matrix[i][j] and matrix[y][x] == matrix[j][i] for j, y in enumerate(images))
+            if x not in images and all(matrix[x][y] == matrix[i][j] and matrix[y][x] == matrix[j][i] for j, y in enumerate(images))
         ]
     return tuple(tuple(x + 1 for x in images) for images in partial)
 

@@ -16,7 +16,18 @@ from conjcheck.errors import DifferentVarieties, NotationError
 from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
 from conjcheck.geometry.notation import read_integers
 
-__all__ = ["Case", "Row", "count_below", "count_cases", "degrees_of_total", "outcomes", "parse_class", "place_in_row", "read_degree", "rows"]
+__all__ = [
+    "Case",
+    "Row",
+    "count_below",
+    "count_cases",
+    "degrees_of_total",
+    "outcomes",
+    "parse_class",
+    "place_in_row",
+    "read_degree",
+    "rows",
+]
 
 
 @dataclass(frozen=True, slots=True)

@@ -5,7 +5,7 @@ from dataclasses import dataclass, replace
 from itertools import combinations, count, takewhile
 
 from conjcheck.errors import DeclarationError
-from conjcheck.geometry.flag_variety import FlagVariety, Fl, Gr
+from conjcheck.geometry.flag_variety import Fl, FlagVariety, Gr
 
 __all__ = ["CompleteFlags", "Family", "Grassmannians", "PartialFlags", "ProjectiveSpaces", "StepFlags", "Varieties"]
 

@@ -6,7 +6,7 @@ Because a variety and its classes exist once, ``==`` is identity: fast as a dict
 
 import re
 from collections.abc import Iterable
-from functools import lru_cache
+from functools import cache, lru_cache
 from itertools import groupby
 from typing import Any
 
@@ -270,7 +270,9 @@ def _type_a(steps: tuple[int, ...], n: int) -> tuple[CartanType, tuple[int, ...]
         raise NotationError(f"expected at least one step between 1 and {n - 1}, got none")
     for before, step in zip((0, *steps), steps, strict=False):
         if not before < step < n:
-            raise NotationError(f"expected rising steps between 1 and {n - 1}, got step {step} in Fl({','.join(map(str, steps))};{n})")
+            raise NotationError(
+                f"expected rising steps between 1 and {n - 1}, got step {step} in Fl({','.join(map(str, steps))};{n})"
+            )
     return CartanType("A", n - 1), steps
 
 
@@ -306,7 +308,7 @@ def _parse(name: str) -> tuple[CartanType, tuple[int, ...]]:
     return kind, marked
 
 
-@lru_cache(maxsize=None)
+@cache
 def _of(kind: CartanType, marked: tuple[int, ...]) -> FlagVariety:
     """The one object for a type and its marked nodes."""
     dim = sum(any(root[i - 1] for i in marked) for root, _ in positive_roots(kind))
@@ -346,7 +348,7 @@ def _name(kind: CartanType, marked: tuple[int, ...]) -> str:
     return f"Fl({','.join(map(str, marked))};{n})"
 
 
-@lru_cache(maxsize=None)
+@cache
 def _classes(X: FlagVariety) -> tuple[SchubertClass, ...]:
     """The classes, made once: identity is equality, so nothing here may ever be made a second time."""
     made = []
@@ -364,36 +366,36 @@ def _class_at(X: FlagVariety, index: int) -> SchubertClass:
     return X.classes[index]
 
 
-@lru_cache(maxsize=None)
+@cache
 def _levels(X: FlagVariety) -> dict[int, tuple[SchubertClass, ...]]:
     return {length: tuple(level) for length, level in groupby(X.classes, key=lambda u: u.length)}
 
 
-@lru_cache(maxsize=None)
+@cache
 def _permutations(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
     if X.kind.letter != "A":
         raise NotationError(f"expected a variety of type A, got {X.name}: its classes have no permutation; use .word")
-    return tuple(map(tuple, one_lines(orbit_of(X).weights, X.marked).tolist()))
+    return tuple(map(tuple, one_lines(orbit_of(X).weights).tolist()))
 
 
-@lru_cache(maxsize=None)
+@cache
 def _permutation_index(X: FlagVariety) -> dict[tuple[int, ...], int]:
     return {w: index for index, w in enumerate(_permutations(X))}
 
 
-@lru_cache(maxsize=None)
+@cache
 def _partitions(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
     if not X.is_grassmannian:
         raise NotationError(f"expected a Grassmannian, got {X.name}: its classes have no partition; use .permutation")
     return tuple(notation.partition_of(w, X.marked[0]) for w in _permutations(X))
 
 
-@lru_cache(maxsize=None)
+@cache
 def _strings(X: FlagVariety) -> tuple[str, ...]:
     return tuple(notation.string_of(w, X.marked) for w in _permutations(X))
 
 
-@lru_cache(maxsize=None)
+@cache
 def _descents(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
     """``u s_i`` has the weight ``u lambda_P - u alpha_i``; i is a descent when that class is shorter."""
     whole, images = orbit_of(X), weight_images(X.kind, X.marked)

@@ -40,21 +40,20 @@ class Orbit:
         lengths: ``(N,)``, the length of ``u``.
         letters: ``(N,)``, the smallest left descent of ``u`` (1-based node; 0 for the identity).
         parents: ``(N,)``, the index of ``s_letter u`` (0 for the identity).
+        lookup: what ``locate`` needs: multipliers, sorted hashes, and the sorting order.
     """
 
     weights: Ints
     lengths: Ints
     letters: Ints
     parents: Ints
-    _mixer: Ints
-    _hashes: Ints
-    _sorter: Ints
+    lookup: tuple[Ints, Ints, Ints]
 
     def locate(self, weights: Ints) -> Ints:
         """Indices of many weights of the orbit at once, ``(M, rank) -> (M,)``; -1 for a weight that is not in it."""
-        keys = weights @ self._mixer
-        spots = np.minimum(np.searchsorted(self._hashes, keys), len(self._sorter) - 1)
-        indices: Ints = self._sorter[spots]
+        mixer, hashes, sorter = self.lookup
+        spots = np.minimum(np.searchsorted(hashes, weights @ mixer), len(sorter) - 1)
+        indices: Ints = sorter[spots]
         wrong = (self.weights[indices] != weights).any(axis=1)
         indices[wrong] = -1
         return indices
@@ -86,10 +85,10 @@ def number_of_cosets(kind: CartanType, marked: tuple[int, ...]) -> int:
     return above // below
 
 
-def _mixer(weights: Ints) -> tuple[Ints, Ints, Ints]:
+def _lookup(weights: Ints) -> tuple[Ints, Ints, Ints]:
     """A linear hash without collisions on the given rows: multipliers, sorted hashes, and the sorting order."""
     for seed in range(100):
-        mixer = np.random.default_rng(seed).integers(-(2**62), 2**62, size=weights.shape[1], dtype=np.int64)
+        mixer: Ints = np.random.default_rng(seed).integers(-(2**62), 2**62, size=(weights.shape[1],), dtype=np.int64)
         keys: Ints = weights @ mixer  # wraps around modulo 2^64, on purpose
         sorter = np.argsort(keys, kind="stable").astype(np.int64)
         hashes: Ints = keys[sorter]
@@ -121,9 +120,7 @@ def orbit(kind: CartanType, marked: tuple[int, ...]) -> Orbit:
     levels = [start]
     while True:
         rising: list[Ints] = [
-            level - level[:, i : i + 1] * matrix[i]
-            for i in range(kind.rank)
-            for level in [levels[-1][levels[-1][:, i] > 0]]
+            level - level[:, i : i + 1] * matrix[i] for i in range(kind.rank) for level in [levels[-1][levels[-1][:, i] > 0]]
         ]
         up = np.concatenate(rising)
         if not len(up):
@@ -132,7 +129,7 @@ def orbit(kind: CartanType, marked: tuple[int, ...]) -> Orbit:
     lengths = np.repeat(np.arange(len(levels), dtype=np.int64), [len(level) for level in levels])
     weights = np.concatenate(levels)
     if kind.letter == "A":
-        keys = one_lines(weights, marked)
+        keys = one_lines(weights)
         weights = weights[np.lexsort((*keys.T[::-1], lengths))]
         return _finish(matrix, weights, lengths)
     rough = _finish(matrix, weights, lengths)
@@ -145,14 +142,15 @@ def _finish(matrix: Ints, weights: Ints, lengths: Ints) -> Orbit:
     """Add descents, parents and the look-up to the sorted weights."""
     falling = weights < 0
     letters = np.where(falling.any(axis=1), falling.argmax(axis=1) + 1, 0).astype(np.int64)
-    plain = Orbit(weights, lengths, letters, letters, *_mixer(weights))
+    plain = Orbit(weights, lengths, letters, letters, _lookup(weights))
     chosen = np.maximum(letters - 1, 0)
-    heights = np.where(letters > 0, weights[np.arange(len(weights)), chosen], 0)
-    parents = plain.locate(weights - heights[:, None] * matrix[chosen])
-    return Orbit(weights, lengths, letters, parents, plain._mixer, plain._hashes, plain._sorter)
+    heights: Ints = np.where(letters > 0, weights[np.arange(len(weights)), chosen], 0)
+    lowered: Ints = weights - heights[:, None] * matrix[chosen]
+    parents = plain.locate(lowered)
+    return Orbit(weights, lengths, letters, parents, plain.lookup)
 
 
-def one_lines(weights: Ints, marked: tuple[int, ...]) -> Ints:
+def one_lines(weights: Ints) -> Ints:
     """Type A: one-line notations ``(N, n)`` of the minimal representatives with the given weights.
 
     In epsilon coordinates ``u lambda_P`` has the value ``#{k in marked: k >= j}`` at place ``u(j)``: a stable sort of the

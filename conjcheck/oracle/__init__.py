@@ -159,9 +159,7 @@ def product(u: SchubertClass, v: SchubertClass, *, engine: str | None = None, cr
     return Product.of(row_terms(u, v, engine=engine, cross_check=cross_check))
 
 
-def constant(
-    u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree | None = None, *, engine: str | None = None
-) -> int:
+def constant(u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree | None = None, *, engine: str | None = None) -> int:
     """One structure constant ``N_{u,v}^{w,d}``; without ``d`` the classical one.
 
     >>> from conjcheck.geometry.flag_variety import Fl

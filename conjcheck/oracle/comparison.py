@@ -11,10 +11,9 @@ from functools import lru_cache
 
 import numpy as np
 
-from conjcheck.errors import NotationError, OutOfReach
 from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
-from conjcheck.geometry.flag_variety import Degree, FlagVariety, Fl, SchubertClass, orbit_of
-from conjcheck.geometry.weyl import number_of_cosets, reflected_by_word, weight_images
+from conjcheck.geometry.flag_variety import Degree, Fl, FlagVariety, SchubertClass, orbit_of
+from conjcheck.geometry.weyl import reflected_by_word, weight_images
 from conjcheck.oracle.engine import RowTerms
 from conjcheck.oracle.recursion import CompleteFlagRing, Packed, complete_flag_ring
 

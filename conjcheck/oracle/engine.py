@@ -27,9 +27,13 @@ class Product(dict[tuple[SchubertClass, Degree], int]):
         return cls(sorted(terms.items(), key=lambda item: place_in_row(item[0])))
 
     def __repr__(self) -> str:
-        return " + ".join(
-            f"{count if count != 1 else ''}{' ' if count != 1 else ''}{_power('q^({})', d)}{w!r}" for (w, d), count in self.items()
-        ).strip() or "0"
+        return (
+            " + ".join(
+                f"{count if count != 1 else ''}{' ' if count != 1 else ''}{_power('q^({})', d)}{w!r}"
+                for (w, d), count in self.items()
+            ).strip()
+            or "0"
+        )
 
     __str__ = __repr__
 

@@ -15,7 +15,7 @@ orthogonality in Rietsch, Quantum cohomology rings of Grassmannians and total po
 """
 
 from collections.abc import Iterator
-from functools import lru_cache
+from functools import cache, lru_cache
 from itertools import combinations
 from math import comb, isqrt, prod
 
@@ -47,7 +47,7 @@ def _is_prime(p: int) -> bool:
     return p > 1 and all(p % t for t in range(2, isqrt(p) + 1))
 
 
-@lru_cache(maxsize=None)
+@cache
 def _field(n: int) -> tuple[int, int]:
     """A prime ``p < 2^31`` with ``p = 1`` modulo 2n, the largest such, and an element of order exactly 2n."""
     p = (2**31 - 2) // (2 * n) * (2 * n) + 1
@@ -129,7 +129,7 @@ class ResidueTable:
         for index in np.flatnonzero(coefficients).tolist():
             w = self.X.classes[index]
             d, rest = divmod(u.length + v.length - w.length, self.n)
-            assert rest == 0 and d >= 0, "the degree axiom must hold"
+            assert (rest, d >= 0) == (0, True), "the degree axiom must hold"
             result[w, (d,)] = int(coefficients[index])
         return result
 

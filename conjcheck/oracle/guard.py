@@ -47,4 +47,6 @@ def note_question() -> None:
     if _watches:
         _watches[-1].asked = True
         if _watches[-1].forbidding:
-            raise NotIndependent("the oracle was asked by the rule that it is meant to judge; compute the value from the rule alone")
+            raise NotIndependent(
+                "the oracle was asked by the rule that it is meant to judge; compute the value from the rule alone"
+            )

@@ -13,11 +13,11 @@ reduced and the direct route are offered, so that one can witness for the other.
 """
 
 from collections.abc import Iterator
-from functools import lru_cache
+from functools import cache, lru_cache
 
 import numpy as np
 
-from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
+from conjcheck.geometry.flag_variety import Degree, FlagVariety
 from conjcheck.geometry.symmetries import seidel
 from conjcheck.geometry.weyl import Ints
 from conjcheck.oracle.chevalley import chevalley
@@ -156,14 +156,16 @@ class CompleteFlagRing:
         images, shifts = self._moved(int(both))
         constant = self._offset(g, h, a, b)
         mask = (1 << self.shift) - 1
-        return {(key >> self.shift << self.shift) + images[key & mask] + shifts[key & mask] + constant: c for key, c in reduced.items()}
+        return {
+            (key >> self.shift << self.shift) + images[key & mask] + shifts[key & mask] + constant: c for key, c in reduced.items()
+        }
 
     def direct_row(self, u: int, v: int) -> Packed:
         """``sigma_u * sigma_v`` without any symmetry and without any memory: the second route."""
         note_question()
         return dict(self._times(u, {0: {v: 1}}))
 
-    @lru_cache(maxsize=None)  # noqa: B019  # a ring lives as long as the process
+    @cache  # noqa: B019  # a ring lives as long as the process
     def _moved(self, g: int) -> tuple[list[int], list[int]]:
         return self.group.images[g].tolist(), self.packed_shifts[g].tolist()
 
@@ -220,5 +222,3 @@ class CompleteFlagRing:
 def complete_flag_ring(X: FlagVariety) -> CompleteFlagRing:
     """The ring of a complete flag variety, made once."""
     return CompleteFlagRing(X)
-
-

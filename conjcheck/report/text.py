@@ -82,7 +82,10 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
         if outcome.explanation.by_rule is not None:
             asked = ", asked only where the oracle is not 0" if outcome.explanation.partial else ""
             lines += _entry("product", f"by the rule{asked}: {_product(outcome.explanation.by_rule)}")
-        lines += _entry("" if outcome.explanation.by_rule is not None else "product", f"by the oracle: {_product(outcome.explanation.by_oracle)}")
+        lines += _entry(
+            "" if outcome.explanation.by_rule is not None else "product",
+            f"by the oracle: {_product(outcome.explanation.by_oracle)}",
+        )
     lines += _entry("minimal", _minimality(outcome))
     if outcome.layer:
         lines += _layer(outcome.layer, finding.row)
@@ -174,6 +177,14 @@ def summary_table(outcomes: list[dict[str, Any]]) -> list[str]:
         table.append((name, shown["status"], *(f"{number:,}" for number in numbers), f"{seconds:.1f}", where))
     widths = [max(len(line[k]) for line in table) for k in range(len(table[0]) - 1)]
     return [
-        "  ".join([*(cell.rjust(width) if k > 1 else cell.ljust(width) for k, (cell, width) in enumerate(zip(line, widths, strict=False))), line[-1]])
+        "  ".join(
+            [
+                *(
+                    cell.rjust(width) if k > 1 else cell.ljust(width)
+                    for k, (cell, width) in enumerate(zip(line, widths, strict=False))
+                ),
+                line[-1],
+            ]
+        )
         for line in table
     ]

@@ -49,9 +49,14 @@ def _counted(answer: Any) -> tuple[int, list[Any] | None]:
         number = whole
     elif answer is None:
         raise WrongAnswer("expected a count, got None; does the rule return on every path?")
-    elif isinstance(answer, (str, bytes, bytearray, memoryview, Mapping)) or hasattr(answer, "__array__") or not isinstance(answer, Iterable):
+    elif (
+        isinstance(answer, (str, bytes, bytearray, memoryview, Mapping))
+        or hasattr(answer, "__array__")
+        or not isinstance(answer, Iterable)
+    ):
         raise WrongAnswer(
-            f"expected an int of 0 or more or an iterable of objects, got {_kind(answer)} {_SHORT.repr(answer)}; a count is exact: return an int"
+            f"expected an int of 0 or more or an iterable of objects, got {_kind(answer)} {_SHORT.repr(answer)}; "
+            "a count is exact: return an int"
         )
     else:
         return _distinct(answer)
@@ -77,7 +82,8 @@ def _distinct(answer: Iterable[Any]) -> tuple[int, list[Any]]:
             hash(thing)
         except TypeError:
             raise WrongAnswer(
-                f"expected hashable objects, got object {place} = {_SHORT.repr(thing)} of type {type(thing).__name__}; return tuples instead"
+                f"expected hashable objects, got object {place} = {_SHORT.repr(thing)} of type {type(thing).__name__}; "
+                "return tuples instead"
             ) from None
         if thing in seen:
             raise WrongAnswer(f"expected distinct objects, got {_SHORT.repr(thing)} a second time, as object {place}")

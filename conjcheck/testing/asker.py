@@ -4,7 +4,7 @@ from collections.abc import Iterable
 from typing import Any
 
 from conjcheck.errors import NotationError
-from conjcheck.geometry.case import Case, Row
+from conjcheck.geometry.case import Case, Row, read_degree
 from conjcheck.geometry.flag_variety import SchubertClass
 from conjcheck.oracle import row_terms
 from conjcheck.oracle.engine import RowTerms
@@ -43,7 +43,7 @@ class Asker:
                 return terms[key]
         except TypeError:
             pass
-        case = Case(u.variety, u, v, *key)
+        case = Case(u.variety, u, v, w, read_degree(u.variety, key[1]))
         if self._classical and any(case.d):
             raise NotationError(f"expected d = 0 in the classical ring, got d={case.d}; declare ring='quantum', or leave d out")
         return terms.get((case.w, case.d), 0)

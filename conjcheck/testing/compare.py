@@ -136,7 +136,8 @@ class Comparer:
     def values(self, row: Row, keys: Iterable[Key]) -> dict[Key, int]:
         """The rule's nonzero values at those of some outcomes of a row that the premise admits; none for a claim.
 
-        A rule that answers by rows gives all its admitted values, also at other outcomes. Raises whatever the rule raises; ``Comparer.row`` turns that into a finding.
+        A rule that answers by rows gives all its admitted values, also at other outcomes. Raises whatever the rule raises;
+        ``Comparer.row`` turns that into a finding.
         """
         if self._is_claim:
             return {}
@@ -268,7 +269,9 @@ class Comparer:
         """
         expected = "{w: count}" if self.conjecture.is_classical else "{(w, d): count}"
         if not isinstance(answer, Mapping):
-            raise WrongAnswer(f"expected a mapping {expected} for a whole product, got {type(answer).__name__} {reprlib.repr(answer)}")
+            raise WrongAnswer(
+                f"expected a mapping {expected} for a whole product, got {type(answer).__name__} {reprlib.repr(answer)}"
+            )
         zero = (0,) * len(row.X.marked)
         values: RowTerms = {}
         for key, value in answer.items():

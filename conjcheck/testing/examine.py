@@ -296,8 +296,6 @@ def _nothing(coverage: Coverage) -> str:
     """What to say of a survey without a row: it must not be taken for agreement."""
     where = survey_spaces(coverage) or "no space in reach of the oracle"
     return (
-        f"nothing compared: expected a row inside the premise among those reached ({where}), got none; restrict the family with .where() so "
-        "that it begins where the premise holds, or raise the budget"
+        f"nothing compared: expected a row inside the premise among those reached ({where}), got none; "
+        "restrict the family with .where() so that it begins where the premise holds, or raise the budget"
     )
-
-

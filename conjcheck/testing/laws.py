@@ -13,7 +13,16 @@ from conjcheck.testing.compare import Comparer, Key
 
 __all__ = ["LAWS", "BrokenLaw", "NoValue", "broken_laws"]
 
-LAWS = ("one answer", "unit", "commutativity", "Poincare duality", "S3-symmetry", "Seidel symmetry", "diagram symmetry", "associativity")
+LAWS = (
+    "one answer",
+    "unit",
+    "commutativity",
+    "Poincare duality",
+    "S3-symmetry",
+    "Seidel symmetry",
+    "diagram symmetry",
+    "associativity",
+)
 """The laws, in the order in which they are tried."""
 
 _MOST_OUTCOMES = 3_000
@@ -83,7 +92,9 @@ class _Neighbourhood:
         except BaseException as error:
             raise NoValue(row) from error
 
-    def _compare(self, law: str, expected: Values, row: Row, found: Values, back: dict[Key, Case] | None = None) -> Iterator[BrokenLaw]:
+    def _compare(
+        self, law: str, expected: Values, row: Row, found: Values, back: dict[Key, Case] | None = None
+    ) -> Iterator[BrokenLaw]:
         """Differences between two sets of values on ``row``; ``back`` gives the case that an expected value came from."""
         for w, d in sorted({*expected, *found}, key=place_in_row):
             here, there = expected.get((w, d), 0), found.get((w, d), 0)
@@ -132,7 +143,7 @@ class _Neighbourhood:
 
     def _s3(self) -> Iterator[BrokenLaw]:
         X, u, v = self.row.X, self.row.u, self.row.v
-        chosen = [key for key in self.values][self.choice % len(self.values)] if self.values else None
+        chosen = list(self.values)[self.choice % len(self.values)] if self.values else None
         w = chosen[0] if chosen else X.classes[self.choice % len(X.classes)]
         partner = Row(X, u, w.dual)
         if (found := self._of(partner)) is not None:

@@ -158,9 +158,7 @@ def probe_test(
     return seed(fixed_seed)(probe) if fixed_seed is not None else probe
 
 
-def run_probe(
-    check: Check, spaces: list[FlagVariety], comparer: Comparer, count: ProbeCount, *, seed: int | None = None
-) -> None:
+def run_probe(check: Check, spaces: list[FlagVariety], comparer: Comparer, count: ProbeCount, *, seed: int | None = None) -> None:
     """Run the search outside pytest; raises what the check raises at the smallest failure found."""
     test = probe_test(check, lambda: spaces, comparer, count.time_is_up, fixed_seed=seed, database=None)
     try:

@@ -162,9 +162,7 @@ def survey(
     return Survey(coverage, result.finding if result else None, result.cases if result else 0, ran_out)
 
 
-def _space(
-    comparer: Comparer, space: SpaceCoverage, deadline: float, stop_before: Row | None
-) -> tuple[RowResult | None, bool]:
+def _space(comparer: Comparer, space: SpaceCoverage, deadline: float, stop_before: Row | None) -> tuple[RowResult | None, bool]:
     """Compare one space from where its coverage ends: (the row with a finding, whether the time ran out)."""
     started = perf_counter()
     seen = 0

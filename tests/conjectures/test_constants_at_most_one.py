@@ -1,8 +1,9 @@
 """The two claims that constants of complete flags are at most 1."""
 
 import constants_at_most_one
-from conjcheck import Fl
 from definitions import classical_product
+
+from conjcheck import Fl
 
 QUANTUM = constants_at_most_one.quantum_constants_at_most_one
 CLASSICAL = constants_at_most_one.classical_constants_at_most_one

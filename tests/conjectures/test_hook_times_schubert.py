@@ -2,11 +2,11 @@
 
 from itertools import pairwise
 
-import pytest
-
 import hook_times_schubert
-from conjcheck import Fl
+import pytest
 from definitions import classical_product, inversions
+
+from conjcheck import Fl
 
 RULE = hook_times_schubert.hook_times_schubert
 

@@ -1,6 +1,7 @@
 """The invented lantern rule: right up to n = 4, and wrong exactly as planted."""
 
 import lantern_rule
+
 from conjcheck import Gr, Grassmannians
 
 RULE = lantern_rule.lantern_rule

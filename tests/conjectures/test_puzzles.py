@@ -4,9 +4,9 @@ from collections import Counter
 from itertools import product
 from math import comb
 
+import _puzzles
 import pytest
 
-import _puzzles
 from conjcheck import Fl
 
 

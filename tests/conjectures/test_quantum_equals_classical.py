@@ -1,8 +1,9 @@
 """Quantum equals classical on Grassmannians."""
 
 import quantum_equals_classical
-from conjcheck import Gr, Grassmannians
 from definitions import check_grassmannian_row
+
+from conjcheck import Gr, Grassmannians
 
 RULE = quantum_equals_classical.quantum_equals_classical
 

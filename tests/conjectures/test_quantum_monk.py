@@ -1,8 +1,9 @@
 """Quantum Monk on complete flags."""
 
 import quantum_monk
-from conjcheck import Fl
 from definitions import basis, combine, times_divisor, times_q, times_x
+
+from conjcheck import Fl
 
 
 def multiply(n, r, w):

@@ -1,8 +1,9 @@
 """Quantum Pieri on complete flags."""
 
 import quantum_pieri_flags
-from conjcheck import Fl
 from definitions import basis, times_divisor, times_quantum_elementary
+
+from conjcheck import Fl
 
 COLUMNS, ROWS = quantum_pieri_flags.quantum_pieri_columns, quantum_pieri_flags.quantum_pieri_rows
 

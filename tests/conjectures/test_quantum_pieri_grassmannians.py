@@ -1,8 +1,9 @@
 """Quantum Pieri on Grassmannians."""
 
 import quantum_pieri_grassmannians
-from conjcheck import Gr, Grassmannians
 from definitions import check_grassmannian_row
+
+from conjcheck import Gr, Grassmannians
 
 
 def multiply(X, p, partition):

@@ -5,8 +5,9 @@ from itertools import product
 from math import comb, factorial, prod
 
 import rim_hooks
-from conjcheck import Gr, Grassmannians
 from definitions import box, check_grassmannian_row, determinant_terms
+
+from conjcheck import Gr, Grassmannians
 
 
 def multiply(X, a, b):

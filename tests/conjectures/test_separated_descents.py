@@ -1,10 +1,10 @@
 """Separated descents on complete flags."""
 
 import pytest
-
 import separated_descents
-from conjcheck import Fl
 from definitions import classical_product
+
+from conjcheck import Fl
 
 RULE = separated_descents.separated_descents
 

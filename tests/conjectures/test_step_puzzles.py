@@ -1,10 +1,10 @@
 """The step puzzle rule of 1999, which is false from three steps on."""
 
 import pytest
-
 import step_puzzles
-from conjcheck import Fl, Grassmannians, PartialFlags
 from definitions import classical_product
+
+from conjcheck import Fl, Grassmannians, PartialFlags
 
 RULE = step_puzzles.step_puzzles
 

@@ -1,10 +1,10 @@
 """Two-step puzzles."""
 
 import pytest
-
 import two_step_puzzles
-from conjcheck import Fl, StepFlags
 from definitions import classical_product
+
+from conjcheck import Fl, StepFlags
 
 RULE = two_step_puzzles.two_step_puzzles
 

@@ -16,7 +16,7 @@ FAMILIES = [Grassmannians(), CompleteFlags(), StepFlags(2), Varieties("C3/P2", "
 def test_every_case_is_valid_and_of_its_kind(family, drawn):
     """Inside obeys the degree axiom, outside breaks it; all are cases of members of the family."""
     for kind in ("inside", "near", "outside"):
-        examples = drawn(cases(family, kind=kind), 150)
+        examples = drawn(cases(family, kind=kind), 80)
         assert all(isinstance(case, Case) and case.X in family and min(case.d) >= 0 for case in examples)
         if kind != "near":
             assert {case.obeys_degree_axiom for case in examples} == {kind == "inside"}
@@ -24,13 +24,13 @@ def test_every_case_is_valid_and_of_its_kind(family, drawn):
 
 def test_near_cases_differ_from_an_inside_case_in_one_thing(drawn):
     """Some obey the axiom and some do not; those that do not are off by one unit of one q."""
-    examples = drawn(cases(CompleteFlags(), kind="near", min_n=3), 300)
+    examples = drawn(cases(CompleteFlags(), kind="near", min_n=3), 150)
     gaps = [
         case.u.length + case.v.length - case.w.length - sum(x * y for x, y in zip(case.d, case.X.q_degrees, strict=True))
         for case in examples
     ]
     assert set(gaps) == {-2, 0, 2}
-    assert sum(gap == 0 for gap in gaps) > 50
+    assert sum(gap == 0 for gap in gaps) > 25
 
 
 def test_an_odd_total_is_no_trouble_for_a_single_class_per_length(drawn):
@@ -66,7 +66,7 @@ def test_a_premise_holds_for_the_row(drawn):
     ("name", "nonzero", "quantum"),
     [
         ("Fl(4)", 0.70, 0.45),  # 5.4 % nonzero with outcomes drawn evenly
-        ("Fl(5)", 0.42, 0.30),  # 0.8 %
+        ("Fl(5)", 0.45, 0.30),  # 0.8 %
         ("Fl(6)", 0.30, 0.22),  # 0.1 %
         ("Fl(1,3;5)", 0.80, 0.45),  # 12 %
         ("Gr(3,6)", 0.80, 0.40),  # 51 %
@@ -74,7 +74,7 @@ def test_a_premise_holds_for_the_row(drawn):
 )
 def test_inside_the_axiom_many_constants_are_not_zero(drawn, name, nonzero, quantum):
     """At least this share asks for a nonzero constant, and this one for a nonzero constant of positive degree (computed)."""
-    examples = drawn(cases(Varieties(name)), 300)
+    examples = drawn(cases(Varieties(name)), 200)
     values = [constant(case.u, case.v, case.w, case.d) for case in examples]
     assert sum(map(bool, values)) >= nonzero * len(values)
     assert sum(value > 0 and any(case.d) for case, value in zip(examples, values, strict=True)) >= quantum * len(values)
@@ -83,9 +83,9 @@ def test_inside_the_axiom_many_constants_are_not_zero(drawn, name, nonzero, quan
 def test_near_and_outside_the_axiom_constants_are_zero(drawn):
     """Always outside; on ``Fl(4)`` and ``Fl(5)`` nearly always nearby."""
     for name in ("Fl(4)", "Fl(5)"):
-        outside = drawn(cases(Varieties(name), kind="outside"), 200)
+        outside = drawn(cases(Varieties(name), kind="outside"), 100)
         assert not any(constant(case.u, case.v, case.w, case.d) for case in outside)
-        near = drawn(cases(Varieties(name), kind="near"), 200)
+        near = drawn(cases(Varieties(name), kind="near"), 100)
         assert sum(constant(case.u, case.v, case.w, case.d) == 0 for case in near) > 0.9 * len(near)
 
 

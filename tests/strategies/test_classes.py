@@ -17,7 +17,7 @@ SPACES = [Gr(2, 5), Fl(4), Fl(1, 3, n=4), Fl(1, 2, n=5), FlagVariety("B3/P1,3")]
 @pytest.mark.parametrize("X", SPACES, ids=str)
 def test_all_classes_are_drawn_and_the_first_in_the_end(X, drawn, smallest):
     """Without restriction each class occurs; shrinking ends at the identity, or at the first class of a length."""
-    assert set(drawn(schubert_classes(X), 1000)) == set(X.classes)
+    assert set(drawn(schubert_classes(X), 200)) == set(X.classes)
     assert smallest(schubert_classes(X)) is X.identity
     for length in range(X.dim + 1):
         assert smallest(schubert_classes(X), lambda u, length=length: u.length >= length) is X.of_length(length)[0]
@@ -60,7 +60,7 @@ def test_large_varieties_are_drawn_from_evenly_and_at_once(drawn):
     X = Fl(8)
     assert len(X.classes) == 40_320
     start = time.perf_counter()
-    examples = drawn(schubert_classes(X), 200)
+    examples = drawn(schubert_classes(X), 150)
     assert 0.3 < np.mean([u.index >= 20_160 for u in examples]) < 0.7
     assert max(len(u.descents) for u in drawn(schubert_classes(X, grassmannian=True), 50)) == 1
     assert len(set(drawn(schubert_classes(X, avoiding=(1, 3, 2)), 50))) > 30

@@ -20,14 +20,14 @@ def size(d):
 @pytest.mark.parametrize("X", SPACES, ids=str)
 def test_every_degree_of_a_total_is_drawn(X, drawn):
     """``total=`` gives the degrees of that total, all of them; ``max_total=`` those of the smaller totals too."""
-    for total in (0, 6, 8, 9, 12):
+    for total in (0, 6, 9):
         exact = set(degrees_of_total(X, total))
         if exact:
-            assert set(drawn(degrees(X, total=total), 200)) == exact
+            assert set(drawn(degrees(X, total=total), 60)) == exact
         upper = {d for t in range(total + 1) for d in degrees_of_total(X, t)}
-        examples = drawn(degrees(X, max_total=total), 200)
+        examples = drawn(degrees(X, max_total=total), 150)
         assert set(examples) <= upper
-        assert len(set(examples)) > 0.7 * len(upper)
+        assert len(set(examples)) > 0.6 * len(upper)
 
 
 @pytest.mark.parametrize("X", SPACES, ids=str)
@@ -69,7 +69,7 @@ def test_wrong_arguments_are_refused_at_once(arguments, message):
 
 
 def test_a_total_that_is_no_sum_is_refused_and_every_sum_accepted():
-    """On weights 2, 3 and 5 (``Fl(1,2,5;6)``: 2, 4, 4 ...) refusal and ``degrees_of_total`` agree."""
+    """Refusal and ``degrees_of_total`` agree for the totals up to 9 on every variety here."""
     for X, total in product(SPACES, range(10)):
         if degrees_of_total(X, total):
             degrees(X, total=total)
