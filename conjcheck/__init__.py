@@ -30,6 +30,7 @@ if TYPE_CHECKING:
     from conjcheck.oracle import constant as constant
     from conjcheck.oracle import product as product
     from conjcheck.oracle import table as table
+    from conjcheck.testing.examine import examine as examine
 
 _ROOMS = {
     "Case": "geometry.case",
@@ -51,6 +52,7 @@ _ROOMS = {
     "candidate": "conjecture.declare",
     "claim": "conjecture.declare",
     "constant": "oracle",
+    "examine": "testing.examine",
     "product": "oracle",
     "table": "oracle",
 }

@@ -194,7 +194,15 @@ class ConjectureNode(pytest.Collector):
             return item.draws.count.time_is_up()
 
         fixed = None if settings().derandomize or self.config.getoption("--hypothesis-seed", None) is not None else self._seed
-        test: Any = probe_test(check, lambda: item.draws.spaces, self.examination.comparer, time_is_up, fixed_seed=fixed)
+        examination = self.examination
+        test: Any = probe_test(
+            check,
+            lambda: item.draws.spaces,
+            examination.comparer,
+            time_is_up,
+            fixed_seed=fixed,
+            draws=examination.effort.draws,
+        )
         test.hypothesis.inner_test._hypothesis_internal_add_digest = f"{self.nodeid}::{name}".encode()  # noqa: SLF001  # one database key per item
         item = PartItem.from_parent(self, name=name, callobj=test, make_draws=draws)
         return item

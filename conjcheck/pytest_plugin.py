@@ -96,8 +96,11 @@ def _seconds(config: pytest.Config, key: str) -> float | None:
     return seconds
 
 
-def pytest_report_header(config: pytest.Config) -> str | None:
-    """The seed of the run, so that it can be repeated."""
+def pytest_report_collectionfinish(config: pytest.Config, items: list[pytest.Item]) -> str | None:
+    """The seed of the run, so that it can be repeated; nothing if there is no conjecture."""
+    module = sys.modules.get("conjcheck.pytest_items")
+    if module is None or not any(isinstance(item, module.PartItem) for item in items):
+        return None
     import conjcheck
 
     seed = config.stash[_STATE]["seed"]
@@ -180,7 +183,11 @@ def pytest_terminal_summary(terminalreporter: Any, config: pytest.Config) -> Non
         terminalreporter.write_line(line)
     texts = [text for report in terminalreporter.stats.get("passed", []) for title, text in report.sections if "conjcheck" in title]
     refuted = [text for text in texts if text.startswith("refuted: ")]
-    if refuted and len({line["conjecture"] for line in lines}) == 1:
+    if config.getoption("--conjcheck-case"):
+        refuted = texts
+    elif len({line["conjecture"] for line in lines}) > 1:
+        refuted = []
+    if refuted:
         terminalreporter.write_line("")
         terminalreporter.write_line(max(refuted, key=len))
     elif texts:

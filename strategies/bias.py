@@ -7,15 +7,19 @@ orbits, and they grow with the depth: on ``Fl(6)`` every product with a class of
 """
 
 from functools import lru_cache
+from operator import attrgetter
 
 import numpy as np
 
-from conjcheck.geometry.flag_variety import FlagVariety, orbit_of
+from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass, orbit_of
 from conjcheck.geometry.symmetries import seidel
 from conjcheck.geometry.weyl import Ints
 from conjcheck.strategies.urns import Urn
 
 __all__ = ["biased_urn", "depths"]
+
+_FEW = 20
+_length = attrgetter("length")
 
 
 @lru_cache(maxsize=64)
@@ -26,13 +30,18 @@ def depths(X: FlagVariety) -> Ints:
 
 
 @lru_cache(maxsize=64)
-def biased_urn(X: FlagVariety) -> Urn:
-    """All classes: one ball for a class of depth c, and ``2 * 3^c / (mean of 3^depth)`` more, rounded down.
+def biased_urn(X: FlagVariety) -> Urn[SchubertClass]:
+    """All classes; one of depth c has ``1 + 2 (3^c - 1) / (mean of 3^depth)`` balls, rounded down.
 
-    So none has less than a third of its fair share. At most 16 powers of 3 matter, so that the integers stay small. A trivial Seidel group says nothing: all classes alike.
+    All classes have one ball where bias does not help, and where equal places on different varieties help shrinking instead: on
+    fewer than 20 classes (``Gr(3,6)`` is the smallest of type A with a coefficient above 1), and with a trivial Seidel group. At most
+    16 powers of 3 are told apart, so that the integers stay small.
 
     Cost: the Seidel orbits, once (``Fl(8)``: 0.6 s).
     """
-    depth = depths(X) if len(seidel(X).units) > 1 else np.zeros(len(X.classes), dtype=np.int64)
-    powers = 3 ** np.maximum(depth - depth.max() + 16, 0)
-    return Urn(X.classes, (1 + 2 * len(powers) * powers // powers.sum()).tolist())
+    count = len(X.classes)
+    if count < _FEW or len(seidel(X).units) == 1:
+        return Urn(X.classes, level=_length)
+    depth = depths(X)
+    powers = 3 ** np.maximum(depth - max(int(depth.max()) - 16, 0), 0)
+    return Urn(X.classes, level=_length, balls=(1 + 2 * count * (powers - 1) // powers.sum()).tolist())

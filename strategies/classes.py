@@ -11,7 +11,6 @@ from conjcheck.errors import NotationError
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.geometry.notation import read_integers
 from conjcheck.strategies.arguments import read_integer, read_variety
-from conjcheck.strategies.indices import MOST_EVEN
 from conjcheck.strategies.patterns import contains
 from conjcheck.strategies.urns import Urn
 
@@ -30,8 +29,8 @@ def schubert_classes(
 ) -> st.SearchStrategy[SchubertClass]:
     """Schubert classes of a flag variety, each with about the same probability. Restrictions add up.
 
-    Shrinks towards the first of the allowed classes in the order of ``X.classes`` (length, then lexicographic). Up to 256 classes
-    one choice; beyond, the length first, then the place among the classes of that length.
+    Shrinks towards the first of the allowed classes in the order of ``X.classes``: first the length, then the place among the classes
+    of that length, which are in lexicographic order.
 
     Args:
         X: the flag variety.
@@ -69,11 +68,11 @@ def schubert_classes(
             f"expected restrictions that some class of {X} satisfies, got none with grassmannian={grassmannian}, at={at}, "
             f"descents={wanted}, avoiding={patterns or None}"
         )
-    return st.sampled_from(found) if len(found) <= MOST_EVEN else _drawn(Urn(found, [1] * len(found)))
+    return _drawn(Urn(found, level=lambda u: u.length))
 
 
 @st.composite
-def _drawn(draw: st.DrawFn, urn: Urn) -> SchubertClass:
+def _drawn(draw: st.DrawFn, urn: Urn[SchubertClass]) -> SchubertClass:
     return urn.draw(draw)
 
 

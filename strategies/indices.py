@@ -11,7 +11,7 @@ MOST_EVEN = 256
 
 
 def draw_below(draw: st.DrawFn, count: int) -> int:
-    """An integer from 0 to ``count - 1``, shrinking towards 0: one choice up to 256, two up to 65,536, three up to 2^24.
+    """An integer from 0 to ``count - 1``, shrinking towards 0: one choice up to 256, two up to 65,536.
 
     A long range is cut into at most 256 blocks: first the block is drawn, then the place in it. Shrinking does not get from the
     first place of a block to the last one of the block before: good enough among classes of one length, not among all.

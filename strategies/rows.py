@@ -13,6 +13,7 @@ from conjcheck.geometry.flag_variety import MOST_CLASSES, FlagVariety
 from conjcheck.strategies.arguments import read_premise
 from conjcheck.strategies.bias import biased_urn
 from conjcheck.strategies.premises import Ground
+from conjcheck.strategies.urns import Urn
 from conjcheck.strategies.varieties import members
 
 __all__ = ["rows"]
@@ -70,13 +71,13 @@ def rows(
 
 
 @st.composite
-def _rows(draw: st.DrawFn, varieties: tuple[FlagVariety, ...], ground: Ground) -> Row:
+def _rows(draw: st.DrawFn, varieties: Urn[FlagVariety], ground: Ground) -> Row:
     """Variety first, then u, then v."""
-    X = draw(st.sampled_from(varieties))
+    X = varieties.draw(draw)
     urn = biased_urn(X)
     for _ in range(_ATTEMPTS):
         u = urn.draw(draw)
-        v = urn.draw(draw, longest=X.dim - u.length if ground.classical else None)
+        v = urn.draw(draw, highest=X.dim - u.length if ground.classical else None)
         found = ground.settle(u, v)
         if found:
             return Row(X, *found)

@@ -1,54 +1,53 @@
-"""Urns: Schubert classes of one variety, some of them several times, drawn so that the first ones are the simplest."""
+"""Urns: elements that come in levels, some of them several times, drawn so that the first ones are the simplest."""
 
 from bisect import bisect_right
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from itertools import accumulate, groupby
+from typing import Generic, TypeVar
 
 from hypothesis import strategies as st
 
-from conjcheck.geometry.flag_variety import SchubertClass
 from conjcheck.strategies.indices import MOST_EVEN, draw_below
 
 __all__ = ["Urn"]
 
+T = TypeVar("T")
 
-class Urn:
-    """Classes in the order of ``X.classes``, each with a number of balls.
 
-    With up to 256 balls, one choice, the ball. With more, first the length, then a ball of that length: small numbers, which
-    Hypothesis draws evenly, and the length is what shrinking should bring down first. Each length has its share of 256 tickets,
-    at least one, so that the identity and the point are seen on every variety.
+class Urn(Generic[T]):
+    """Elements in order, each with a number of balls: first the level is drawn, then a ball of that level.
+
+    Small numbers, which Hypothesis draws evenly; and shrinking brings the level down first, while the place in it stays. Each level
+    has its share of at most 256 tickets, at least one.
 
     Args:
-        classes: at least one class, rising.
-        balls: for each class its number of balls, 1 or more.
+        elements: at least one, simplest first.
+        level: the level of an element, rising along the elements: the length of a class, the n of a variety.
+        balls: for each element its number of balls, 1 or more.
     """
 
-    def __init__(self, classes: Sequence[SchubertClass], balls: Sequence[int]) -> None:
-        self.classes = classes
-        self._last = list(accumulate(balls))
-        self._lengths = [u.length for u in classes]
-        total = self._last[-1]
-        tickets = []
+    def __init__(self, elements: Sequence[T], *, level: Callable[[T], int], balls: Sequence[int] | None = None) -> None:
+        counts = [1] * len(elements) if balls is None else balls
+        self._elements = elements
+        self._last = list(accumulate(counts))
         self._bounds: dict[int, tuple[int, int]] = {}
-        for length, group in groupby(range(len(classes)), key=self._lengths.__getitem__):
+        self._tickets: list[int] = []
+        self._strategies: dict[int | None, st.SearchStrategy[int]] = {}
+        total = self._last[-1]
+        for key, group in groupby(range(len(elements)), key=lambda place: level(elements[place])):
             places = list(group)
-            low, high = self._last[places[0]] - balls[places[0]], self._last[places[-1]]
-            self._bounds[length] = low, high
-            tickets += [length] * max(1, (high - low) * MOST_EVEN // total)
-        self._tickets = tickets
-        self._strategies: dict[int, st.SearchStrategy[int]] = {}
+            low, high = self._last[places[0]] - counts[places[0]], self._last[places[-1]]
+            self._bounds[key] = low, high
+            self._tickets += [key] * max(1, (high - low) * min(total, MOST_EVEN) // total)
 
-    def draw(self, draw: st.DrawFn, *, longest: int | None = None) -> SchubertClass:
-        """One class, of length up to ``longest``; which has to leave something. Shrinks towards the first class."""
-        most = self._lengths[-1] if longest is None else min(longest, self._lengths[-1])
-        low, high = 0, self._last[bisect_right(self._lengths, most) - 1]
-        if high > MOST_EVEN:
-            low, high = self._bounds[draw(self._length_strategy(most))]
-        return self.classes[bisect_right(self._last, low + draw_below(draw, high - low))]
+    def draw(self, draw: st.DrawFn, *, highest: int | None = None) -> T:
+        """One element, of a level up to ``highest``, which has to leave something. Shrinks towards the first element."""
+        low, high = self._bounds[draw(self._levels(highest))]
+        return self._elements[bisect_right(self._last, low + draw_below(draw, high - low))]
 
-    def _length_strategy(self, most: int) -> st.SearchStrategy[int]:
-        """The tickets of the lengths up to a bound."""
-        if most not in self._strategies:
-            self._strategies[most] = st.sampled_from(self._tickets[: bisect_right(self._tickets, most)])
-        return self._strategies[most]
+    def _levels(self, highest: int | None) -> st.SearchStrategy[int]:
+        """The tickets of the levels up to a bound."""
+        if highest not in self._strategies:
+            end = len(self._tickets) if highest is None else bisect_right(self._tickets, highest)
+            self._strategies[highest] = st.sampled_from(self._tickets[:end])
+        return self._strategies[highest]

@@ -7,6 +7,7 @@ from conjcheck.geometry.families import Family
 from conjcheck.geometry.flag_variety import MOST_CLASSES, FlagVariety
 from conjcheck.geometry.weyl import number_of_cosets
 from conjcheck.strategies.arguments import read_family, read_integer
+from conjcheck.strategies.urns import Urn
 
 __all__ = ["flag_varieties", "members"]
 
@@ -16,10 +17,10 @@ _DEFAULT_MAX_N = 5
 def flag_varieties(
     on: Family, *, min_n: int = 2, max_n: int | None = None, max_classes: int = MOST_CLASSES
 ) -> st.SearchStrategy[FlagVariety]:
-    """Flag varieties of a family, up to 256 of them each with the same probability.
+    """Flag varieties of a family, each with about the same probability.
 
-    Shrinks towards the smallest variety of the family, in the order of ``FlagVariety.sort_key`` (rank, marked nodes, dimension).
-    One choice.
+    Shrinks towards the smallest variety of the family, in the order of ``FlagVariety.sort_key``: first n, then the place among
+    the varieties of that n, which are in order of their marked nodes and dimension.
 
     Args:
         on: the family.
@@ -37,11 +38,16 @@ def flag_varieties(
     >>> find(flag_varieties(Grassmannians()), lambda X: X.dim >= 3)
     FlagVariety('Gr(1,4)')
     """
-    return st.sampled_from(members(on, min_n=min_n, max_n=max_n, max_classes=max_classes))
+    return _drawn(members(on, min_n=min_n, max_n=max_n, max_classes=max_classes))
 
 
-def members(on: Family, *, min_n: int, max_n: int | None, max_classes: int) -> tuple[FlagVariety, ...]:
-    """The varieties within the bounds, in order; the bounds are checked."""
+@st.composite
+def _drawn(draw: st.DrawFn, varieties: Urn[FlagVariety]) -> FlagVariety:
+    return varieties.draw(draw)
+
+
+def members(on: Family, *, min_n: int, max_n: int | None, max_classes: int) -> Urn[FlagVariety]:
+    """The varieties within the bounds; the bounds are checked."""
     family = read_family(on)
     low, most = read_integer("min_n", min_n, least=2), read_integer("max_classes", max_classes, least=1)
     if max_n is not None:
@@ -56,4 +62,4 @@ def members(on: Family, *, min_n: int, max_n: int | None, max_classes: int) -> t
             f"expected at least one variety of {family} with {low} <= n <= {high} and at most {most:,} classes, got none; "
             "widen min_n, max_n or max_classes"
         )
-    return found
+    return Urn(found, level=lambda X: X.n)

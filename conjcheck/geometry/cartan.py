@@ -101,18 +101,19 @@ def positive_roots(kind: CartanType) -> tuple[tuple[Vector, Vector], ...]:
     (((0, 1), (0, 1)), ((1, 0), (1, 0)), ((1, 1), (2, 1)), ((1, 2), (1, 1)))
     """
     matrix, r = cartan_matrix(kind), kind.rank
+    near = [[i for i in range(r) if matrix[i][j]] for j in range(r)]
     units = [tuple(int(i == j) for j in range(r)) for i in range(r)]
     found = {unit: unit for unit in units}
     todo = list(found)
     for root in todo:
         coroot = found[root]
         for j in range(r):
-            down = sum(a * matrix[i][j] for i, a in enumerate(root))
+            down = sum(root[i] * matrix[i][j] for i in near[j])
             if down >= 0:
                 continue
-            codown = sum(c * matrix[j][i] for i, c in enumerate(coroot))
             image = (*root[:j], root[j] - down, *root[j + 1 :])
             if image not in found:
+                codown = sum(coroot[i] * matrix[j][i] for i in near[j])
                 found[image] = (*coroot[:j], coroot[j] - codown, *coroot[j + 1 :])
                 todo.append(image)
     return tuple(sorted(found.items(), key=lambda pair: (sum(pair[0]), pair[0])))

@@ -320,20 +320,18 @@ def _of(kind: CartanType, marked: tuple[int, ...]) -> FlagVariety:
     store(X, "n", kind.rank + 1)
     store(X, "steps", marked)
     store(X, "dim", dim)
-    store(X, "q_degrees", tuple(_q_degree(kind, marked, i) for i in marked))
+    store(X, "q_degrees", _q_degrees(kind, marked))
     store(X, "name", _name(kind, marked))
     store(X, "sort_key", (kind.rank, len(marked), dim, kind.letter, marked))
     return X
 
 
-def _q_degree(kind: CartanType, marked: tuple[int, ...], node: int) -> int:
+def _q_degrees(kind: CartanType, marked: tuple[int, ...]) -> tuple[int, ...]:
     """``deg q_i = <2 rho - 2 rho_P, alpha_i^vee>``: the sum over the roots outside the Levi of ``<alpha, alpha_i^vee>``."""
     matrix = cartan_matrix(kind)
-    return sum(
-        sum(a * matrix[j][node - 1] for j, a in enumerate(root))
-        for root, _ in positive_roots(kind)
-        if any(root[i - 1] for i in marked)
-    )
+    outside = [root for root, _ in positive_roots(kind) if any(root[i - 1] for i in marked)]
+    total = [sum(column) for column in zip(*outside, strict=True)]
+    return tuple(sum(a * matrix[j][i - 1] for j, a in enumerate(total)) for i in marked)
 
 
 def _name(kind: CartanType, marked: tuple[int, ...]) -> str:
@@ -397,7 +395,9 @@ def _strings(X: FlagVariety) -> tuple[str, ...]:
 
 @cache
 def _descents(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
-    """``u s_i`` has the weight ``u lambda_P - u alpha_i``; i is a descent when that class is shorter."""
+    """Type A: read off one-line notation. Else ``u s_i`` has the weight ``u lambda_P - u alpha_i``; i is a descent when it is shorter."""
+    if X.kind.letter == "A":
+        return tuple(map(notation.descents, _permutations(X)))
     whole, images = orbit_of(X), weight_images(X.kind, X.marked)
     matrix = np.array(cartan_matrix(X.kind), dtype=np.int64)
     shorter = [

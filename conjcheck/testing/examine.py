@@ -34,6 +34,7 @@ class Effort:
         survey: the survey.
         laws: the laws.
         probe: all probes together.
+        draws: how many times the examples of the Hypothesis profile in force are drawn in a random part.
         minimise, layer: after a failure, looking below it and collecting the layer.
         most_cases: cases compared per row in a probe, for rules that answer case by case.
         most_classes: the largest space a probe goes to, in classes.
@@ -42,6 +43,7 @@ class Effort:
     survey: float
     laws: float
     probe: float
+    draws: int
     minimise: float
     layer: float
     most_cases: int
@@ -49,9 +51,9 @@ class Effort:
 
 
 EFFORTS = {
-    "quick": Effort(2.0, 0.5, 1.0, 5.0, 5.0, 500, 800),
-    "normal": Effort(10.0, 1.0, 4.0, 20.0, 40.0, 2_000, 5_040),
-    "thorough": Effort(120.0, 10.0, 60.0, 240.0, 120.0, 20_000, 40_320),
+    "quick": Effort(2.0, 0.5, 1.0, 1, 5.0, 5.0, 500, 800),
+    "normal": Effort(10.0, 1.0, 4.0, 1, 20.0, 40.0, 2_000, 5_040),
+    "thorough": Effort(120.0, 10.0, 60.0, 50, 240.0, 120.0, 20_000, 40_320),
 }
 """The levels of effort by name."""
 
@@ -112,7 +114,7 @@ class Examination:
         count = ProbeCount(started + self.effort.laws)
         try:
             if spaces := self.small_spaces():
-                run_probe(self.law_check(count), spaces, self.comparer, count, seed=seed)
+                run_probe(self.law_check(count), spaces, self.comparer, count, seed=seed, draws=self.effort.draws)
         except Found as found:
             return self.work_out(found.finding, "laws", started, count.broken_law)
         return self.laws_agree(count, started)
@@ -122,7 +124,7 @@ class Examination:
         started = perf_counter()
         count = ProbeCount(started + seconds)
         try:
-            run_probe(self.probe_check(count), self.unfinished(spaces), self.comparer, count, seed=seed)
+            run_probe(self.probe_check(count), self.unfinished(spaces), self.comparer, count, seed=seed, draws=self.effort.draws)
         except Found as found:
             return self.work_out(found.finding, f"probe[n={n}]", started)
         return self.probe_agrees(n, spaces, count, started)
@@ -136,8 +138,7 @@ class Examination:
         if isinstance(where, Case) and conjecture.is_classical and any(where.d):
             raise NotationError(f"expected a case with d = 0, since {conjecture.name} is about the classical ring, got {where}")
         with self.comparer.limit:
-            admitted = self.comparer.inside(row) and (not isinstance(where, Case) or self.comparer.admits(where))
-            if not admitted:
+            if not self.comparer.inside(row) or (isinstance(where, Case) and not self.comparer.admits(where)):
                 raise NotationError(f"expected a case inside the premise of {conjecture.name}, got {where}; nothing was compared")
             if isinstance(where, Case):
                 finding, cases = self.comparer.case(where), 1

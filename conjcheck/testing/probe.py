@@ -117,6 +117,7 @@ def probe_test(
     time_is_up: Callable[[], bool],
     *,
     fixed_seed: int | None = None,
+    draws: int = 1,
     **choices: Any,
 ) -> Callable[[], None]:
     """A Hypothesis test without arguments that draws rows and checks them.
@@ -127,6 +128,7 @@ def probe_test(
         comparer: whose premise is respected.
         time_is_up: when it says so, the search for rows inside the premise ends.
         fixed_seed: makes the draws reproducible; ``None`` leaves the choice to Hypothesis.
+        draws: how many times the examples of the profile are drawn.
         choices: further Hypothesis settings; the others are those of the profile in force.
     """
     conjecture = comparer.conjecture
@@ -146,6 +148,7 @@ def probe_test(
     @settings(
         profile,
         deadline=None,
+        max_examples=profile.max_examples * draws,
         suppress_health_check=list(HealthCheck),
         print_blob=False,
         **choices,
@@ -158,9 +161,11 @@ def probe_test(
     return seed(fixed_seed)(probe) if fixed_seed is not None else probe
 
 
-def run_probe(check: Check, spaces: list[FlagVariety], comparer: Comparer, count: ProbeCount, *, seed: int | None = None) -> None:
+def run_probe(
+    check: Check, spaces: list[FlagVariety], comparer: Comparer, count: ProbeCount, *, seed: int | None = None, draws: int = 1
+) -> None:
     """Run the search outside pytest; raises what the check raises at the smallest failure found."""
-    test = probe_test(check, lambda: spaces, comparer, count.time_is_up, fixed_seed=seed, database=None)
+    test = probe_test(check, lambda: spaces, comparer, count.time_is_up, fixed_seed=seed, draws=draws, database=None)
     try:
         test()
     except Unsatisfiable:

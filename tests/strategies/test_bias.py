@@ -4,6 +4,7 @@ import numpy as np
 import pytest
 
 from conjcheck import product
+from conjcheck.geometry.families import PartialFlags
 from conjcheck.geometry.flag_variety import Fl, FlagVariety, Gr
 from conjcheck.geometry.symmetries import seidel
 from conjcheck.strategies.bias import depths
@@ -24,6 +25,13 @@ def test_depth_zero_means_one_term(X):
     for index in np.flatnonzero(depths(X) == 0):
         for v in X.classes:
             assert list(product(X.classes[index], v).values()) == [1]
+
+
+def test_without_bias_on_few_classes_no_coefficient_is_missed():
+    """The varieties of type A with fewer than 20 classes and n <= 6 have coefficients 0 and 1 only."""
+    small = [X for X in PartialFlags().up_to(6) if len(X.classes) < 20]
+    assert [X.name for X in small if not X.is_grassmannian] == ["Fl(3)", "Fl(1,2;4)", "Fl(1,3;4)", "Fl(2,3;4)"]
+    assert all(max(product(u, v).values()) == 1 for X in small for u in X.classes for v in X.classes)
 
 
 def test_the_largest_depth_has_the_coefficients_above_one():

@@ -83,7 +83,7 @@ def rule_by_rows(faults=(), *, on=SMALL, **choices):
     """The same, asked row by row."""
     tables = {X: truth(X) for X in on}
     wrong = {}
-    for X, u, v, w, d in faults:
+    for X, u, v, w, d in set(faults):
         row = wrong.setdefault((X, u, v), dict(tables[X][u, v]))
         row[w, d] = row.get((w, d), 0) + 1
 

@@ -68,7 +68,7 @@ def test_planted_faults(faults, more, kind):
     assert not done.coverage.whole_family
 
 
-@settings(max_examples=12, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(fault=st.sampled_from(cases_of(Fl(4))), kind=st.sampled_from([rule_by_cases, rule_by_rows]))
 def test_planted_fault_on_complete_flags(fault, kind):
     """The same on Fl(4), 35,855 cases."""
@@ -211,14 +211,12 @@ def test_a_family_with_nothing_in_reach(family):
 def test_in_reach():
     """Spaces come in the order of the family; infinite families end where the engines do."""
 
-    def names(family):
-        return [X.name for X in in_reach(candidate(on=family)(_nothing))]
+    def names(family, count):
+        return [X.name for X in itertools.islice(in_reach(candidate(on=family)(_nothing)), count)]
 
-    assert names(CompleteFlags()) == ["Gr(1,2)", *(f"Fl({n})" for n in range(3, 9))]
-    partial = names(PartialFlags())
-    assert partial[:4] == ["Gr(1,2)", "Gr(1,3)", "Gr(2,3)", "Fl(3)"]
-    assert len([name for name in partial if name.endswith(("8)", ";8)"))]) == 127
-    assert names(ProjectiveSpaces())[:12] == [f"Gr(1,{n})" for n in range(2, 14)]
+    assert names(CompleteFlags(), 100) == ["Gr(1,2)", *(f"Fl({n})" for n in range(3, 9))]
+    assert names(PartialFlags(), 247) == [X.name for X in PartialFlags().up_to(8)]
+    assert names(ProjectiveSpaces(), 30) == [f"Gr(1,{n})" for n in range(2, 32)]
 
 
 def _nothing(X, u, v):
