@@ -29,8 +29,8 @@ def schubert_classes(
 ) -> st.SearchStrategy[SchubertClass]:
     """Schubert classes of a flag variety, each with about the same probability. Restrictions add up.
 
-    Shrinks towards the first of the allowed classes in the order of ``X.classes``: first the length, then the place among the classes
-    of that length, which are in lexicographic order.
+    Shrinks towards the first of the allowed classes in the order of ``X.classes``: length, then lexicographic. One choice up to 256
+    classes; beyond, the length, then the place among the classes of that length.
 
     Args:
         X: the flag variety.

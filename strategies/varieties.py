@@ -62,4 +62,4 @@ def members(on: Family, *, min_n: int, max_n: int | None, max_classes: int) -> U
             f"expected at least one variety of {family} with {low} <= n <= {high} and at most {most:,} classes, got none; "
             "widen min_n, max_n or max_classes"
         )
-    return Urn(found, level=lambda X: X.n)
+    return Urn(found, level=lambda X: X.n, level_first=True)

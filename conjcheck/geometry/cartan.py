@@ -127,12 +127,14 @@ def automorphisms(kind: CartanType) -> tuple[Vector, ...]:
     ((1, 2, 3), (3, 2, 1))
     """
     matrix, r = cartan_matrix(kind), kind.rank
+    near = [[j for j in range(r) if matrix[i][j] and i != j] for i in range(r)]
     partial: list[Vector] = [()]
     for i in range(r):
+        before = next((j for j in near[i] if j < i), None)
         partial = [
             (*images, x)
             for images in partial
-            for x in range(r)
+            for x in (range(r) if before is None else near[images[before]])
             if x not in images and all(matrix[x][y] == matrix[i][j] and matrix[y][x] == matrix[j][i] for j, y in enumerate(images))
         ]
     return tuple(tuple(x + 1 for x in images) for images in partial)

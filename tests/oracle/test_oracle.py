@@ -142,6 +142,22 @@ def test_witnesses_tell_the_constant_in_other_ways(name):
     assert {value for _, value in found} == {constant(case.u, case.v, case.w, case.d)}
 
 
+@pytest.mark.parametrize("name", ["Gr(2,4): (2,1) * (1) -> (2,2), q^(0)", "Fl(3): [321] * [321] -> [231], q^(1,1)"])
+def test_the_witness_of_the_s3_symmetry_asks_another_question(name, monkeypatch):
+    """When the engine is wrong at the case itself, the witness that goes through ``N_{u,w^vee}^{v^vee,d}`` still tells the truth."""
+    case = Case.parse(name)
+    engine = type(engines_for(case.X)[0])
+    honest = engine.constant
+
+    def wrong_here(self, u, v, w, d):
+        return 7 if (u, v, w, d) == (case.u, case.v, case.w, case.d) else honest(self, u, v, w, d)
+
+    truth = constant(case.u, case.v, case.w, case.d)
+    monkeypatch.setattr(engine, "constant", wrong_here)
+    assert constant(case.u, case.v, case.w, case.d) == 7
+    assert dict(witnesses(case))["S3-symmetry"] == truth
+
+
 def test_while_a_rule_runs_the_oracle_refuses_and_notices():
     """Every question is refused, and noticed even when the rule swallows the error; outside nothing is."""
     X = Gr(2, 4)
