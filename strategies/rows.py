@@ -40,17 +40,17 @@ def rows(
 
     Measured on eight seeds with 500 examples each, in brackets what it would be with all rows alike (computed):
 
-    * rows with a coefficient of 2 or more: ``Fl(5)`` 7.0 % (0.17 %), ``Fl(6)`` 35 % (7.5 %), ``Gr(3,6)`` 15 % (1.0 %);
-    * rows with a term of positive degree: ``Fl(4)`` 81 % (75 %), ``Fl(5)`` 92 % (89 %), ``Fl(6)`` 91 % (96 %);
-    * terms in a row: ``Fl(4)`` 2.5 (2.0), ``Fl(5)`` 7.6 (4.4), ``Fl(6)`` 25 (13).
+    * rows with a coefficient of 2 or more: ``Fl(5)`` 6.6 % (0.17 %), ``Fl(6)`` 31 % (7.5 %), ``Gr(3,6)`` 14 % (1.0 %);
+    * rows with a term of positive degree: ``Fl(4)`` 81 % (75 %), ``Fl(5)`` 93 % (89 %), ``Fl(6)`` 90 % (96 %);
+    * terms in a row: ``Fl(4)`` 2.6 (2.0), ``Fl(5)`` 7.6 (4.4), ``Fl(6)`` 24 (13).
 
     Args:
         on: the family.
         min_n: the least ``X.n``.
         max_n: the greatest ``X.n``; by default as for :func:`flag_varieties`.
         max_classes: the greatest number of Schubert classes.
-        premise: a predicate ``(X, u, v)``; only rows that satisfy it. A row that does not is moved to one that does, so
-            that a thin premise costs calls of the premise, not rejected examples.
+        premise: a predicate ``(X, u, v)``; only rows that satisfy it. A row that does not is moved to one that does, so that a thin
+            premise costs calls of the premise, not rejected examples.
         classical: only rows with ``l(u) + l(v) <= dim X``, the ones that have terms with ``d = 0``.
 
     Cost: about that of a tuple of two indices. The first draw on a variety also finds the Seidel orbits (``Fl(8)``: 0.6 s). A

@@ -47,10 +47,12 @@ class Urn(Generic[T]):
 
     def draw(self, draw: st.DrawFn, *, highest: int | None = None) -> T:
         """One element, of a level up to ``highest``, which has to leave something. Shrinks towards the first element."""
-        if self._flat:
-            low, high = 0, self._last[-1] if highest is None else max(end for key, (_, end) in self._bounds.items() if key <= highest)
-        else:
+        if not self._flat:
             low, high = self._bounds[draw(self._levels(highest))]
+        elif highest is None:
+            low, high = 0, self._last[-1]
+        else:
+            low, high = 0, max(end for key, (_, end) in self._bounds.items() if key <= highest)
         return self._elements[bisect_right(self._last, low + draw_below(draw, high - low))]
 
     def _levels(self, highest: int | None) -> st.SearchStrategy[int]:

@@ -4,79 +4,31 @@ Engines share the geometry of ``conjcheck.geometry`` and nothing else:
 
 * ``"recursion"``: every flag variety of type A up to n = 8, by associativity and the quantum Chevalley formula on complete flags,
   then Peterson-Woodward comparison;
-* ``"vafa-intriligator"``: Grassmannians with up to 1,000 classes, by a closed formula.
+* ``"vafa-intriligator"``: Grassmannians with up to 1,000 classes, by a closed formula;
+* ``"localisation"``: any G/P with up to 1,000 classes, by equivariant localisation; slow where there are many q's.
 """
 
 from collections.abc import Iterator
 
 from conjcheck.errors import DifferentVarieties, EnginesDisagree, NotationError, OutOfReach
 from conjcheck.geometry.case import Case, read_degree
-from conjcheck.geometry.flag_variety import MOST_CLASSES, Degree, FlagVariety, SchubertClass
-from conjcheck.oracle import grassmannian
-from conjcheck.oracle.comparison import comparison
-from conjcheck.oracle.engine import Block, Engine, Product, RowTerms, blocks_by_rows
+from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
+from conjcheck.oracle.comparison import RecursionEngine
+from conjcheck.oracle.engine import Block, Engine, Product, RowTerms
+from conjcheck.oracle.grassmannian import VafaIntriligatorEngine
 from conjcheck.oracle.guard import note_question
-from conjcheck.oracle.recursion import complete_flag_ring
+from conjcheck.oracle.localisation import LocalisationEngine
 
 __all__ = ["ENGINES", "Block", "Product", "constant", "engines_for", "product", "row_terms", "table", "witnesses"]
 
 
-class _Recursion:
-    """Associativity on complete flags and Peterson-Woodward; see ``recursion`` and ``comparison``."""
+_RECURSION = RecursionEngine()
+_LOCALISATION = LocalisationEngine()
 
-    name = "recursion"
-
-    def refuses(self, X: FlagVariety) -> str | None:
-        if X.kind.letter != "A":
-            return f"{X} is not of type A"
-        if X.n > 8:
-            return f"{X} needs the {X.n}! classes of Fl({X.n}), enumeration stops at {MOST_CLASSES:,}"
-        return None
-
-    def row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
-        X = u.variety
-        if not X.is_complete:
-            return comparison(X).row(u, v)
-        ring = complete_flag_ring(X)
-        return ring.terms(ring.packed_row(u.index, v.index))
-
-    def direct_row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
-        """The same product on another route: no Seidel symmetry, no remembered product."""
-        X = u.variety
-        if not X.is_complete:
-            return comparison(X).row(u, v, direct=True)
-        ring = complete_flag_ring(X)
-        return ring.terms(ring.direct_row(u.index, v.index))
-
-    def constant(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree) -> int:
-        return self.row(u, v).get((w, d), 0)
-
-    def blocks(self, X: FlagVariety) -> Iterator[Block]:
-        return complete_flag_ring(X).blocks() if X.is_complete else blocks_by_rows(self, X)
-
-
-class _VafaIntriligator:
-    """The closed formula on Grassmannians; see ``grassmannian``."""
-
-    name = "vafa-intriligator"
-
-    def refuses(self, X: FlagVariety) -> str | None:
-        return grassmannian.out_of_reach(X)
-
-    def row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
-        return grassmannian.residue_table(u.variety).row(u, v)
-
-    def constant(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree) -> int:
-        return grassmannian.residue_table(u.variety).constant(u, v, w, d)
-
-    def blocks(self, X: FlagVariety) -> Iterator[Block]:
-        return grassmannian.residue_table(X).blocks()
-
-
-_RECURSION = _Recursion()
-
-ENGINES: dict[str, Engine] = {engine.name: engine for engine in (_VafaIntriligator(), _RECURSION)}
+ENGINES: dict[str, Engine] = {engine.name: engine for engine in (VafaIntriligatorEngine(), _RECURSION, _LOCALISATION)}
 """All engines by name, the preferred one first."""
+
+_CHEAP_WORK = 100_000_000
 
 
 def engines_for(X: FlagVariety) -> list[Engine]:
@@ -119,14 +71,22 @@ def row_terms(u: SchubertClass, v: SchubertClass, *, engine: str | None = None, 
     first = _chosen(X, engine)
     terms = first.row(u, v)
     if cross_check:
-        others = [other for other in engines_for(X) if other is not first]
-        second, name = (others[0].row(u, v), others[0].name) if others else (_RECURSION.direct_row(u, v), "recursion, direct route")
+        second, name = _second(first, u, v)
         if terms != second:
             raise EnginesDisagree(
                 f"expected one product {X}: {u} * {v} from two engines, got {Product.of(terms)} from {first.name} and "
                 f"{Product.of(second)} from {name}; please report this, no verdict of this version can be trusted"
             )
     return terms
+
+
+def _second(first: Engine, u: SchubertClass, v: SchubertClass) -> tuple[RowTerms, str]:
+    """A product by another engine than the first, the cheapest one; where that is too slow, by the recursion on its direct route."""
+    X = u.variety
+    for other in engines_for(X):
+        if other is not first and (other is not _LOCALISATION or _LOCALISATION.work(X, u.length + v.length) <= _CHEAP_WORK):
+            return other.row(u, v), other.name
+    return _RECURSION.direct_row(u, v), "recursion, direct route"
 
 
 def product(u: SchubertClass, v: SchubertClass, *, engine: str | None = None, cross_check: bool = False) -> Product:
@@ -193,13 +153,19 @@ def table(X: FlagVariety, *, engine: str | None = None) -> Iterator[Block]:
 def witnesses(case: Case) -> list[tuple[str, int]]:
     """The constant of a case by every other way there is: ``(how, value)``, the strongest first.
 
-    A second engine if one covers the variety; the direct route of the recursion; and law 2,
+    The other engines that cover the variety, as far as they are quick; the direct route of the recursion; and law 2,
     ``N_{u,v}^{w,d} = N_{u, w^vee}^{v^vee, d}``, through a product that shares no factor but u.
     """
     note_question()
     X, d = case.X, case.d
-    found = [(f"engine {other.name}", other.constant(case.u, case.v, case.w, d)) for other in engines_for(X)[1:]]
+    chosen = _chosen(X, None)
+    weight = case.u.length + case.v.length - case.w.length
+    found = [
+        (f"engine {other.name}", other.constant(case.u, case.v, case.w, d))
+        for other in engines_for(X)
+        if other is not chosen and (other is not _LOCALISATION or _LOCALISATION.work(X, weight) <= _CHEAP_WORK)
+    ]
     if _RECURSION.refuses(X) is None:
         found.append(("the recursion without symmetries", _RECURSION.direct_row(case.u, case.v).get((case.w, d), 0)))
-    found.append(("S3-symmetry", _chosen(X, None).constant(case.u, case.w.dual, case.v.dual, d)))
+    found.append(("S3-symmetry", chosen.constant(case.u, case.w.dual, case.v.dual, d)))
     return found

@@ -7,17 +7,18 @@ with ``<alpha, lambda> = 0``; ``w_P`` and ``w_{P'}`` are the longest elements of
 Source: Woodward, On D. Peterson's comparison formula for Gromov-Witten invariants of G/P, Proc. Amer. Math. Soc. 133 (2005), Thm 3.
 """
 
+from collections.abc import Iterator
 from functools import lru_cache
 
 import numpy as np
 
 from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
-from conjcheck.geometry.flag_variety import Degree, Fl, FlagVariety, SchubertClass, orbit_of
+from conjcheck.geometry.flag_variety import MOST_CLASSES, Degree, Fl, FlagVariety, SchubertClass, orbit_of
 from conjcheck.geometry.weyl import reflected_by_word, weight_images
-from conjcheck.oracle.engine import RowTerms
+from conjcheck.oracle.engine import Block, RowTerms, blocks_by_rows
 from conjcheck.oracle.recursion import CompleteFlagRing, Packed, complete_flag_ring
 
-__all__ = ["Comparison", "comparison", "lift", "longest_word"]
+__all__ = ["Comparison", "RecursionEngine", "comparison", "lift", "longest_word"]
 
 
 def lift(kind: CartanType, marked: tuple[int, ...], d: Degree) -> Degree:
@@ -113,3 +114,41 @@ class Comparison:
 def comparison(X: FlagVariety) -> Comparison:
     """The comparison for X, made once."""
     return Comparison(X)
+
+
+class RecursionEngine:
+    """Engine "recursion": associativity on complete flags, then Peterson-Woodward; see the modules ``recursion`` and ``comparison``."""
+
+    name = "recursion"
+
+    def refuses(self, X: FlagVariety) -> str | None:
+        """Type A up to n = 8."""
+        if X.kind.letter != "A":
+            return f"{X} is not of type A"
+        if X.n > 8:
+            return f"{X} needs the {X.n}! classes of Fl({X.n}), enumeration stops at {MOST_CLASSES:,}"
+        return None
+
+    def row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
+        """The nonzero terms of a product."""
+        X = u.variety
+        if not X.is_complete:
+            return comparison(X).row(u, v)
+        ring = complete_flag_ring(X)
+        return ring.terms(ring.packed_row(u.index, v.index))
+
+    def direct_row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
+        """The same product on another route: no Seidel symmetry, no remembered product."""
+        X = u.variety
+        if not X.is_complete:
+            return comparison(X).row(u, v, direct=True)
+        ring = complete_flag_ring(X)
+        return ring.terms(ring.direct_row(u.index, v.index))
+
+    def constant(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree) -> int:
+        """One constant, from its row."""
+        return self.row(u, v).get((w, d), 0)
+
+    def blocks(self, X: FlagVariety) -> Iterator[Block]:
+        """The whole table."""
+        return complete_flag_ring(X).blocks() if X.is_complete else blocks_by_rows(self, X)

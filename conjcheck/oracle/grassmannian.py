@@ -17,7 +17,7 @@ orthogonality in Rietsch, Quantum cohomology rings of Grassmannians and total po
 from collections.abc import Iterator
 from functools import cache, lru_cache
 from itertools import combinations
-from math import comb, isqrt, prod
+from math import isqrt, prod
 
 import numpy as np
 
@@ -26,7 +26,7 @@ from conjcheck.geometry.weyl import Ints
 from conjcheck.oracle.engine import Block, RowTerms
 from conjcheck.oracle.guard import note_question
 
-__all__ = ["MOST_CLASSES", "ResidueTable", "dimension", "residue_table"]
+__all__ = ["MOST_CLASSES", "ResidueTable", "VafaIntriligatorEngine", "dimension", "residue_table"]
 
 MOST_CLASSES = 1_000
 """Above this the square table of residues would take more than 8 MB times k; the engine says it is out of reach."""
@@ -158,11 +158,27 @@ def residue_table(X: FlagVariety) -> ResidueTable:
     return ResidueTable(X)
 
 
-def out_of_reach(X: FlagVariety) -> str | None:
-    """Why this engine cannot serve X, ``None`` if it can."""
-    if not X.is_grassmannian:
-        return f"{X} is not a Grassmannian"
-    count = comb(X.n, X.marked[0])
-    if count > MOST_CLASSES:
-        return f"{X} has {count:,} classes, the table of residues stops at {MOST_CLASSES:,}"
-    return None
+class VafaIntriligatorEngine:
+    """Engine "vafa-intriligator"; see the module."""
+
+    name = "vafa-intriligator"
+
+    def refuses(self, X: FlagVariety) -> str | None:
+        """Grassmannians with at most ``MOST_CLASSES`` classes."""
+        if not X.is_grassmannian:
+            return f"{X} is not a Grassmannian"
+        if X.number_of_classes > MOST_CLASSES:
+            return f"{X} has {X.number_of_classes:,} classes, the table of residues stops at {MOST_CLASSES:,}"
+        return None
+
+    def row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
+        """The nonzero terms of a product."""
+        return residue_table(u.variety).row(u, v)
+
+    def constant(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree) -> int:
+        """One constant: a sum over J."""
+        return residue_table(u.variety).constant(u, v, w, d)
+
+    def blocks(self, X: FlagVariety) -> Iterator[Block]:
+        """The whole table."""
+        return residue_table(X).blocks()

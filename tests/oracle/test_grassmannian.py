@@ -7,7 +7,7 @@ import sympy
 
 from conjcheck import Fl, FlagVariety, Gr, product, table
 from conjcheck.oracle import engines_for
-from conjcheck.oracle.grassmannian import MOST_CLASSES, ResidueTable, dimension, out_of_reach
+from conjcheck.oracle.grassmannian import MOST_CLASSES, ResidueTable, VafaIntriligatorEngine, dimension
 
 SPACES = [Gr(k, n) for n in range(2, 7) for k in range(1, n)]
 
@@ -91,8 +91,8 @@ def test_a_large_grassmannian():
 
 def test_what_is_out_of_reach():
     """The engine names the reason: not a Grassmannian, or too many classes."""
-    assert out_of_reach(Gr(3, 6)) is None
-    assert out_of_reach(Fl(3)) == "Fl(3) is not a Grassmannian"
-    assert out_of_reach(FlagVariety("C3/P3")) == "C3/P3 is not a Grassmannian"
+    assert VafaIntriligatorEngine().refuses(Gr(3, 6)) is None
+    assert VafaIntriligatorEngine().refuses(Fl(3)) == "Fl(3) is not a Grassmannian"
+    assert VafaIntriligatorEngine().refuses(FlagVariety("C3/P3")) == "C3/P3 is not a Grassmannian"
     assert comb(14, 7) > MOST_CLASSES
-    assert out_of_reach(Gr(7, 14)) == "Gr(7,14) has 3,432 classes, the table of residues stops at 1,000"
+    assert VafaIntriligatorEngine().refuses(Gr(7, 14)) == "Gr(7,14) has 3,432 classes, the table of residues stops at 1,000"

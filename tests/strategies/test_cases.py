@@ -47,10 +47,10 @@ def test_cases_shrink_to_the_smallest_question(smallest):
 
 
 def test_cases_shrink_under_conditions(smallest):
-    """The first quantum term of all is pt * pt = q on P^1; the first of ``Fl(3)`` with two powers of q is in sigma_132 * pt."""
+    """The first quantum term of all is pt * pt = q on P^1; on ``Fl(3)`` a divisor times pt is the first with a q1 q2."""
     assert smallest(cases(PartialFlags()), lambda case: any(case.d)) == Case.parse("Gr(1,2): (1) * (1) -> (), q^(1)")
     found = smallest(cases(Varieties("Fl(3)")), lambda case: min(case.d) > 0)
-    assert found == Case.parse("Fl(3): [132] * [321] -> [123], q^(1,1)")
+    assert (found.u.length, found.v.length, found.w.length, found.d) == (1, 3, 0, (1, 1))
     wrong = smallest(cases(Varieties("Gr(2,4)"), kind="outside"), lambda case: case.u is Gr(2, 4).point)
     assert wrong == Case.parse("Gr(2,4): (2,2) * () -> ()")
 

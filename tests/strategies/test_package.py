@@ -33,4 +33,7 @@ def test_strategies_know_geometry_only():
         for line in file.read_text().splitlines():
             if line.lstrip().startswith(("import conjcheck", "from conjcheck")):
                 room = line.split()[1]
-                assert room.startswith(("conjcheck.geometry.", "conjcheck.strategies.")) or room == "conjcheck.errors", (file.name, line)
+                assert room.startswith(("conjcheck.geometry.", "conjcheck.strategies.")) or room == "conjcheck.errors", (
+                    file.name,
+                    line,
+                )

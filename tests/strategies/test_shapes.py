@@ -39,9 +39,7 @@ def test_permutations_shrink_to_the_identity(smallest):
 
 def test_partitions_are_those_of_the_box(drawn):
     """All 20 partitions inside 3 rows and 3 columns occur, as tuples without trailing zeros, and no other."""
-    box = {
-        tuple(sorted((part for part in parts if part), reverse=True)) for parts in combinations_with_replacement(range(4), 3)
-    }
+    box = {tuple(sorted((part for part in parts if part), reverse=True)) for parts in combinations_with_replacement(range(4), 3)}
     assert len(box) == 20
     assert set(drawn(partitions(3, 3), 500)) == box
     assert drawn(partitions(0, 3)) == [()]

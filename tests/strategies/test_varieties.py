@@ -54,7 +54,10 @@ def test_a_family_that_ends_without_saying_so_is_no_trap(drawn):
         ({"on": Grassmannians(), "max_n": True}, r"for max_n, got max_n=True \(bool\)"),
         ({"on": Grassmannians(), "min_n": 6, "max_n": 5}, "expected max_n of at least min_n=6, got max_n=5"),
         ({"on": Grassmannians(), "max_classes": 0}, "expected an integer of 1 or more for max_classes"),
-        ({"on": CompleteFlags(), "min_n": 4, "max_classes": 23}, "expected at least one variety of complete flag varieties with 4 <= n"),
+        (
+            {"on": CompleteFlags(), "min_n": 4, "max_classes": 23},
+            "expected at least one variety of complete flag varieties with 4 <= n",
+        ),
         ({"on": Varieties("Gr(2,4)"), "min_n": 5}, "expected max_n of at least min_n=5, got max_n=4"),
     ],
 )

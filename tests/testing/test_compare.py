@@ -455,7 +455,7 @@ def test_two_answers():
     numbers = itertools.count(5)
     finding = judged(by_cases(lambda true, w, d: next(numbers) if true else 0)).finding
     assert (finding.status, finding.where) == ("unstable", FIRST)
-    assert finding.detail.startswith("expected one answer for one case, got 5, then ")
+    assert finding.detail.startswith("expected one answer for one case, got 5, and another time ")
 
 
 def test_wrong_then_right():
@@ -479,7 +479,7 @@ def test_used_up_iterator():
     shared = {}
     finding = judged(by_cases(lambda true, w, d: shared.setdefault((w, d), iter(range(true + 1))))).finding
     assert finding.status == "unstable"
-    assert finding.detail == "expected one answer for one case, got 1, then 0"
+    assert finding.detail == "expected one answer for one case, got 1, and another time 0"
 
 
 def test_a_product_changed_by_its_rule_afterwards():
@@ -738,7 +738,7 @@ def test_an_unstable_claim():
         return next(minds, True)
 
     finding = judged(fickle).finding
-    assert (finding.status, finding.detail) == ("unstable", "expected one answer for one case, got False, then True")
+    assert (finding.status, finding.detail) == ("unstable", "expected one answer for one case, got False, and another time True")
 
 
 # -- cross-checks ----------------------------------------------------------------------------------------------------------------------
