@@ -81,7 +81,7 @@ def _inside(draw: st.DrawFn, row: Row) -> Outcome:
     """Walk from the longer class along the divisors of the shorter one's Seidel representative, then relabel back.
 
     With v = g a: ``sigma_u * sigma_v = q^{-shift(g, a)} S_g * (sigma_u * sigma_a)``, and a is short. A walk that ends at a negative
-    degree is no term; about one in a hundred. The walk is one choice, a byte for each step that any row of X needs, so that
+    degree is no term; one or two in a hundred. The walk is one choice, a byte for each step that any row of X needs, so that
     rows with short walks do not count as simpler.
     """
     most = int(depths(row.X).max())

@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass, replace
-from itertools import combinations, count, takewhile
+from itertools import combinations, count
 
 from conjcheck.errors import DeclarationError
 from conjcheck.geometry.flag_variety import Fl, FlagVariety, Gr
@@ -46,7 +46,8 @@ class Family:
         >>> [X.name for X in Grassmannians().up_to(3)]
         ['Gr(1,2)', 'Gr(1,3)', 'Gr(2,3)']
         """
-        return takewhile(lambda X: X.rank < n, self)
+        for rank in range(1, n):
+            yield from self.of_rank(rank)
 
     def where(self, predicate: Callable[[FlagVariety], bool], *, words: str | None = None) -> "Family":
         """The varieties of this family that satisfy a predicate; ``words`` is what reports say of it.

@@ -28,7 +28,7 @@ def cases(draw):
     return Case(X, u, v, w, tuple(draw(st.integers(0, 12)) for _ in X.marked))
 
 
-SMALL = [Gr(1, 2), Gr(2, 4), Fl(3), Fl(1, 3, n=4), Fl(1, 2, n=4), FlagVariety("B2/B"), FlagVariety("G2/P1")]
+SMALL = [Gr(1, 2), Gr(2, 4), Fl(3), Fl(1, 3, n=4), Fl(1, 2, n=4), Fl(2, 3, n=4), FlagVariety("B2/B"), FlagVariety("G2/P1")]
 
 
 @settings(deadline=None)

@@ -1,0 +1,175 @@
+"""Localisation against the other engines, and against published values of spaces that they do not reach."""
+
+import random
+
+import numpy as np
+import pytest
+
+from conjcheck import Case, FlagVariety, Fl, Gr, product
+from conjcheck.errors import OutOfReach
+from conjcheck.geometry.case import rows
+from conjcheck.geometry.families import PartialFlags
+from conjcheck.oracle import ENGINES, witnesses
+from conjcheck.oracle.localisation import _inverses, _primes, _vandermonde, localisation
+
+
+def word(X, *letters):
+    return X.schubert(word=letters)
+
+
+def products(X, pairs):
+    """Products by localisation alone, as text."""
+    return [str(product(word(X, *u), word(X, *v), engine="localisation")) for u, v in pairs]
+
+
+@pytest.mark.parametrize("X", list(PartialFlags().up_to(4)), ids=str)
+def test_agrees_with_the_recursion_up_to_n_4(X):
+    """On every flag variety inside C^4 the two engines give the same products: all of them, on Fl(4) forty at random."""
+    pairs = list(rows(X))
+    for row in pairs if len(pairs) < 200 else random.Random(4).sample(pairs, 40):
+        assert product(row.u, row.v, engine="localisation") == product(row.u, row.v, engine="recursion")
+
+
+@pytest.mark.parametrize(("X", "count"), [(Gr(2, 6), 40), (Gr(3, 7), 20), (Fl(1, 4, n=5), 15), (Fl(2, 4, n=6), 2)], ids=str)
+def test_agrees_with_the_recursion_further_out(X, count):
+    """So they do on random products of larger spaces."""
+    chooser = random.Random(str(X))
+    for _ in range(count):
+        u, v = chooser.choices(X.classes, k=2)
+        assert product(u, v, engine="localisation") == product(u, v, engine="recursion")
+
+
+def test_agrees_with_the_closed_formula():
+    """On Gr(5,10), where there is no recursion, it agrees with the formula of Bertram, Vafa and Intriligator."""
+    chooser = random.Random(10)
+    for _ in range(3):
+        u, v = chooser.choices(Gr(5, 10).classes, k=2)
+        assert product(u, v, engine="localisation") == product(u, v, engine="vafa-intriligator")
+
+
+def test_g2():
+    """G2/B, alpha_1 short (computed by two independent programs, no published source)."""
+    X = FlagVariety("G2/B")
+    pairs = [((1,), (1,)), ((2,), (2,)), ((2,), (1, 2, 1)), ((1,), (2, 1, 2, 1, 2)), ((2,), (2, 1, 2, 1, 2))]
+    assert products(X, pairs) == [
+        "sigma<2.1> + q^(1,0) sigma<>",
+        "3 sigma<1.2> + q^(0,1) sigma<>",
+        "sigma<1.2.1.2> + 2 sigma<2.1.2.1> + q^(1,1) sigma<>",
+        "sigma<1.2.1.2.1.2> + q^(1,2) sigma<>",
+        "q^(0,1) sigma<2.1.2.1> + 2 q^(1,2) sigma<>",
+    ]
+
+
+def test_sp4():
+    """Sp4/B, alpha_1 short (computed by two independent programs, no published source)."""
+    X = FlagVariety("C2/B")
+    point = X.point.word
+    pairs = [((1,), (1,)), ((2,), (2,)), ((2, 1), (2, 1)), (point, point)]
+    assert products(X, pairs) == [
+        "sigma<2.1> + q^(1,0) sigma<>",
+        "2 sigma<1.2> + q^(0,1) sigma<>",
+        "2 q^(1,0) sigma<1.2> + q^(1,1) sigma<>",
+        "q^(1,2) sigma<2.1> + q^(2,2) sigma<>",
+    ]
+
+
+def test_e6():
+    """The relations of E6/P1, 3 h s^2 - 6 h^5 s + 2 h^9 = 0 and s^3 - 12 h^8 s + 5 h^12 = q (from memory).
+
+    Chaput, Manivel, Perrin, Quantum cohomology of minuscule homogeneous spaces, Transform. Groups 13 (2008); s = sigma_{2431}.
+    """
+    X = FlagVariety("E6/P1")
+    h, s = X.classes[1], word(X, 2, 4, 3, 1)
+
+    def times(terms, v):
+        total = {}
+        for (w, (d,)), n in terms.items():
+            for (x, (e,)), m in product(w, v, engine="localisation").items():
+                total[x, (d + e,)] = total.get((x, (d + e,)), 0) + n * m
+        return total
+
+    def power(h_power, s_power):
+        terms = {(X.identity, (0,)): 1}
+        for factor in [h] * h_power + [s] * s_power:
+            terms = times(terms, factor)
+        return terms
+
+    def combination(*parts):
+        total = {}
+        for c, terms in parts:
+            for key, n in terms.items():
+                total[key] = total.get(key, 0) + c * n
+        return {key: n for key, n in total.items() if n}
+
+    assert combination((3, power(1, 2)), (-6, power(5, 1)), (2, power(9, 0))) == {}
+    assert combination((1, power(0, 3)), (-12, power(8, 1)), (5, power(12, 0))) == {(X.identity, (1,)): 1}
+
+
+@pytest.mark.parametrize(("name", "degree"), [("E6/P1", 78), ("E7/P7", 13110), ("D5/P5", 12), ("B3/P3", 2), ("C3/P3", 16), ("D4/P1", 2)])
+def test_degrees_of_minuscule_embeddings(name, degree):
+    """Multiplying by the divisor up to the top gives the degree (standard values, from memory)."""
+    X = FlagVariety(name)
+    engine, h = localisation(X), X.classes[1]
+    total = {X.identity: 1}
+    for _ in range(X.dim):
+        after = {}
+        for w, n in total.items():
+            for (x, d), m in engine.row(h, w).items():
+                if not any(d):
+                    after[x] = after.get(x, 0) + n * m
+        total = after
+    assert total == {X.point: degree}
+
+
+def test_laws_on_e8():
+    """On E8/P8 products commute, are S3-symmetric, and the unit is the unit."""
+    X = FlagVariety("E8/P8")
+    u, v = X.classes[60], X.classes[77]
+    terms = product(u, v)
+    assert product(v, u) == terms
+    assert product(X.identity, u) == {(u, (0,)): 1}
+    for (w, d), n in list(terms.items())[:3]:
+        assert product(u, w.dual)[v.dual, d] == n
+
+
+def test_it_is_a_witness():
+    """The value of a counterexample is confirmed by localisation, which has nothing in common with the recursion."""
+    found = dict(witnesses(Case.parse("Fl(5): [21543] * [21543] -> [51234], q^(0,0,1,1)")))
+    assert found["engine localisation"] == 2
+    assert set(found.values()) == {2}
+
+
+def test_bounds_hold_and_are_not_idle():
+    """Every constant of Gr(3,6) is at most the bound that its residue is held against."""
+    X = Gr(3, 6)
+    engine = localisation(X)
+    for row in rows(X):
+        assert max(product(row.u, row.v).values()) <= engine.bound(row.u.index, row.v.index)
+
+
+def test_several_primes_when_the_bound_asks_for_them(monkeypatch):
+    """With a bound beyond one prime the residues modulo several primes are put together, to the same constants."""
+    X = Gr(2, 4)
+    engine = localisation(X)
+    monkeypatch.setattr(engine, "bound", lambda u, v: 2**70)
+    for row in rows(X):
+        assert engine.row(row.u, row.v) == product(row.u, row.v)
+
+
+def test_out_of_reach():
+    """Too many classes, or too many powers of too many q's, are refused with the reason."""
+    assert ENGINES["localisation"].refuses(FlagVariety("F4/B")) == "F4/B has 1,152 classes, localisation stops at 1,000"
+    X = Fl(6)
+    with pytest.raises(OutOfReach, match="modular multiplications"):
+        product(X.point, X.point, engine="localisation")
+
+
+def test_arithmetic_modulo_a_prime():
+    """Inverses and the Vandermonde system are those of the field."""
+    (p, q) = _primes(2)
+    assert (p, q) == (2**31 - 1, 2147483629)
+    values = np.array([1, 2, 12345, p - 1], dtype=np.int64)
+    assert (values * _inverses(values, p) % p == 1).all()
+    nodes, solution = [3, 5, 11], [7, 0, p - 2]
+    sums = np.array([[sum(x * pow(node, k, p) for node, x in zip(nodes, solution, strict=True)) % p] for k in range(3)], dtype=np.int64)
+    assert _vandermonde(nodes, sums, p)[:, 0].tolist() == solution
