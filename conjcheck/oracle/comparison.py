@@ -13,12 +13,12 @@ from functools import lru_cache
 import numpy as np
 
 from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
-from conjcheck.geometry.flag_variety import MOST_CLASSES, Degree, Fl, FlagVariety, SchubertClass, orbit_of
-from conjcheck.geometry.weyl import reflected_by_word, weight_images
+from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass, orbit_of
+from conjcheck.geometry.weyl import number_of_cosets, reflected_by_word, weight_images
 from conjcheck.oracle.engine import Block, RowTerms, blocks_by_rows
 from conjcheck.oracle.recursion import CompleteFlagRing, Packed, complete_flag_ring
 
-__all__ = ["Comparison", "RecursionEngine", "comparison", "lift", "longest_word"]
+__all__ = ["MOST_CLASSES", "Comparison", "RecursionEngine", "comparison", "lift", "longest_word"]
 
 
 def lift(kind: CartanType, marked: tuple[int, ...], d: Degree) -> Degree:
@@ -59,12 +59,16 @@ def longest_word(kind: CartanType, nodes: tuple[int, ...]) -> tuple[int, ...]:
     return tuple(reversed(word))
 
 
+MOST_CLASSES = 41_000
+"""The largest G/B that the recursion works on: that of Fl(8)."""
+
+
 class Comparison:
-    """Products of a partial flag variety of type A, read off the products of the complete one."""
+    """Products on G/P, read off the products on G/B."""
 
     def __init__(self, X: FlagVariety) -> None:
         self.X = X
-        self.ring: CompleteFlagRing = complete_flag_ring(Fl(X.n))
+        self.ring: CompleteFlagRing = complete_flag_ring(FlagVariety(f"{X.kind}/B"))
         self.embedding = self._places(())
         self._readers: dict[int, tuple[Degree, dict[int, SchubertClass]] | None] = {}
 
@@ -122,11 +126,10 @@ class RecursionEngine:
     name = "recursion"
 
     def refuses(self, X: FlagVariety) -> str | None:
-        """Type A up to n = 8."""
-        if X.kind.letter != "A":
-            return f"{X} is not of type A"
-        if X.n > 8:
-            return f"{X} needs the {X.n}! classes of Fl({X.n}), enumeration stops at {MOST_CLASSES:,}"
+        """Where G/B has at most ``MOST_CLASSES`` classes: type A up to n = 8, the others up to rank 4, and B5, C5, D5."""
+        count = number_of_cosets(X.kind, tuple(range(1, X.rank + 1)))
+        if count > MOST_CLASSES:
+            return f"{X} needs the {count:,} classes of {X.kind}/B, the recursion stops at {MOST_CLASSES:,}"
         return None
 
     def row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:

@@ -1,15 +1,15 @@
 """Engine "recursion" on G/B: associativity and the quantum Chevalley formula, nothing else.
 
-In type A, with ``x_r = sigma_{s_r} - sigma_{s_{r-1}}``, ``r`` the last descent of ``w``, ``s`` the largest position with
-``w(s) < w(r)`` and ``z = w t_rs``, the class ``sigma_w`` is ``x_r * sigma_z`` minus the other Chevalley terms. So by associativity
+A relation ``den * sigma_w = sum of L * sigma_z - (other terms c q^d sigma_z')`` reaches w from shorter classes (see
+``relations``). So by associativity
 
-    sigma_w * y  =  x_r * (sigma_z * y)  -  sum of c q^d (sigma_z' * y)   over the other terms ``c q^d sigma_z'`` of ``x_r * sigma_z``.
+    den * sigma_w * y  =  sum of L * (sigma_z * y)  -  sum of c q^d (sigma_z' * y).
 
-This is the quantum form of the transition of Lascoux and Schutzenberger, Lett. Math. Phys. 10 (1985). All numbers are Python
-integers, all degrees are kept: there is no bound on the degree of q, guessed or other.
+All numbers are Python integers, the division by ``den`` is checked to leave no rest, and all degrees are kept: there is no bound on the
+degree of q, guessed or other.
 
-A product is first moved by Seidel elements (law 4) to classes that fix n; the transition stays among those. Both the
-reduced and the direct route are offered, so that one can witness for the other.
+A product is first moved by Seidel elements (law 4) to chosen representatives; in type A those that fix n, which the relations never leave.
+Both the reduced and the direct route are offered, so that one can witness for the other.
 """
 
 from collections.abc import Iterator
@@ -23,40 +23,45 @@ from conjcheck.geometry.weyl import Ints
 from conjcheck.oracle.chevalley import chevalley
 from conjcheck.oracle.engine import Block, RowTerms
 from conjcheck.oracle.guard import note_question
+from conjcheck.oracle.relations import Relation, relation
 
 __all__ = ["CompleteFlagRing", "complete_flag_ring"]
 
 Packed = dict[int, int]
 """Sum of terms ``c q^d sigma_w``, keyed by ``w.index + (packed d << shift)``."""
 
-_MOST_PRODUCTS = 150_000
+_MOST_PRODUCTS = 1_000_000
 
 
 class CompleteFlagRing:
-    """The ring QH*(Fl(n)) with its products on packed terms.
+    """The ring QH*(G/B) with its products on packed terms.
 
     Args:
-        X: a complete flag variety of type A.
+        X: a complete flag variety G/B.
     """
 
     def __init__(self, X: FlagVariety) -> None:
         self.X = X
         self.shift = len(X.classes).bit_length()
         self.bits = max(X.dim.bit_length(), 3)
-        self._moves: dict[tuple[int, int], list[tuple[int, int]]] = {}
-        self._relations: dict[int, tuple[int, int, list[tuple[int, int]]]] = {}
+        self._moves: dict[tuple[tuple[int, ...], int], list[tuple[int, int]]] = {}
+        self._relations: dict[int, tuple[Relation, Packed]] = {}
         self._sweeps: dict[int, dict[int, Packed]] = {}
-        self._most_sweeps = max(_MOST_PRODUCTS // (len(X.classes) // X.n), 4)
+        self._most_sweeps = max(_MOST_PRODUCTS // len(X.classes), 4)
         self._degrees: dict[int, Degree] = {}
         self._prepare_symmetry()
 
     def _prepare_symmetry(self) -> None:
-        """Seidel images and packed shifts; for each class its representative (which fixes n) and the element that leads back."""
+        """Seidel images and packed shifts; for each class its representative and the element that leads back."""
         X, group = self.X, seidel(self.X)
         self.group = group
         weights = np.array([1 << (self.bits * k) for k in range(len(X.marked))], dtype=np.int64)
         self.packed_shifts: Ints = (group.shifts @ weights) << self.shift
-        self.representatives = np.array([u.index for u in X.classes if u.permutation[-1] == X.n], dtype=np.int64)
+        if X.kind.letter == "A":
+            chosen = [u.index for u in X.classes if u.permutation[-1] == X.n]
+        else:
+            chosen = sorted(set(group.images.min(axis=0).tolist()))
+        self.representatives = np.array(chosen, dtype=np.int64)
         self.home = np.empty(len(X.classes), dtype=np.int64)
         self.element = np.empty(len(X.classes), dtype=np.int64)
         for g, images in enumerate(group.images):
@@ -76,31 +81,28 @@ class CompleteFlagRing:
             d = self._degrees[code] = tuple((code >> (self.bits * k)) & mask for k in range(len(self.X.marked)))
         return key & ((1 << self.shift) - 1), d
 
-    def _x(self, r: int, w: int) -> list[tuple[int, int]]:
-        """Terms of ``x_r * sigma_w`` as (key to add to w, sign)."""
-        found = self._moves.get((r, w))
+    def _steps(self, weight: tuple[int, ...], w: int) -> list[tuple[int, int]]:
+        """Terms of ``L * sigma_w``, L the divisor ``sum weight_i sigma_{s_i}``, as (key to add to w, coefficient)."""
+        found = self._moves.get((weight, w))
         if found is None:
-            found = []
-            for target, d, divisors in chevalley(self.X).terms(w):
-                sign = (divisors[r - 1] if r <= len(divisors) else 0) - (divisors[r - 2] if r > 1 else 0)
-                if sign:
-                    found.append((target - w + self.pack(d), sign))
-            self._moves[r, w] = found
+            found = self._moves[weight, w] = [
+                (target - w + self.pack(d), count)
+                for target, d, coroot in chevalley(self.X).terms(w)
+                if (count := sum(a * b for a, b in zip(weight, coroot, strict=True)))
+            ]
         return found
 
-    def _relation(self, w: int) -> tuple[int, int, list[tuple[int, int]]]:
-        """``(r, z, rest)`` with ``sigma_w = x_r * sigma_z - rest``; rest as (packed term, coefficient)."""
+    def _relation(self, w: int) -> tuple[Relation, dict[int, int]]:
+        """The relation of w and its other terms, as packed terms."""
         found = self._relations.get(w)
         if found is None:
-            line = self.X.classes[w].permutation
-            r = self.X.classes[w].descents[-1]
-            s = max(j for j in range(r, len(line)) if line[j] < line[r - 1])
-            swapped = list(line)
-            swapped[r - 1], swapped[s] = swapped[s], swapped[r - 1]
-            z = self.X.schubert(permutation=swapped).index
-            terms = [(z + key, sign) for key, sign in self._x(r, z)]
-            assert terms.count((w, 1)) == 1, "the transition must contain sigma_w once"
-            found = self._relations[w] = (r, z, [(key, sign) for key, sign in terms if key != w])
+            how = relation(self.X, w)
+            rest: Packed = {}
+            for weight, z in how.parts:
+                for step, count in self._steps(weight, z):
+                    rest[z + step] = rest.get(z + step, 0) + count
+            assert rest.pop(w) == how.den, "the relation must contain sigma_w as often as it says"
+            found = self._relations[w] = (how, {key: count for key, count in rest.items() if count})
         return found
 
     def _times(self, w: int, known: dict[int, Packed]) -> Packed:
@@ -112,20 +114,21 @@ class CompleteFlagRing:
             if w in known:
                 stack.pop()
                 continue
-            r, z, rest = self._relation(w)
-            missing = [t for t in (z, *(key & mask for key, _ in rest)) if t not in known]
+            how, rest = self._relation(w)
+            missing = [t for t in (*(z for _, z in how.parts), *(key & mask for key in rest)) if t not in known]
             if missing:
                 stack.extend(missing)
                 continue
             total: Packed = {}
-            for key, count in known[z].items():
-                for step, sign in self._x(r, key & mask):
-                    total[key + step] = total.get(key + step, 0) + sign * count
-            for key, sign in rest:
+            for weight, z in how.parts:
+                for key, count in known[z].items():
+                    for step, factor in self._steps(weight, key & mask):
+                        total[key + step] = total.get(key + step, 0) + factor * count
+            for key, factor in rest.items():
                 power = (key >> self.shift) << self.shift
                 for term, count in known[key & mask].items():
-                    total[term + power] = total.get(term + power, 0) - sign * count
-            known[w] = {key: count for key, count in total.items() if count}
+                    total[term + power] = total.get(term + power, 0) - factor * count
+            known[w] = _divided(total, how.den)
             stack.pop()
         return known[w]
 
@@ -216,6 +219,14 @@ class CompleteFlagRing:
                 for k, place in enumerate(places):
                     degrees[:, k] = (full >> place) & field
                 yield Block(X.classes[group.images[g, a]], partner_images, full & mask, degrees, all_counts)
+
+
+def _divided(total: Packed, den: int) -> Packed:
+    """Terms divided by an integer, zeros dropped."""
+    if den == 1:
+        return {key: count for key, count in total.items() if count}
+    assert all(count % den == 0 for count in total.values()), "structure constants are integers"
+    return {key: count // den for key, count in total.items() if count}
 
 
 @lru_cache(maxsize=8)

@@ -10,6 +10,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from conjcheck import Fl, Gr, product, table
+from conjcheck.oracle.comparison import RecursionEngine
 
 
 def divided_difference(polynomial, i):
@@ -103,8 +104,8 @@ def test_a_classical_two_on_fl_6():
     assert row == classical_product(u.permutation, u.permutation, [w.permutation for w in X.of_length(2 * u.length)])
 
 
-def by_permutations(u, v, cross_check=False):
-    return {(w.permutation, d): count for (w, d), count in product(u, v, cross_check=cross_check).items()}
+def by_permutations(row):
+    return {(w.permutation, d): count for (w, d), count in row.items()}
 
 
 @pytest.mark.parametrize("n", [2, 3, 4, 5])
@@ -114,16 +115,24 @@ def test_every_row_is_that_of_the_plain_script(n, plain):
     assert len(expected) == len(X.classes) ** 2
     for u in X.classes:
         for v in X.classes:
-            assert by_permutations(u, v) == expected[u.permutation, v.permutation]
+            assert by_permutations(product(u, v)) == expected[u.permutation, v.permutation]
 
 
 @pytest.mark.parametrize("n", [3, 4])
 def test_the_route_without_symmetries_is_that_of_the_plain_script(n, plain):
-    """``cross_check=True`` computes every row on the direct route too; all three agree."""
-    X, expected = Fl(n), plain(n)
+    """The second route of the recursion agrees on every row as well."""
+    X, expected, engine = Fl(n), plain(n), RecursionEngine()
     for u in X.classes:
         for v in X.classes:
-            assert by_permutations(u, v, cross_check=True) == expected[u.permutation, v.permutation]
+            assert by_permutations(engine.direct_row(u, v)) == expected[u.permutation, v.permutation]
+
+
+def test_localisation_is_that_of_the_plain_script(plain):
+    """The equivariant engine on every row of ``Fl(3)``."""
+    X, expected = Fl(3), plain(3)
+    for u in X.classes:
+        for v in X.classes:
+            assert by_permutations(product(u, v, engine="localisation")) == expected[u.permutation, v.permutation]
 
 
 def table_matches(X, expected):

@@ -105,7 +105,9 @@ def test_e6():
     assert combination((1, power(0, 3)), (-12, power(8, 1)), (5, power(12, 0))) == {(X.identity, (1,)): 1}
 
 
-@pytest.mark.parametrize(("name", "degree"), [("E6/P1", 78), ("E7/P7", 13110), ("D5/P5", 12), ("B3/P3", 2), ("C3/P3", 16), ("D4/P1", 2)])
+@pytest.mark.parametrize(
+    ("name", "degree"), [("E6/P1", 78), ("E7/P7", 13110), ("D5/P5", 12), ("B3/P3", 2), ("C3/P3", 16), ("D4/P1", 2)]
+)
 def test_degrees_of_minuscule_embeddings(name, degree):
     """Multiplying by the divisor up to the top gives the degree (standard values, from memory)."""
     X = FlagVariety(name)
@@ -171,5 +173,7 @@ def test_arithmetic_modulo_a_prime():
     values = np.array([1, 2, 12345, p - 1], dtype=np.int64)
     assert (values * _inverses(values, p) % p == 1).all()
     nodes, solution = [3, 5, 11], [7, 0, p - 2]
-    sums = np.array([[sum(x * pow(node, k, p) for node, x in zip(nodes, solution, strict=True)) % p] for k in range(3)], dtype=np.int64)
+    sums = np.array(
+        [[sum(x * pow(node, k, p) for node, x in zip(nodes, solution, strict=True)) % p] for k in range(3)], dtype=np.int64
+    )
     assert _vandermonde(nodes, sums, p)[:, 0].tolist() == solution

@@ -46,16 +46,16 @@ def test_stopped_inside_the_first_space():
 
 def test_premise_and_gaps():
     """Numbers inside a premise say so, and spaces in between that are out of reach are named."""
-    table = {X: truth(X) for X in (Gr(1, 2), Gr(1, 4))}
+    table = {X: truth(X) for X in (Gr(1, 2), Gr(1, 8))}
 
-    @candidate(on=Varieties("Gr(1,2)", "B2/B", "Gr(1,4)"), premise=lambda X, u, v: u is X.identity)
+    @candidate(on=Varieties("Gr(1,2)", "C6/B", "Gr(1,8)"), premise=lambda X, u, v: u is X.identity)
     def rule(X, u, v):
         return table[X][u, v]
 
     text = survey_scope(surveyed(rule), rule)
     assert text == (
-        "all 2 spaces from Gr(1,2) to Gr(1,4); 6 rows, 6 cases inside the premise, 6 of them nonzero; "
-        "1 spaces in between are out of reach, the first B2/B"
+        "all 2 spaces from Gr(1,2) to Gr(1,8); 10 rows, 10 cases inside the premise, 10 of them nonzero; "
+        "1 spaces in between are out of reach, the first C6/B"
     )
 
 
