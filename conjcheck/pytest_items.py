@@ -26,7 +26,7 @@ from conjcheck.report.text import text_report
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.limits import CallInterrupted, CallLimit
 from conjcheck.testing.outcome import Outcome
-from conjcheck.testing.probe import Check, ProbeCount, gravest, probe_test
+from conjcheck.testing.probe import Check, ProbeCount, TimeIsUp, gravest, probe_test
 
 __all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
 
@@ -320,8 +320,8 @@ class PartItem(pytest.Function):
         try:
             if draws.spaces:
                 super().runtest()
-        except Unsatisfiable:
-            pass  # no row inside the premise was met
+        except (TimeIsUp, Unsatisfiable):
+            pass  # the count says how far it got
         except BaseException as error:
             found = gravest(error)
             if found is None:

@@ -89,6 +89,23 @@ class Comparer:
         finally:
             self.limit.started = 0.0
 
+    def premise_trouble(self, row: Row) -> Finding | None:
+        """The finding if a premise on rows does not answer."""
+        premise = self.conjecture.premise
+        if premise is None or not self.conjecture.premise_by_rows:
+            return None
+        try:
+            with watched(Watch()):
+                self.limit.started = perf_counter()
+                premise(row.X, row.u, row.v)
+        except KeyboardInterrupt:
+            raise
+        except BaseException as error:
+            return self._settle(self._trouble(row, error))
+        finally:
+            self.limit.started = 0.0
+        return None
+
     def admits(self, case: Case) -> bool:
         """Whether a premise on cases, if that is what there is, holds; raises what it raises."""
         conjecture = self.conjecture
@@ -126,7 +143,7 @@ class Comparer:
                 return found, result.complete
             found.append(result.finding)
             if not isinstance(result.finding.where, Case) or result.finding.status != "refuted":
-                return found, True
+                return found, not isinstance(result.finding.where, Case)
             skipped.add((result.finding.where.w, result.finding.where.d))
 
     def case(self, case: Case) -> Finding | None:
@@ -323,7 +340,7 @@ class Comparer:
     def _portrait(self, finding: Finding) -> str:
         if finding.status == "refuted":
             return "False" if self._is_claim else shown_number(finding.rule or 0)
-        return finding.detail
+        return _kind_of_trouble(finding)
 
     def _answer_again(self, place: Case | Row) -> str:
         rule, row = self.conjecture.rule, place.row if isinstance(place, Case) else place
@@ -348,9 +365,14 @@ class Comparer:
             except KeyboardInterrupt:
                 raise
             except BaseException as error:
-                return self._trouble(place, error).detail
+                return _kind_of_trouble(self._trouble(place, error))
             finally:
                 self.limit.started = 0.0
+
+
+def _kind_of_trouble(finding: Finding) -> str:
+    """What must be the same when a rule fails twice: of a crash only its type, since messages may hold addresses and counters."""
+    return finding.detail.split(":")[0] if finding.status == "crashed" else finding.detail
 
 
 def _sample(row: Row, truth: RowTerms, most: int, classical: bool) -> list[Key]:

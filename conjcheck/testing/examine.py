@@ -145,6 +145,10 @@ class Examination:
             else:
                 result = self.comparer.row(row)
                 finding, cases = result.finding, result.cases
+        if finding is None and not cases:
+            raise NotationError(
+                f"expected a row with cases inside the premise of {conjecture.name}, got {where}; nothing was compared"
+            )
         if finding is None:
             scope = f"the one case {where}" if isinstance(where, Case) else f"the one row {where}, {cases:,} cases"
             return Outcome(conjecture, "case", "agrees", scope, str(where), 1, cases, seconds=perf_counter() - started)
@@ -161,6 +165,8 @@ class Examination:
             with self.comparer.limit:
                 if not self.comparer.inside(row):
                     return
+                if finding := self.comparer.premise_trouble(row):
+                    count.fail(finding)
                 try:
                     broken = next(broken_laws(self.comparer, row, choice), None)
                     suspects, law = (sorted(set(broken.rows)), f"{broken.law}: {broken.detail}") if broken else ([], "")

@@ -4,6 +4,7 @@ import sys
 from dataclasses import dataclass
 from importlib.metadata import PackageNotFoundError, version
 from platform import python_version
+from textwrap import shorten
 from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
@@ -62,7 +63,7 @@ class Outcome:
         if self.finding is None:
             return f"{head} as far as checked: {self.scope}"
         if self.status != "refuted":
-            return " ".join(f"{head} at {self.finding.where}: {self.finding.detail}".split())
+            return f"{head} at {self.finding.where}: {shorten(self.finding.detail, 300, placeholder=' ...')}"
         if self.finding.rule is None:
             values = "the claim is false" + (f", the constant is {self.finding.oracle}" if self.finding.oracle is not None else "")
         else:

@@ -18,7 +18,7 @@ from conjcheck.testing.compare import Comparer
 from conjcheck.testing.finding import STATUSES, Finding, Found, raise_finding
 from conjcheck.testing.survey import in_reach
 
-__all__ = ["Check", "ProbeCount", "gravest", "probe_levels", "probe_test", "run_probe"]
+__all__ = ["Check", "ProbeCount", "TimeIsUp", "gravest", "probe_levels", "probe_test", "run_probe"]
 
 Check = Callable[[Row, int], None]
 """A check of one drawn row; the integer is free for the check to use. Raises ``Found``."""
@@ -27,6 +27,10 @@ _FEWEST_CLASSES = 20
 _MOST_LEVELS = 3
 _MOST_SPACES = 200
 _LAST_RANK = 11
+
+
+class TimeIsUp(BaseException):
+    """Ends a search for rows inside the premise; like Ctrl-C it goes through Hypothesis, and is no failure."""
 
 
 @dataclass
@@ -135,7 +139,7 @@ def probe_test(
 
     def inside(X: FlagVariety, u: SchubertClass, v: SchubertClass) -> bool:
         if time_is_up():
-            return True
+            raise TimeIsUp
         with comparer.limit:
             return comparer.inside(Row(X, u, v))
 
@@ -168,8 +172,8 @@ def run_probe(
     test = probe_test(check, lambda: spaces, comparer, count.time_is_up, fixed_seed=seed, draws=draws, database=None)
     try:
         test()
-    except Unsatisfiable:
-        return  # no row inside the premise was found: the count says so
+    except (TimeIsUp, Unsatisfiable):
+        return  # the count says how far it got
     except BaseExceptionGroup as group:
         raise gravest(group) or group from None
 

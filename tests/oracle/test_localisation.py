@@ -5,7 +5,7 @@ import random
 import numpy as np
 import pytest
 
-from conjcheck import Case, FlagVariety, Fl, Gr, product
+from conjcheck import Case, Fl, FlagVariety, Gr, product
 from conjcheck.errors import OutOfReach
 from conjcheck.geometry.case import rows
 from conjcheck.geometry.families import PartialFlags
