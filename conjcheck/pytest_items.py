@@ -70,7 +70,7 @@ class PluginFile(pytest.Module):
                 frames = [f for f in traceback.extract_tb(error.__traceback__) if f.filename == str(self.path)]
                 lines = traceback.format_list(frames) + traceback.format_exception_only(error)
                 if type(error).__name__ == "ImportPathMismatchError":
-                    lines.append("two plug-ins have this file name: rename one, or run pytest with --import-mode=importlib")
+                    lines.append("another module has the name of this file: rename it, or run pytest with --import-mode=importlib")
                 return "".join(lines).rstrip()
         self.asked_oracle = watch.asked
         return ""

@@ -162,17 +162,26 @@ def read_degree(X: FlagVariety, d: Iterable[int]) -> Degree:
 
 
 def parse_class(X: FlagVariety, text: str) -> SchubertClass:
-    """The class of X written as ``str(u)``: ``(2,1)``, ``[2143]``, ``[10.2.1...]`` or ``<1.3.2>``; either of them in type A."""
-    if not isinstance(text, str) or not (found := _CLASS.fullmatch(body := re.sub(r"\s", "", text))):
-        raise NotationError(f"expected a class such as (2,1), [2143] or <1.3.2>, got {text!r}")
-    if found["permutation"] is not None:
-        letters = found["permutation"]
-        return X.schubert(permutation=tuple(map(int, letters.split(".") if "." in letters else letters)))
-    numbers = tuple(int(x) for x in re.findall(r"\d+", body))
-    return X.schubert(word=numbers) if found["word"] is not None else X.schubert(partition=numbers)
+    """The class of X written as ``str(u)``: ``(2,1)``, ``[2143]``, ``[10.2.1...]``, ``[1.-3.2]`` or ``<1.3.2>``; any that X has."""
+    letter = X.kind.letter
+    if not isinstance(text, str) or not (found := _CLASS.fullmatch(re.sub(r"\s", "", text))):
+        samples = "(2,1), [2143] or <1.3.2>" if letter == "A" else "(3,1), [1.-3.2] or <1.3.2>" if letter in "BCD" else "<1.3.2>"
+        raise NotationError(f"expected a class such as {samples}, got {text!r}")
+    body = found["line"]
+    if body is not None:
+        dotted = "." in body or letter in "BCD"
+        entries = tuple(map(int, body.split(".") if dotted else body))
+        return X.schubert(permutation=entries) if letter == "A" else X.schubert(signed=entries)
+    if found["word"] is not None:
+        return X.schubert(word=_entries(found["word"], "."))
+    return X.schubert(partition=_entries(found["partition"], ","))
 
 
-_CLASS = re.compile(r"\((?P<partition>(\d+(,\d+)*)?)\)|\[(?P<permutation>\d+(\.\d+)*)\]|<(?P<word>(\d+(\.\d+)*)?)>")
+_CLASS = re.compile(r"\((?P<partition>(\d+(,\d+)*)?)\)|\[(?P<line>\d+|-?\d+(\.-?\d+)+)\]|<(?P<word>(\d+(\.\d+)*)?)>")
+
+
+def _entries(text: str, separator: str) -> tuple[int, ...]:
+    return tuple(map(int, text.split(separator))) if text else ()
 
 
 @lru_cache(maxsize=4096)

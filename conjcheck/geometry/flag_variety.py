@@ -4,20 +4,20 @@
 Because a variety and its classes exist once, ``==`` is identity: fast as a dictionary key, and true across pickling.
 """
 
-import re
 from collections.abc import Iterable
-from functools import cache, lru_cache
+from functools import cache
 from itertools import groupby
 from typing import Any
 
 import numpy as np
 
 from conjcheck.errors import NotationError, OutOfReach
-from conjcheck.geometry import notation
+from conjcheck.geometry import names, notation
 from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
-from conjcheck.geometry.weyl import Orbit, dual_indices, number_of_cosets, one_lines, orbit, weight_images
+from conjcheck.geometry.signed import has_strict_partitions, read_signed, signed_from_partition, strict_partition_of, text_of_signed
+from conjcheck.geometry.weyl import Orbit, dual_indices, number_of_cosets, one_lines, orbit, signed_lines, weight_images
 
-__all__ = ["MOST_CLASSES", "Degree", "Fl", "FlagVariety", "Gr", "SchubertClass"]
+__all__ = ["IG", "LG", "MOST_CLASSES", "OG", "Degree", "Fl", "FlagVariety", "Gr", "SchubertClass"]
 
 Degree = tuple[int, ...]
 
@@ -26,12 +26,13 @@ MOST_CLASSES = 50_000
 
 
 class FlagVariety:
-    """A flag variety, by name: ``FlagVariety("Fl(1,3;4)")``, ``"Gr(2,4)"``, ``"Fl(4)"``, ``"P^3"``, ``"A3/P1,3"``, ``"A3/B"``.
+    """A flag variety, by name: ``FlagVariety("Fl(1,3;4)")``, ``"Gr(2,4)"``, ``"Fl(4)"``, ``"P^3"``, ``"A3/P1,3"``, ``"A3/B"``,
+    ``"LG(3,6)"``, ``"IG(2,6)"``, ``"OG(3,7)"``, ``"Q^5"``, ``"E6/P1"``; all names are in ``geometry.names``.
 
     Attributes:
         kind: the Cartan type; ``rank`` its rank.
         marked: the marked nodes ``I`` (Bourbaki, 1-based, rising): the simple roots that are *not* in the Levi of P.
-        n, steps: in type A, ``Fl(steps; n)``; ``n`` is ``rank + 1`` and ``steps`` is ``marked``.
+        n, steps: in type A, ``Fl(steps; n)``; in every type ``n`` is ``rank + 1`` and ``steps`` is ``marked``.
         dim: the dimension, which is the length of the longest class.
         q_degrees: ``deg q_i`` for i in ``marked``, in the unit in which ``sigma_u`` has degree ``u.length``.
         name: the name in the usual notation; ``FlagVariety(X.name) is X``.
@@ -60,7 +61,7 @@ class FlagVariety:
 
     def __new__(cls, name: str) -> "FlagVariety":
         """Look the name up; see the class."""
-        return _of(*_parse(name))
+        return _of(*names.parse_name(name))
 
     def __repr__(self) -> str:
         return f"FlagVariety({self.name!r})"
@@ -88,13 +89,30 @@ class FlagVariety:
         return self.kind.letter == "A" and len(self.marked) == 1
 
     @property
+    def is_maximal_isotropic(self) -> bool:
+        """Whether this is ``LG(n,2n)``, ``OG(n,2n+1)`` or ``OG(n,2n)``, whose classes have strict partitions."""
+        return has_strict_partitions(self.kind, self.marked)
+
+    @property
+    def notations(self) -> tuple[str, ...]:
+        """The notations that ``schubert`` reads here, and that its classes have as attributes.
+
+        >>> FlagVariety("LG(3,6)").notations, FlagVariety("E6/P1").notations
+        (('signed', 'partition', 'word'), ('word',))
+        """
+        has_partition = ("partition",) if self.is_grassmannian or self.is_maximal_isotropic else ()
+        if self.kind.letter == "A":
+            return ("permutation", *has_partition, "string", "word")
+        return ("signed", *has_partition, "word") if self.kind.letter in "BCD" else ("word",)
+
+    @property
     def number_of_classes(self) -> int:
         """The number of Schubert classes, without enumerating them."""
         return number_of_cosets(self.kind, self.marked)
 
     @property
     def classes(self) -> tuple["SchubertClass", ...]:
-        """All Schubert classes by length, then lexicographically (type A: one-line notation)."""
+        """All Schubert classes by length, then lexicographically in one-line notation (B, C, D: signed; exceptional types: in words)."""
         return _classes(self)
 
     @property
@@ -118,6 +136,7 @@ class FlagVariety:
         partition: Iterable[int] | None = None,
         string: str | None = None,
         word: Iterable[int] | None = None,
+        signed: Iterable[int] | None = None,
     ) -> "SchubertClass":
         """The class given in exactly one notation; which one is never guessed from the value.
 
@@ -126,20 +145,28 @@ class FlagVariety:
 
         >>> Gr(2, 4).schubert(partition=(2, 1)).permutation
         (2, 4, 1, 3)
+        >>> LG(3, 6).schubert(partition=(3, 1)).signed
+        (2, -3, -1)
         """
-        given = {"permutation": permutation, "partition": partition, "string": string, "word": word}
+        given = {"permutation": permutation, "partition": partition, "string": string, "word": word, "signed": signed}
         given = {key: value for key, value in given.items() if value is not None}
+        ways = [f"{way}=" for way in self.notations]
         if len(given) != 1:
-            raise NotationError(f"expected one of permutation=, partition=, string=, word=, got {sorted(given) or 'none'}")
-        if self.kind.letter != "A":
-            if word is None:
-                raise NotationError(f"expected word= for a class of {self.name}: only type A has the other notations")
+            one_of = "one of " if len(ways) > 1 else ""
+            raise NotationError(f"expected {one_of}{', '.join(ways)}, got {sorted(given) or 'none'}")
+        (key,) = given
+        if key not in self.notations:
+            listed = " or ".join(filter(None, (", ".join(ways[:-1]), ways[-1])))
+            raise NotationError(f"expected {listed} on {self.name}: {_who_has(key, self)} {key}=")
+        if word is not None and self.kind.letter != "A":
             return self._from_word(notation.read_integers("word", word))
+        if signed is not None:
+            return self.classes[_signed_index(self)[read_signed(signed, self.kind, self.marked)]]
+        if partition is not None and self.is_maximal_isotropic:
+            return self.classes[_signed_index(self)[signed_from_partition(partition, self.kind)]]
         if permutation is not None:
             w = notation.read_permutation(permutation, self.marked, self.n)
         elif partition is not None:
-            if not self.is_grassmannian:
-                raise NotationError(f"expected permutation=, string= or word= on {self.name}: only a Grassmannian has partition=")
             w = notation.permutation_from_partition(partition, self.marked[0], self.n)
         elif string is not None:
             w = notation.permutation_from_string(string, self.marked, self.n)
@@ -183,11 +210,14 @@ class SchubertClass:
         return f"sigma{self}"
 
     def __str__(self) -> str:
-        """``(2,1)`` on a Grassmannian, ``[2143]`` on other varieties of type A, ``<1.3.2>`` (a word) elsewhere."""
-        if self.variety.is_grassmannian:
+        """``(2,1)`` where there are partitions, else ``[2143]`` in type A, ``[1.-3.2]`` in B, C, D, and ``<1.3.2>`` (a word) in E, F, G."""
+        X = self.variety
+        if X.is_grassmannian or X.is_maximal_isotropic:
             return f"({','.join(map(str, self.partition))})"
-        if self.variety.kind.letter == "A":
+        if X.kind.letter == "A":
             return f"[{notation.text_of_permutation(self.permutation)}]"
+        if X.kind.letter in "BCD":
+            return f"[{text_of_signed(self.signed)}]"
         return f"<{'.'.join(map(str, self.word))}>"
 
     def __reduce__(self) -> tuple[Any, tuple[FlagVariety, int]]:
@@ -202,8 +232,13 @@ class SchubertClass:
         return _permutations(self.variety)[self.index]
 
     @property
+    def signed(self) -> tuple[int, ...]:
+        """The signed permutation, ``-j`` for a barred j (types B, C, D; conventions: ``geometry.signed``)."""
+        return _signed(self.variety)[self.index]
+
+    @property
     def partition(self) -> tuple[int, ...]:
-        """The partition in the box of k rows and n - k columns, without trailing zeros (Grassmannians)."""
+        """``Gr(k,n)``: the partition in the box of k rows and n - k columns, without trailing zeros. LG and maximal OG: the strict one."""
         return _partitions(self.variety)[self.index]
 
     @property
@@ -238,7 +273,7 @@ def Fl(*steps: int, n: int | None = None) -> FlagVariety:
             raise NotationError(f"expected n=, as in Fl(1, 3, n=4), got Fl{steps}; Fl(4) alone means complete flags")
         (n,) = notation.read_integers("n", steps)
         steps = tuple(range(1, n))
-    return _of(*_type_a(notation.read_integers("steps", steps), *notation.read_integers("n", (n,))))
+    return _of(*names.type_a(notation.read_integers("steps", steps), *notation.read_integers("n", (n,))))
 
 
 def Gr(k: int, n: int) -> FlagVariety:
@@ -248,6 +283,35 @@ def Gr(k: int, n: int) -> FlagVariety:
     (4,)
     """
     return Fl(k, n=n)
+
+
+def LG(n: int, N: int) -> FlagVariety:
+    """``LG(n, 2n)``: Lagrangian subspaces of a symplectic C^(2n), n >= 2.
+
+    >>> LG(3, 6).q_degrees
+    (4,)
+    """
+    return _of(*names.lagrangian(*notation.read_integers("n, N", (n, N))))
+
+
+def IG(k: int, N: int) -> FlagVariety:
+    """``IG(k, 2n)``: isotropic k-planes in a symplectic C^(2n), n >= 2; ``IG(n, 2n)`` is ``LG(n, 2n)``.
+
+    >>> IG(2, 6).q_degrees
+    (5,)
+    """
+    return _of(*names.symplectic(*notation.read_integers("k, N", (k, N))))
+
+
+def OG(k: int, N: int) -> FlagVariety:
+    """``OG(k, N)``: isotropic k-planes in a quadratic C^N, N = 5, 7 or more; of ``OG(n, 2n)`` one of the two families.
+
+    ``OG(1, N)`` is the quadric ``Q^(N-2)``, and ``OG(n - 1, 2n)`` has two marked nodes.
+
+    >>> OG(3, 7).q_degrees, OG(1, 7), OG(3, 8)
+    ((6,), FlagVariety('Q^5'), FlagVariety('D4/P3,4'))
+    """
+    return _of(*names.orthogonal(*notation.read_integers("k, N", (k, N))))
 
 
 def orbit_of(X: FlagVariety) -> Orbit:
@@ -260,52 +324,6 @@ def orbit_of(X: FlagVariety) -> Orbit:
     if count > MOST_CLASSES:
         raise OutOfReach(f"expected a variety with at most {MOST_CLASSES:,} Schubert classes, got {X.name} with {count:,}")
     return orbit(X.kind, X.marked)
-
-
-def _type_a(steps: tuple[int, ...], n: int) -> tuple[CartanType, tuple[int, ...]]:
-    """Check the steps of ``Fl(steps; n)``."""
-    if n < 2:
-        raise NotationError(f"expected n of 2 or more, got n={n}")
-    if not steps:
-        raise NotationError(f"expected at least one step between 1 and {n - 1}, got none")
-    for before, step in zip((0, *steps), steps, strict=False):
-        if not before < step < n:
-            raise NotationError(
-                f"expected rising steps between 1 and {n - 1}, got step {step} in Fl({','.join(map(str, steps))};{n})"
-            )
-    return CartanType("A", n - 1), steps
-
-
-_NAMES = re.compile(
-    r"""Fl\((?P<complete>\d+)\) | Fl\((?P<steps>\d+(,\d+)*);(?P<n>\d+)\) | Gr\((?P<k>\d+),(?P<m>\d+)\) | P\^(?P<dim>\d+)
-    | (?P<letter>[A-G])(?P<rank>\d+)/(?P<parabolic>B|P\d+(,\d+)*)""",
-    re.VERBOSE,
-)
-
-
-@lru_cache(maxsize=4096)
-def _parse(name: str) -> tuple[CartanType, tuple[int, ...]]:
-    """The Cartan type and marked nodes of a name."""
-    found = _NAMES.fullmatch(name.replace(" ", "")) if isinstance(name, str) else None
-    if not found:
-        raise NotationError(f"expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3' or 'A3/P1,3', got {name!r}")
-    if found["complete"]:
-        n = int(found["complete"])
-        return _type_a(tuple(range(1, n)), n)
-    if found["steps"]:
-        return _type_a(tuple(map(int, found["steps"].split(","))), int(found["n"]))
-    if found["k"]:
-        return _type_a((int(found["k"]),), int(found["m"]))
-    if found["dim"]:
-        return _type_a((1,), int(found["dim"]) + 1)
-    kind = CartanType(found["letter"], int(found["rank"]))
-    if found["parabolic"] == "B":
-        return kind, tuple(range(1, kind.rank + 1))
-    marked = tuple(map(int, found["parabolic"][1:].split(",")))
-    for before, node in zip((0, *marked), marked, strict=False):
-        if not before < node <= kind.rank:
-            raise NotationError(f"expected rising nodes between 1 and {kind.rank}, got node {node} in {name!r}")
-    return kind, marked
 
 
 @cache
@@ -321,7 +339,7 @@ def _of(kind: CartanType, marked: tuple[int, ...]) -> FlagVariety:
     store(X, "steps", marked)
     store(X, "dim", dim)
     store(X, "q_degrees", _q_degrees(kind, marked))
-    store(X, "name", _name(kind, marked))
+    store(X, "name", names.name_of(kind, marked))
     store(X, "sort_key", (kind.rank, len(marked), dim, kind.letter, marked))
     return X
 
@@ -334,16 +352,11 @@ def _q_degrees(kind: CartanType, marked: tuple[int, ...]) -> tuple[int, ...]:
     return tuple(sum(a * matrix[j][i - 1] for j, a in enumerate(total)) for i in marked)
 
 
-def _name(kind: CartanType, marked: tuple[int, ...]) -> str:
-    """The usual name."""
-    n = kind.rank + 1
-    if kind.letter != "A":
-        return f"{kind}/B" if len(marked) == kind.rank else f"{kind}/P{','.join(map(str, marked))}"
-    if len(marked) == 1:
-        return f"Gr({marked[0]},{n})"
-    if len(marked) == kind.rank:
-        return f"Fl({n})"
-    return f"Fl({','.join(map(str, marked))};{n})"
+def _who_has(notation_asked: str, X: FlagVariety) -> str:
+    """Who has a notation that X has not."""
+    if notation_asked == "partition":
+        return "only a Grassmannian has" if X.kind.letter == "A" else "outside type A only LG(n,2n), OG(n,2n+1) and OG(n,2n) have"
+    return "only types B, C and D have" if notation_asked == "signed" else "only type A has"
 
 
 @cache
@@ -372,7 +385,7 @@ def _levels(X: FlagVariety) -> dict[int, tuple[SchubertClass, ...]]:
 @cache
 def _permutations(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
     if X.kind.letter != "A":
-        raise NotationError(f"expected a variety of type A, got {X.name}: its classes have no permutation; use .word")
+        raise NotationError(f"expected a variety of type A, got {X.name}: its classes have no permutation; use .{X.notations[0]}")
     return tuple(map(tuple, one_lines(orbit_of(X).weights).tolist()))
 
 
@@ -382,9 +395,25 @@ def _permutation_index(X: FlagVariety) -> dict[tuple[int, ...], int]:
 
 
 @cache
+def _signed(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
+    if X.kind.letter not in "BCD":
+        raise NotationError(
+            f"expected a variety of type B, C or D, got {X.name}: its classes have no signed permutation; use .{X.notations[0]}"
+        )
+    return tuple(map(tuple, signed_lines(X.kind, orbit_of(X).weights).tolist()))
+
+
+@cache
+def _signed_index(X: FlagVariety) -> dict[tuple[int, ...], int]:
+    return {w: index for index, w in enumerate(_signed(X))}
+
+
+@cache
 def _partitions(X: FlagVariety) -> tuple[tuple[int, ...], ...]:
+    if X.is_maximal_isotropic:
+        return tuple(strict_partition_of(w, X.kind.letter) for w in _signed(X))
     if not X.is_grassmannian:
-        raise NotationError(f"expected a Grassmannian, got {X.name}: its classes have no partition; use .permutation")
+        raise NotationError(f"expected a Grassmannian, got {X.name}: its classes have no partition; use .{X.notations[0]}")
     return tuple(notation.partition_of(w, X.marked[0]) for w in _permutations(X))
 
 

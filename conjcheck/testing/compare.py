@@ -1,33 +1,23 @@
 """The one way to compare: a rule against the oracle, a row at a time, zeros included."""
 
 import random
-import reprlib
-from collections.abc import Container, Iterable, Mapping
+from collections.abc import Container, Iterable
 from contextlib import nullcontext
 from dataclasses import dataclass
 from time import perf_counter
 from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.errors import NotationError
-from conjcheck.geometry.case import Case, Row, count_below, count_cases, degrees_of_total, outcomes, place_in_row, read_degree
-from conjcheck.geometry.flag_variety import Degree, SchubertClass
+from conjcheck.geometry.case import Case, Row, count_below, count_cases, degrees_of_total, outcomes, place_in_row
+from conjcheck.geometry.flag_variety import Degree
 from conjcheck.oracle import row_terms
 from conjcheck.oracle.engine import RowTerms
 from conjcheck.oracle.guard import Watch, watched
 from conjcheck.testing.answer import WrongAnswer, count_of, shown_number, shown_objects, truth_of
-from conjcheck.testing.asker import Asker
+from conjcheck.testing.calls import Key, RuleCalls
 from conjcheck.testing.finding import Finding
-from conjcheck.testing.limits import CallInterrupted, CallLimit
-from conjcheck.testing.trouble import trouble
 
 __all__ = ["Comparer", "Key", "RowResult"]
-
-Key = tuple[SchubertClass, Degree]
-
-_DOUBTS = 8
-_DOUBT_SECONDS = 0.5
-"""A wrong answer is asked for again up to eight times, but after half a second only once."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,7 +37,7 @@ class RowResult:
     complete: bool
 
 
-class Comparer:
+class Comparer(RuleCalls):
     """Compares one conjecture with the oracle.
 
     Args:
@@ -59,60 +49,9 @@ class Comparer:
     """
 
     def __init__(self, conjecture: Conjecture, *, call_limit: float = 10.0, cross_check: bool = False) -> None:
-        self.conjecture = conjecture
+        super().__init__(conjecture, call_limit=call_limit)
         self.cross_check = cross_check
-        self.limit = CallLimit(call_limit)
-        self.asker = Asker(conjecture.is_classical)
-        self._is_claim = conjecture.role == "claim"
-        self._premise_hangs = False
-        self._oracle: tuple[Asker, ...] = (self.asker,) if self._is_claim else ()
         self._progress: tuple[Key | None, int, int] = None, 0, 0
-
-    def inside(self, row: Row) -> bool:
-        """Whether the premise on rows holds (a premise on cases is asked case by case).
-
-        A premise that raises or hangs counts as holding: then ``Comparer.row`` meets that and reports it.
-        """
-        premise = self.conjecture.premise
-        if premise is None or not self.conjecture.premise_by_rows or self._premise_hangs:
-            return True
-        try:
-            self.limit.started = perf_counter()
-            return bool(premise(row.X, row.u, row.v))
-        except KeyboardInterrupt:
-            raise
-        except CallInterrupted:
-            self._premise_hangs = True
-            return True
-        except BaseException:
-            return True
-        finally:
-            self.limit.started = 0.0
-
-    def premise_trouble(self, row: Row) -> Finding | None:
-        """The finding if a premise on rows does not answer."""
-        premise = self.conjecture.premise
-        if premise is None or not self.conjecture.premise_by_rows:
-            return None
-        try:
-            with watched(Watch()):
-                self.limit.started = perf_counter()
-                premise(row.X, row.u, row.v)
-        except KeyboardInterrupt:
-            raise
-        except BaseException as error:
-            return self._settle(self._trouble(row, error))
-        finally:
-            self.limit.started = 0.0
-        return None
-
-    def admits(self, case: Case) -> bool:
-        """Whether a premise on cases, if that is what there is, holds; raises what it raises."""
-        conjecture = self.conjecture
-        if conjecture.premise is None or conjecture.premise_by_rows:
-            return True
-        tail = (case.w,) if conjecture.is_classical else (case.w, case.d)
-        return bool(conjecture.premise(case.X, case.u, case.v, *tail))
 
     def truth(self, row: Row) -> RowTerms:
         """The oracle's nonzero terms that the conjecture speaks about."""
@@ -150,45 +89,12 @@ class Comparer:
         """Compare one single case."""
         return self._compare(case.row, self.truth(case.row), only=(case.w, case.d)).finding
 
-    def values(self, row: Row, keys: Iterable[Key]) -> dict[Key, int]:
-        """The rule's nonzero values at those of some outcomes of a row that the premise admits; none for a claim.
-
-        A rule that answers by rows gives all its admitted values, also at other outcomes. Raises whatever the rule raises;
-        ``Comparer.row`` turns that into a finding.
-        """
-        if self._is_claim:
-            return {}
-        by_cases = not self.conjecture.premise_by_rows
-        with watched(Watch()):
-            try:
-                self.limit.started = perf_counter()
-                if self.conjecture.by_rows:
-                    whole = self._whole(self.conjecture.rule(row.X, row.u, row.v), row)
-                    return {key: n for key, n in whole.items() if self.admits(Case(row.X, row.u, row.v, *key))}
-                found = {}
-                for key in keys:
-                    self.limit.started = perf_counter()
-                    if by_cases and not self.admits(Case(row.X, row.u, row.v, *key)):
-                        continue
-                    if count := count_of(self.conjecture.rule(*self._arguments(row, *key))):
-                        found[key] = count
-                return found
-            finally:
-                self.limit.started = 0.0
-
-    # -- the comparison itself ---------------------------------------------------------------------------------------
-
-    def _arguments(self, row: Row, w: SchubertClass, d: Degree) -> tuple[Any, ...]:
-        """What the rule is called with at one case."""
-        tail = (w,) if self.conjecture.is_classical else (w, d)
-        return (row.X, row.u, row.v, *tail, *self._oracle)
-
     def _compare(self, row: Row, truth: RowTerms, **choices: Any) -> RowResult:
         """Compare under guard and limit; whatever ends a call becomes a finding."""
         watch = Watch()
         self._progress = None, 0, 0
         try:
-            with nullcontext() if self._is_claim else watched(watch):
+            with nullcontext() if self.is_claim else watched(watch):
                 result = self._walk(row, truth, **choices)
         except KeyboardInterrupt:
             raise
@@ -196,14 +102,14 @@ class Comparer:
             self.limit.started = 0.0
             key, cases, nonzero = self._progress
             place = Case(row.X, row.u, row.v, *key) if key else row
-            result = RowResult(cases, nonzero, self._settle(self._trouble(place, error)), False)
+            result = RowResult(cases, nonzero, self.settle(self.trouble(place, error)), False)
         finally:
             self.limit.started = 0.0
         if watch.asked:
             finding = Finding("not-independent", row, detail="the rule asked the oracle that is meant to judge it")
             return RowResult(result.cases, result.nonzero, finding, False)
         if result.finding:
-            return RowResult(result.cases, result.nonzero, self._settle(result.finding), result.complete)
+            return RowResult(result.cases, result.nonzero, self.settle(result.finding), result.complete)
         return result
 
     def _walk(
@@ -217,7 +123,7 @@ class Comparer:
         only: Key | None = None,
     ) -> RowResult:
         """The comparison itself: the rule's answers against the truth, outcome by outcome."""
-        conjecture, limit, claimed, oracle = self.conjecture, self.limit, self._is_claim, self._oracle
+        conjecture, limit, claimed, oracle = self.conjecture, self.limit, self.is_claim, self.oracle
         rule, classical = conjecture.rule, conjecture.is_classical
         X, u, v = row.X, row.u, row.v
         limit.started = perf_counter()
@@ -234,7 +140,7 @@ class Comparer:
                 holds = truth_of(answer)
                 finding = None if holds else Finding("refuted", row, detail="the claim is false for this product")
                 return RowResult(size * holds, len(truth) * holds, finding, True)
-            values = self._whole(answer, row)
+            values = self.whole(answer, row)
             if values == truth and premise is None:
                 return RowResult(size, len(truth), None, complete)
             if premise is None:
@@ -278,101 +184,21 @@ class Comparer:
                 nonzero += 1
         return RowResult(cases + agreeing, nonzero, None, complete)
 
-    def _whole(self, answer: Any, row: Row) -> RowTerms:
-        """A rule's answer for a whole row as ``{(w, d): count}``, zeros dropped.
-
-        Raises:
-            WrongAnswer: no mapping, a key that is no outcome, or a value that is no count.
-        """
-        expected = "{w: count}" if self.conjecture.is_classical else "{(w, d): count}"
-        if not isinstance(answer, Mapping):
-            raise WrongAnswer(
-                f"expected a mapping {expected} for a whole product, got {type(answer).__name__} {reprlib.repr(answer)}"
-            )
-        zero = (0,) * len(row.X.marked)
-        values: RowTerms = {}
-        for key, value in answer.items():
-            try:
-                w, d = (key, zero) if self.conjecture.is_classical else key
-                if type(w) is not SchubertClass or w.variety is not row.X:
-                    raise NotationError(f"w={w!r} is no class of {row.X}")
-                d = read_degree(row.X, d)
-            except (TypeError, ValueError, NotationError) as error:
-                raise WrongAnswer(f"expected keys as in {expected}, got the key {reprlib.repr(key)} ({error})") from None
-            if (w, d) in values:
-                raise WrongAnswer(f"expected one value for each outcome, got two keys for {w!r} and d={d}")
-            values[w, d] = value if type(value) is int and value >= 0 else count_of(value)
-        return {key: count for key, count in values.items() if count}
-
     def _difference(self, place: Case, count: int, true: int) -> Finding:
         """The finding for two values that differ, with the rule's objects if it gives objects."""
-        if self._is_claim:
+        if self.is_claim:
             return Finding("refuted", place, None, true, f"the claim is false here; the constant is {true}")
         conjecture = self.conjecture
         if conjecture.by_rows:
             answer = conjecture.rule(place.X, place.u, place.v)
             answer = answer.get(place.w if conjecture.is_classical else (place.w, place.d), 0)
         else:
-            answer = conjecture.rule(*self._arguments(place.row, place.w, place.d))
+            answer = conjecture.rule(*self.arguments(place.row, place.w, place.d))
         try:
             objects = shown_objects(answer)
         except WrongAnswer:
             objects = None
         return Finding("refuted", place, count, true, f"the rule gives {shown_number(count)}, the oracle {true}", objects)
-
-    def _trouble(self, place: Case | Row, error: BaseException) -> Finding:
-        return trouble(place, error, limit=self.limit.seconds, file=self.conjecture.file)
-
-    def _settle(self, finding: Finding) -> Finding:
-        """Call the rule again at the same place, some times: if the answer is another one now, that is the finding."""
-        if finding.status in ("too-slow", "not-independent", "unstable"):
-            return finding
-        first, until = self._portrait(finding), perf_counter() + _DOUBT_SECONDS
-        for _ in range(_DOUBTS):
-            again = self._answer_again(finding.where)
-            if again != first:
-                detail = f"expected one answer for one case, got {first}, and another time {again}"
-                return Finding("unstable", finding.where, detail=detail)
-            if perf_counter() > until:
-                break
-        return finding
-
-    def _portrait(self, finding: Finding) -> str:
-        if finding.status == "refuted":
-            return "False" if self._is_claim else shown_number(finding.rule or 0)
-        return _kind_of_trouble(finding)
-
-    def _answer_again(self, place: Case | Row) -> str:
-        rule, row = self.conjecture.rule, place.row if isinstance(place, Case) else place
-        conjecture = self.conjecture
-        with nullcontext() if self._is_claim else watched(Watch()):
-            try:
-                self.limit.started = perf_counter()
-                if conjecture.premise is not None and conjecture.premise_by_rows:
-                    conjecture.premise(row.X, row.u, row.v)
-                if isinstance(place, Case):
-                    self.admits(place)
-                if conjecture.by_rows:
-                    answer = rule(row.X, row.u, row.v, *self._oracle)
-                    if self._is_claim:
-                        return str(truth_of(answer))
-                    values = self._whole(answer, row)
-                    return shown_number(values.get((place.w, place.d), 0)) if isinstance(place, Case) else "an answer"
-                if not isinstance(place, Case):
-                    return "an answer"
-                answer = rule(*self._arguments(row, place.w, place.d))
-                return str(truth_of(answer)) if self._is_claim else shown_number(count_of(answer))
-            except KeyboardInterrupt:
-                raise
-            except BaseException as error:
-                return _kind_of_trouble(self._trouble(place, error))
-            finally:
-                self.limit.started = 0.0
-
-
-def _kind_of_trouble(finding: Finding) -> str:
-    """What must be the same when a rule fails twice: of a crash only its type, since messages may hold addresses and counters."""
-    return finding.detail.split(":")[0] if finding.status == "crashed" else finding.detail
 
 
 def _sample(row: Row, truth: RowTerms, most: int, classical: bool) -> list[Key]:

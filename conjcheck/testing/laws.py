@@ -101,7 +101,8 @@ class _Neighbourhood:
             second = Case(row.X, row.u, row.v, w, d)
             first = (back or {}).get((w, d), second)
             if here != there and self.comparer.admits(first) and self.comparer.admits(second):
-                yield BrokenLaw(law, f"{here} at {first}, but {there} at {second}", (first.row, row))
+                source = f"at {first}" if first != second else f"by {law}"
+                yield BrokenLaw(law, f"{here} {source}, but {there} at {second}", (first.row, row))
 
     def broken(self) -> Iterator[BrokenLaw]:
         """All laws in order."""

@@ -5,7 +5,6 @@ import types
 
 import pytest
 
-from conjcheck import Grassmannians, candidate, claim
 from conjcheck.conjecture.discover import GROUP, conjectures_in, installed_files
 from conjcheck.errors import DeclarationError
 
@@ -75,11 +74,3 @@ def test_entry_points_without_a_file(tmp_path, monkeypatch, value):
     offered(tmp_path, monkeypatch, f"broken = {value}")
     with pytest.raises(DeclarationError, match=f"the entry point 'broken' of conjcheck.conjectures, got '{value}'"):
         installed_files()
-
-
-def test_decorators_do_not_register():
-    """Declaring a conjecture has no effect elsewhere: it is a value."""
-    made = candidate(on=Grassmannians())(lambda X, u, v: {})
-    assert conjectures_in(sys.modules[__name__] if __name__ in sys.modules else types.ModuleType("empty")) == []
-    assert made.name == "<lambda>"
-    assert claim(on=Grassmannians())(lambda X, u, v, N: True).role == "claim"

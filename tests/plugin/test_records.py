@@ -1,0 +1,112 @@
+"""The life of a record, in real runs of pytest."""
+
+import json
+
+import pytest
+from sources import FAULT, PROJECTIVE, WRONG
+
+pytest_plugins = ["pytester"]
+
+RECORD = "conjectures/records/twice.json"
+
+
+def test_written_verified_stale(project):
+    """A refutation is written on request, verified by later runs, which pass, and is stale when the rule is repaired."""
+    project.write("conjectures/twice.py", WRONG.format(name="twice"))
+    first = project.run("--conjcheck-record")
+    assert first.ret == 1
+    text = (project.path / RECORD).read_text()
+    data = json.loads(text)
+    assert (data["conjecture"], data["status"]) == ("twice", "refuted")
+    assert data["counterexamples"] == [{"where": FAULT, "rule": 2, "oracle": 1, "minimal": True}]
+
+    second = project.run("-v", "--junitxml=out.xml", "--conjcheck-record", "-k", "recorded or survey")
+    second.assert_outcomes(passed=2)
+    second.stdout.fnmatch_lines(["conjectures/twice.py::twice::recorded PASSED*", "conjectures/twice.py::twice::survey PASSED*"])
+    assert project.table(second) == {"twice": "refuted"}
+    second.stdout.fnmatch_lines(["*on record as refuted: this is the expected verdict*"])
+    second.stdout.fnmatch_lines([f"refuted: twice at {FAULT}: rule 2, oracle 1 (minimal: all 20 smaller cases agree)"])
+    assert {o["part"] for values in project.properties().values() for o in values} == {"recorded", "survey"}
+    assert (project.path / RECORD).read_text() == text
+
+    project.run("-k", "recorded", "--conjcheck-record")
+    project.run("--conjcheck-case", FAULT, "--conjcheck-record")
+    assert (project.path / RECORD).read_text() == text, "a certificate is not lost by looking again"
+
+    project.write("conjectures/twice.py", PROJECTIVE.format(name="twice"))
+    repaired = project.run()
+    assert repaired.ret == 1
+    lines = project.summary(repaired)
+    assert len([line for line in lines if "::recorded - stale record: expected twice to be refuted at Gr(1,4): (2) * (3)" in line]) == 1
+    repaired.stdout.fnmatch_lines(["*the rule and the oracle agree there now; if the rule was repaired, remove the counterexample*"])
+    assert "Traceback" not in repaired.text
+
+
+def test_other_values(project):
+    """A recorded value that is not the rule's any more, or an oracle's value that is not the oracle's, is stale too."""
+    project.write("conjectures/twice.py", WRONG.format(name="twice"))
+    for values in ({"rule": 3, "oracle": 1}, {"rule": 2, "oracle": 0}, {"rule": 3, "oracle": None}):
+        entry = {"where": FAULT, "minimal": True} | values
+        data = {"format": "conjcheck-record", "version": 1, "conjecture": "twice", "status": "refuted", "counterexamples": [entry]}
+        project.write(RECORD, json.dumps(data))
+        result = project.run("-k", "recorded")
+        result.assert_outcomes(failed=1, deselected=1)
+        assert "stale record: expected rule " in project.summary(result)[0]
+
+
+@pytest.mark.parametrize(
+    ("content", "words"),
+    [
+        ("{", "expected JSON in UTF-8"),
+        ("[]", "this is not a record"),
+        ('{"format": "conjcheck-record", "version": 7}', "expected version 1, got 7"),
+    ],
+)
+def test_damaged(project, content, words):
+    """A damaged record is one failing item of its conjecture with a clear line; other conjectures are examined."""
+    project.write("conjectures/twice.py", WRONG.format(name="twice"))
+    project.write("conjectures/powers.py", PROJECTIVE.format(name="powers"))
+    project.write(RECORD, content)
+    result = project.run()
+    result.assert_outcomes(failed=1, passed=2)
+    (line,) = project.summary(result)
+    assert line.startswith("FAILED conjectures/twice.py::twice::record - record cannot be used: ")
+    assert words in line
+    assert "twice.json" in line
+
+
+def test_an_open_record_with_a_counterexample(project):
+    """A record that is open refutes nothing in advance: the failure fails."""
+    project.write("conjectures/twice.py", WRONG.format(name="twice"))
+    entry = {"where": FAULT, "rule": 2, "oracle": 1, "minimal": True}
+    data = {"format": "conjcheck-record", "version": 1, "conjecture": "twice", "status": "open", "counterexamples": [entry]}
+    project.write(RECORD, json.dumps(data))
+    result = project.run()
+    assert result.ret == 1
+    assert project.table(result) == {"twice": "refuted"}
+
+
+def test_a_survey_that_does_not_get_there(project):
+    """If the time does not suffice to reach the recorded counterexample, the survey passes and says so."""
+    project.write(
+        "conjectures/late.py",
+        """
+        import time
+        from conjcheck import Varieties, candidate
+
+        @candidate(on=Varieties("Gr(1,3)", "Gr(1,4)"))
+        def late(X, u, v):
+            if X.n == 3:
+                time.sleep(0.1)
+            total = u.length + v.length
+            return {(X.of_length(total % X.n)[0], (total // X.n,)): 1 + (total == 6)}
+        """,
+    )
+    entry = {"where": "Gr(1,4): (3) * (3) -> (2), q^(1)", "rule": 2, "oracle": 1, "minimal": False}
+    data = {"format": "conjcheck-record", "version": 1, "conjecture": "late", "status": "refuted", "counterexamples": [entry]}
+    project.write("conjectures/records/late.json", json.dumps(data))
+    result = project.run("--conjcheck-budget=0.25")
+    result.assert_outcomes(passed=2)
+    assert project.table(result) == {"late": "refuted"}
+    result = project.run("--conjcheck-budget=0.25", "-k", "survey", "-rP")
+    result.stdout.fnmatch_lines(["note         on record as refuted; the budget ended before the counterexample"])
