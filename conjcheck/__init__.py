@@ -15,13 +15,23 @@ if TYPE_CHECKING:
     from conjcheck.errors import OutsideDomain as OutsideDomain
     from conjcheck.geometry.case import Case as Case
     from conjcheck.geometry.case import Row as Row
+    from conjcheck.geometry.families import Adjoint as Adjoint
+    from conjcheck.geometry.families import Cominuscule as Cominuscule
     from conjcheck.geometry.families import CompleteFlags as CompleteFlags
     from conjcheck.geometry.families import Family as Family
     from conjcheck.geometry.families import Grassmannians as Grassmannians
+    from conjcheck.geometry.families import HomogeneousSpaces as HomogeneousSpaces
+    from conjcheck.geometry.families import IsotropicGrassmannians as IsotropicGrassmannians
+    from conjcheck.geometry.families import LagrangianGrassmannians as LagrangianGrassmannians
+    from conjcheck.geometry.families import Minuscule as Minuscule
+    from conjcheck.geometry.families import OrthogonalGrassmannians as OrthogonalGrassmannians
     from conjcheck.geometry.families import PartialFlags as PartialFlags
     from conjcheck.geometry.families import ProjectiveSpaces as ProjectiveSpaces
     from conjcheck.geometry.families import StepFlags as StepFlags
     from conjcheck.geometry.families import Varieties as Varieties
+    from conjcheck.geometry.flag_variety import IG as IG
+    from conjcheck.geometry.flag_variety import LG as LG
+    from conjcheck.geometry.flag_variety import OG as OG
     from conjcheck.geometry.flag_variety import Fl as Fl
     from conjcheck.geometry.flag_variety import FlagVariety as FlagVariety
     from conjcheck.geometry.flag_variety import Gr as Gr
@@ -33,7 +43,9 @@ if TYPE_CHECKING:
     from conjcheck.testing.examine import examine as examine
 
 _ROOMS = {
+    "Adjoint": "geometry.families",
     "Case": "geometry.case",
+    "Cominuscule": "geometry.families",
     "CompleteFlags": "geometry.families",
     "Conjecture": "conjecture.declare",
     "Family": "geometry.families",
@@ -41,6 +53,14 @@ _ROOMS = {
     "FlagVariety": "geometry.flag_variety",
     "Gr": "geometry.flag_variety",
     "Grassmannians": "geometry.families",
+    "HomogeneousSpaces": "geometry.families",
+    "IG": "geometry.flag_variety",
+    "IsotropicGrassmannians": "geometry.families",
+    "LG": "geometry.flag_variety",
+    "LagrangianGrassmannians": "geometry.families",
+    "Minuscule": "geometry.families",
+    "OG": "geometry.flag_variety",
+    "OrthogonalGrassmannians": "geometry.families",
     "OutsideDomain": "errors",
     "PartialFlags": "geometry.families",
     "Product": "oracle",

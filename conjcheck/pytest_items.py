@@ -233,7 +233,7 @@ class ConjectureNode(pytest.Collector):
 
     def reportinfo(self) -> tuple[Any, int | None, str]:
         """Where the rule is written."""
-        return self.conjecture.file, self.conjecture.rule.__code__.co_firstlineno - 1, self.name
+        return self.conjecture.file, self.conjecture.line - 1, self.name
 
 
 def recorded(examination: Examination, record: Record) -> Outcome:

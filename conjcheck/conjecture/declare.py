@@ -14,6 +14,7 @@ __all__ = ["Conjecture", "candidate", "claim"]
 Rule = Callable[..., Any]
 
 _RINGS = ("quantum", "classical")
+_ODD_KINDS = (inspect.Parameter.KEYWORD_ONLY, inspect.Parameter.VAR_POSITIONAL, inspect.Parameter.VAR_KEYWORD)
 
 
 @dataclass(frozen=True, eq=False)
@@ -51,7 +52,12 @@ class Conjecture:
     @property
     def file(self) -> str:
         """The file it was written in."""
-        return inspect.getsourcefile(self.rule) or "<unknown>"
+        return inspect.getsourcefile(inspect.unwrap(self.rule)) or "<unknown>"
+
+    @property
+    def line(self) -> int:
+        """The line, 1-based, where it begins there."""
+        return inspect.unwrap(self.rule).__code__.co_firstlineno
 
     @property
     def is_classical(self) -> bool:
@@ -135,7 +141,8 @@ def _declare(
     """Validate and build."""
     if not inspect.isfunction(rule):
         raise DeclarationError(f"expected a plain function under @{role}, got {rule!r}; put @{role}(on=...) directly above a def")
-    place = f"{inspect.getsourcefile(rule) or '<unknown>'}:{rule.__code__.co_firstlineno}: @{role} {rule.__name__}"
+    inner = inspect.unwrap(rule)
+    place = f"{inspect.getsourcefile(inner) or '<unknown>'}:{inner.__code__.co_firstlineno}: @{role} {rule.__name__}"
     if not isinstance(on, Family):
         raise DeclarationError(f"{place}: expected a family for on, got on={on!r}; write on=Grassmannians() or on=Varieties(X)")
     if ring not in _RINGS:
@@ -143,7 +150,7 @@ def _declare(
     if not isinstance(statement, str):
         raise DeclarationError(f"{place}: expected a str in LaTeX for statement, got statement={statement!r}")
     for name, value in (("references", references), ("contributors", contributors)):
-        if isinstance(value, str) or not all(isinstance(entry, str) for entry in value):
+        if not isinstance(value, (list, tuple)) or not all(isinstance(entry, str) for entry in value):
             raise DeclarationError(f"{place}: expected a list of strings for {name}, got {name}={value!r}; write {name}=[...]")
     if inspect.isgeneratorfunction(premise) or (premise is not None and not callable(premise)):
         raise DeclarationError(f"{place}: expected a function that returns a bool for premise, got premise={premise!r}")
@@ -181,7 +188,13 @@ def _with_page(made: Conjecture) -> Conjecture:
 
 def _signature(place: str, what: str, function: Rule, single: tuple[str, ...], whole: tuple[str, ...]) -> bool:
     """Whether the function has the row signature; an error unless it has one of the two."""
-    names = tuple(inspect.signature(function).parameters)
+    try:
+        parameters = inspect.signature(function).parameters
+    except (TypeError, ValueError):
+        raise DeclarationError(
+            f"{place}: expected a Python function for {what}, got {function!r}; write a def or a lambda"
+        ) from None
+    names = tuple(str(p) if p.kind in _ODD_KINDS else name for name, p in parameters.items())
     if names not in (single, whole):
         raise DeclarationError(
             f"{place}: expected the arguments ({', '.join(single)}) or ({', '.join(whole)}) for {what}, got ({', '.join(names)})"

@@ -17,7 +17,7 @@ GROUP = "conjcheck.conjectures"
 def conjectures_in(module: ModuleType) -> list[Conjecture]:
     """The conjectures written in a module, in the order of the file; those it imported from elsewhere are not its own."""
     own = [value for value in vars(module).values() if isinstance(value, Conjecture) and value.rule.__module__ == module.__name__]
-    return sorted(set(own), key=lambda conjecture: conjecture.rule.__code__.co_firstlineno)
+    return sorted(set(own), key=lambda conjecture: conjecture.line)
 
 
 def installed_files() -> list[Path]:

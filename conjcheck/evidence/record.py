@@ -71,10 +71,12 @@ def read_record(conjecture: Conjecture) -> Record:
         RecordError: the file is no record of this conjecture; the message names the file and the entry.
     """
     path = record_path(conjecture)
-    if not path.is_file():
+    if not path.exists() and not path.is_symlink():
         return Record(conjecture.name, "open", ())
     try:
         data = json.loads(path.read_text(encoding="utf-8"))
+    except OSError as error:
+        raise RecordError(f"{path}: expected a readable file, got {error}") from None
     except (ValueError, RecursionError) as error:
         raise RecordError(f"{path}: expected JSON in UTF-8, got {error}; restore the file or delete it") from None
     if not isinstance(data, dict) or data.get("format") != _FORMAT:

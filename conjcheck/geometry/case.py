@@ -169,8 +169,9 @@ def parse_class(X: FlagVariety, text: str) -> SchubertClass:
         raise NotationError(f"expected a class such as {samples}, got {text!r}")
     body = found["line"]
     if body is not None:
-        dotted = "." in body or letter in "BCD"
-        entries = tuple(map(int, body.split(".") if dotted else body))
+        if letter in "BCD" and "." not in body:
+            raise NotationError(f"expected a signed permutation of 1..{X.rank} with dots, such as [1.-3.2], got {text!r}")
+        entries = tuple(map(int, body.split(".") if "." in body else body))
         return X.schubert(permutation=entries) if letter == "A" else X.schubert(signed=entries)
     if found["word"] is not None:
         return X.schubert(word=_entries(found["word"], "."))

@@ -26,8 +26,9 @@ MOST_CLASSES = 50_000
 
 
 class FlagVariety:
-    """A flag variety, by name: ``FlagVariety("Fl(1,3;4)")``, ``"Gr(2,4)"``, ``"Fl(4)"``, ``"P^3"``, ``"A3/P1,3"``, ``"A3/B"``,
-    ``"LG(3,6)"``, ``"IG(2,6)"``, ``"OG(3,7)"``, ``"Q^5"``, ``"E6/P1"``; all names are in ``geometry.names``.
+    """A flag variety, by name: ``FlagVariety("Fl(1,3;4)")``, ``"Gr(2,4)"``, ``"Fl(4)"``, ``"P^3"``, ``"A3/P1,3"``, ``"A3/B"``.
+
+    Also ``"LG(3,6)"``, ``"IG(2,6)"``, ``"OG(3,7)"``, ``"Q^5"``, ``"E6/P1"``, ``"G2/B"``; ``geometry.names`` lists them all.
 
     Attributes:
         kind: the Cartan type; ``rank`` its rank.

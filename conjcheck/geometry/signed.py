@@ -98,7 +98,7 @@ def strict_partition_of(w: Sequence[int], letter: str) -> tuple[int, ...]:
     ((3, 1), (3,))
     """
     top = len(w) if letter == "D" else len(w) + 1
-    return tuple(top + entry for entry in sorted(w) if -top < entry < 0)
+    return tuple(top + entry for entry in sorted(w, reverse=True) if -top < entry < 0)
 
 
 def signed_from_partition(value: Iterable[int], kind: CartanType) -> Signed:

@@ -13,7 +13,7 @@ from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.explain import explain
 from conjcheck.testing.finding import Finding, Found
-from conjcheck.testing.laws import NoValue, broken_laws
+from conjcheck.testing.laws import NoValue, broken_laws, laws_apply
 from conjcheck.testing.minimise import Minimum, certified, confirm, descend, layer_of, minimise
 from conjcheck.testing.outcome import Outcome
 from conjcheck.testing.probe import ProbeCount, probe_levels, run_probe
@@ -179,7 +179,8 @@ class Examination:
                         # No wrong value now, though a law was broken or a value was missing before: the rule is not a function.
                         finding = Finding("unstable", row, detail=law or "the rule gave no value, but gives one when asked again")
                     count.fail(finding)
-            count.add(row, 0, 0)
+                if laws_apply(self.comparer, row):
+                    count.add(row, 0, 0)
 
         return check
 

@@ -11,7 +11,7 @@ from conjcheck.geometry.flag_variety import SchubertClass
 from conjcheck.geometry.symmetries import diagram_images, seidel
 from conjcheck.testing.compare import Comparer, Key
 
-__all__ = ["LAWS", "BrokenLaw", "NoValue", "broken_laws"]
+__all__ = ["LAWS", "BrokenLaw", "NoValue", "broken_laws", "laws_apply"]
 
 LAWS = (
     "one answer",
@@ -68,6 +68,16 @@ def broken_laws(comparer: Comparer, row: Row, choice: int = 0) -> Iterator[Broke
     Rows with more than 3,000 outcomes are left alone: the survey and the probe are the better tools there.
     """
     return _Neighbourhood(comparer, row, choice).broken()
+
+
+def laws_apply(comparer: Comparer, row: Row) -> bool:
+    """Whether the laws have anything to say around a row: it is not too large, and some case lies inside the premise."""
+    X, total, classical = row.X, row.u.length + row.v.length, comparer.conjecture.is_classical
+    if not 0 < count_cases(X, total, classical=classical) <= _MOST_OUTCOMES or not comparer.inside(row):
+        return False
+    if comparer.conjecture.premise_by_rows:
+        return True
+    return any(comparer.admits(Case(X, row.u, row.v, w, d)) for w, d in outcomes(X, total, classical=classical))
 
 
 class _Neighbourhood:

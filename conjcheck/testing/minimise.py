@@ -137,7 +137,7 @@ def layer_of(comparer: Comparer, finding: Finding, *, budget: float) -> Layer:
     """All failures of the same kind in the space of the smallest one, from there on, within a budget."""
     deadline = perf_counter() + budget
     X, seen, complete = finding.row.X, 0, True
-    found: list[Finding] = []
+    found: list[Finding] = [finding]
     start = finding.row.sort_key
     with comparer.limit:
         for row in rows(X):
@@ -148,10 +148,11 @@ def layer_of(comparer: Comparer, finding: Finding, *, budget: float) -> Layer:
                 break
             seen += 1
             differing, whole = comparer.findings(row, deadline=deadline)
-            found += [f for f in differing if f.status == finding.status]
+            found += [f for f in differing if f.status == finding.status and f.where != finding.where]
             if not whole:
                 complete = False
                 break
+    found.sort(key=lambda f: f.where.sort_key)
     return Layer(tuple(found), seen, complete, _orbits(found, comparer.conjecture.is_classical), len(X.classes) ** 2)
 
 

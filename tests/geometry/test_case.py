@@ -17,7 +17,8 @@ def varieties(draw, most=5):
     """Flag varieties, of type A or not."""
     n = draw(st.integers(2, most))
     steps = sorted(draw(st.sets(st.integers(1, n - 1), min_size=1)))
-    return draw(st.sampled_from([Fl(*steps, n=n), FlagVariety("B2/B"), FlagVariety("C3/P1,3"), Gr(4, 10)]))
+    others = ["B2/B", "C3/P1,3", "D4/P3", "D4/P3,4", "LG(4,8)", "OG(3,7)", "OG(4,8)", "IG(2,6)", "Q^6", "G2/B", "E6/P1"]
+    return draw(st.sampled_from([Fl(*steps, n=n), Gr(4, 10), *map(FlagVariety, others)]))
 
 
 @st.composite
@@ -52,7 +53,12 @@ def test_text_of_cases_and_rows_parses_back(case):
         ("Gr(2,4): (2, 1) * (2, 1) -> (1, 1), q^(1)", "Gr(2,4): (2,1) * (2,1) -> (1,1), q^(1)"),
         ("Gr(2,4): (1) * () -> (1)", "Gr(2,4): (1) * () -> (1), q^(0)"),
         ("Fl(1,3;4): [2143] * [3241] -> [4123], q^(1,0)", "Fl(1,3;4): [2143] * [3241] -> [4123], q^(1,0)"),
-        ("B2/B: <1.2> * <> -> <1.2>, q^(0, 0)", "B2/B: <1.2> * <> -> <1.2>, q^(0,0)"),
+        ("B2/B: <1.2> * <> -> <1.2>, q^(0, 0)", "B2/B: [2.-1] * [1.2] -> [2.-1], q^(0,0)"),
+        ("G2/B: <1.2> * <> -> <1.2>, q^(0, 0)", "G2/B: <1.2> * <> -> <1.2>, q^(0,0)"),
+        ("C3/P3: (3, 1) * <3> -> [ 2 . -3 . -1 ], q^( 0 )", "LG(3,6): (3,1) * (1) -> (3,1), q^(0)"),
+        ("OG(3, 7): (2,0) * () -> <2.3>", "OG(3,7): (2) * () -> (2), q^(0)"),
+        ("IG(2,6):[-2.-1.3]*[1.-3.2]->[1.2.3],q^(1)", "IG(2,6): [-2.-1.3] * [1.-3.2] -> [1.2.3], q^(1)"),
+        ("B3/P1: <2.1> * <> -> [3.1.2], q^(2)", "Q^5: [3.1.2] * [1.2.3] -> [3.1.2], q^(2)"),
         ("P^9: [2.1.3.4.5.6.7.8.9.10] * (1) -> (1,0), q^(12)", "Gr(1,10): (1) * (1) -> (1), q^(12)"),
     ],
 )
@@ -205,6 +211,32 @@ X, Y = Gr(2, 4), Gr(2, 5)
         (lambda: parse_class(X, None), NotationError, "expected a class such as (2,1), [2143] or <1.3.2>, got None"),
         (lambda: parse_class(X, "{2,1}"), NotationError, "expected a class such as (2,1), [2143] or <1.3.2>, got '{2,1}'"),
         (lambda: parse_class(X, "[1..2]"), NotationError, "expected a class such as (2,1), [2143] or <1.3.2>, got '[1..2]'"),
+        (
+            lambda: parse_class(X, "[-2.1.4.3]"),
+            NotationError,
+            "expected a permutation of 1..4, got entry 1 = -2 in permutation=(-2, 1, 4, 3)",
+        ),
+        (
+            lambda: parse_class(FlagVariety("C3/B"), "[1-32]"),
+            NotationError,
+            "expected a class such as (3,1), [1.-3.2] or <1.3.2>, got '[1-32]'",
+        ),
+        (
+            lambda: parse_class(FlagVariety("C3/B"), "[132]"),
+            NotationError,
+            "expected a signed permutation of 1..3 with dots, such as [1.-3.2], got '[132]'",
+        ),
+        (lambda: parse_class(FlagVariety("G2/B"), "1.2"), NotationError, "expected a class such as <1.3.2>, got '1.2'"),
+        (
+            lambda: parse_class(FlagVariety("G2/B"), "[1.2]"),
+            NotationError,
+            "expected word= on G2/B: only types B, C and D have signed=",
+        ),
+        (
+            lambda: parse_class(FlagVariety("G2/B"), "(1)"),
+            NotationError,
+            "expected word= on G2/B: outside type A only LG(n,2n), OG(n,2n+1) and OG(n,2n) have partition=",
+        ),
         (
             lambda: parse_class(X, "(3)"),
             NotationError,

@@ -10,7 +10,10 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from conjcheck.errors import NotationError, OutOfReach
-from conjcheck.geometry.flag_variety import MOST_CLASSES, Fl, FlagVariety, Gr
+from conjcheck.geometry.flag_variety import LG, MOST_CLASSES, OG, Fl, FlagVariety, Gr
+
+
+A_NAME = "expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3', 'LG(3,6)', 'IG(2,6)', 'OG(3,7)', 'Q^5', 'A3/P1,3' or 'G2/B'"
 
 
 @st.composite
@@ -161,17 +164,26 @@ def test_dual_classes(u):
         assert dual.partition == tuple(wide - part for part in reversed(padded) if part < wide)
 
 
+@pytest.mark.parametrize("name", ["G2/B", "G2/P1", "F4/P4", "E6/P1", "E6/P1,6"])
+def test_words_are_the_notation_of_the_exceptional_types(name):
+    """In types E, F, G a class is its reduced word: the text, and the order of the classes."""
+    X = FlagVariety(name)
+    assert X.notations == ("word",)
+    for u in X.classes:
+        assert str(u) == f"<{'.'.join(map(str, u.word))}>"
+    assert sorted((u.length, u.word) for u in X.classes) == [(u.length, u.word) for u in X.classes]
+
+
 @pytest.mark.parametrize("name", ["B2/B", "C3/P2", "D4/P1,3", "G2/B", "F4/P4", "E6/P1"])
-def test_words_are_the_notation_of_the_other_types(name):
-    """Outside type A a class is its reduced word: both ways, unique, in order, with descents at the last letters."""
+def test_words_denote_classes_in_every_type(name):
+    """Both ways, unique, as long as the class, with the last letter among the descents."""
     X = FlagVariety(name)
     for u in X.classes:
         assert X.schubert(word=u.word) is u
-        assert str(u) == f"<{'.'.join(map(str, u.word))}>"
+        assert len(u.word) == u.length
         assert not u.word or u.word[-1] in u.descents
         assert set(u.descents) <= set(X.marked)
     assert len({u.word for u in X.classes}) == len(X.classes)
-    assert sorted((u.length, u.word) for u in X.classes) == [(u.length, u.word) for u in X.classes]
 
 
 @pytest.mark.parametrize(
@@ -191,17 +203,32 @@ def test_any_reduced_word_will_do(name, word, same):
 def test_descents_in_b2():
     """In ``B2/B`` the class ``s1 s2`` has the right descent 2, ``s2 s1`` has 1, the point both."""
     X = FlagVariety("B2/B")
-    assert [u.descents for u in X.classes] == [(), (1,), (2,), (2,), (1,), (1,), (2,), (1, 2)]
+    descents = {u.word: u.descents for u in X.classes}
+    assert descents == {
+        (): (),
+        (1,): (1,),
+        (2,): (2,),
+        (1, 2): (2,),
+        (2, 1): (1,),
+        (1, 2, 1): (1,),
+        (2, 1, 2): (2,),
+        (1, 2, 1, 2): (1, 2),
+    }
 
 
 def test_texts():
-    """``(2,1)`` on a Grassmannian, ``[2143]`` in type A, dots from n = 10, a word elsewhere, always behind ``sigma``."""
+    """``(2,1)`` on a Grassmannian, ``[2143]`` in type A, dots from n = 10, else ``[1.-3.2]`` or a word, always behind ``sigma``."""
     assert str(Gr(2, 4).schubert(partition=(2, 1))) == "(2,1)"
     assert str(Gr(2, 4).identity) == "()"
     assert repr(Fl(1, 3, n=4).schubert(permutation=(2, 1, 4, 3))) == "sigma[2143]"
     assert str(Fl(1, 9, n=10).identity) == "[1.2.3.4.5.6.7.8.9.10]"
-    assert str(FlagVariety("B2/B").schubert(word=(1, 2, 1))) == "<1.2.1>"
-    assert str(FlagVariety("B2/B").identity) == "<>"
+    assert str(FlagVariety("B2/B").schubert(word=(1, 2, 1))) == "[-1.2]"
+    assert str(FlagVariety("C2/P1").identity) == "[1.2]"
+    assert str(LG(3, 6).schubert(word=(2, 3))) == str(OG(3, 7).schubert(word=(2, 3))) == "(2)"
+    assert str(OG(4, 8).point) == "(3,2,1)"
+    assert str(FlagVariety("D4/P3").point) == "[4.-3.-2.1]"
+    assert str(FlagVariety("G2/B").schubert(word=(1, 2, 1))) == "<1.2.1>"
+    assert repr(FlagVariety("G2/B").identity) == "sigma<>"
 
 
 @settings(deadline=None)
@@ -261,7 +288,26 @@ def test_varieties_are_ordered_as_the_cases_are():
         ),
         (
             lambda: FlagVariety("B2/B").schubert(permutation=(1, 2)),
-            "expected word= for a class of B2/B: only type A has the other notations",
+            "expected signed= or word= on B2/B: only type A has permutation=",
+        ),
+        (
+            lambda: FlagVariety("LG(2,4)").schubert(string="0011"),
+            "expected signed=, partition= or word= on LG(2,4): only type A has string=",
+        ),
+        (
+            lambda: FlagVariety("B2/B").schubert(partition=(1,)),
+            "expected signed= or word= on B2/B: outside type A only LG(n,2n), OG(n,2n+1) and OG(n,2n) have partition=",
+        ),
+        (
+            lambda: Fl(3).schubert(signed=(1, 2, 3)),
+            "expected permutation=, string= or word= on Fl(3): only types B, C and D have signed=",
+        ),
+        (lambda: FlagVariety("G2/B").schubert(signed=(1, 2)), "expected word= on G2/B: only types B, C and D have signed="),
+        (lambda: FlagVariety("G2/B").schubert(), "expected word=, got none"),
+        (lambda: FlagVariety("Q^3").schubert(), "expected one of signed=, word=, got none"),
+        (
+            lambda: LG(2, 4).schubert(signed=(1, 2), word=()),
+            "expected one of signed=, partition=, word=, got ['signed', 'word']",
         ),
         (lambda: FlagVariety("B2/B").schubert(word=(1, 3)), "expected letters from 1 to 2, got letter 2 = 3 in word=(1, 3)"),
         (
@@ -270,7 +316,7 @@ def test_varieties_are_ordered_as_the_cases_are():
         ),
         (
             lambda: FlagVariety("C3/P2").schubert(word=(2, 1)),
-            "expected a reduced word of a class of C3/P2, got letter 2 = 1 in word=(2, 1)",
+            "expected a reduced word of a class of IG(2,6), got letter 2 = 1 in word=(2, 1)",
         ),
         (lambda: Fl(1, 3), "expected n=, as in Fl(1, 3, n=4), got Fl(1, 3); Fl(4) alone means complete flags"),
         (lambda: Fl(1), "expected n of 2 or more, got n=1"),
@@ -282,11 +328,11 @@ def test_varieties_are_ordered_as_the_cases_are():
         (lambda: Fl(1, 3, 2, n=5), "expected rising steps between 1 and 4, got step 2 in Fl(1,3,2;5)"),
         (
             lambda: FlagVariety("Gr(2;4)"),
-            "expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3' or 'A3/P1,3', got 'Gr(2;4)'",
+            f"{A_NAME}, got 'Gr(2;4)'",
         ),
         (
             lambda: FlagVariety(4),
-            "expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3' or 'A3/P1,3', got 4",
+            f"{A_NAME}, got 4",
         ),
         (lambda: FlagVariety("E6/P1,7"), "expected rising nodes between 1 and 6, got node 7 in 'E6/P1,7'"),
         (lambda: FlagVariety("E6/P2,1"), "expected rising nodes between 1 and 6, got node 1 in 'E6/P2,1'"),
@@ -294,7 +340,23 @@ def test_varieties_are_ordered_as_the_cases_are():
         (lambda: FlagVariety("P^0"), "expected n of 2 or more, got n=1"),
         (
             lambda: FlagVariety("B2/B").point.permutation,
-            "expected a variety of type A, got B2/B: its classes have no permutation; use .word",
+            "expected a variety of type A, got B2/B: its classes have no permutation; use .signed",
+        ),
+        (
+            lambda: FlagVariety("G2/B").point.permutation,
+            "expected a variety of type A, got G2/B: its classes have no permutation; use .word",
+        ),
+        (
+            lambda: FlagVariety("B2/B").point.partition,
+            "expected a Grassmannian, got B2/B: its classes have no partition; use .signed",
+        ),
+        (
+            lambda: FlagVariety("E6/P1").point.signed,
+            "expected a variety of type B, C or D, got E6/P1: its classes have no signed permutation; use .word",
+        ),
+        (
+            lambda: Gr(2, 4).point.signed,
+            "expected a variety of type B, C or D, got Gr(2,4): its classes have no signed permutation; use .permutation",
         ),
         (
             lambda: Fl(3).point.partition,

@@ -101,10 +101,10 @@ def test_the_automorphism_of_type_a(X):
 
 
 def test_triality():
-    """D4 has five automorphisms beside the identity; they move ``D4/P1`` to ``D4/P3`` and ``D4/P4`` and keep lengths."""
+    """D4 has five automorphisms beside the identity; they move ``Q^6 = D4/P1`` to ``D4/P3`` and ``OG(4,8) = D4/P4`` and keep lengths."""
     X = FlagVariety("D4/P1")
     found = diagram_images(X)
-    assert Counter(Y.name for Y, _, _ in found) == {"D4/P1": 1, "D4/P3": 2, "D4/P4": 2}
+    assert Counter(Y.name for Y, _, _ in found) == {"Q^6": 1, "D4/P3": 2, "OG(4,8)": 2}
     for Y, images, _ in found:
         assert [Y.classes[i].length for i in images] == [u.length for u in X.classes]
 

@@ -135,7 +135,7 @@ def test_words_are_the_first_reduced_words(name, marked):
         best |= following
         level = following
     assert {tuple(w): found.word(k) for k, w in enumerate(found.weights.tolist())} == best
-    if kind.letter != "A":
+    if kind.letter in "EFG":
         order = [found.word(k) for k in range(len(found.lengths))]
         assert order == sorted(order, key=lambda word: (len(word), word))
 
