@@ -4,6 +4,7 @@ import functools
 import inspect
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
+from types import CodeType
 from typing import Any
 
 from conjcheck.errors import DeclarationError
@@ -57,7 +58,8 @@ class Conjecture:
     @property
     def line(self) -> int:
         """The line, 1-based, where it begins there."""
-        return inspect.unwrap(self.rule).__code__.co_firstlineno
+        code: CodeType = inspect.unwrap(self.rule).__code__
+        return code.co_firstlineno
 
     @property
     def is_classical(self) -> bool:
@@ -194,7 +196,7 @@ def _signature(place: str, what: str, function: Rule, single: tuple[str, ...], w
         raise DeclarationError(
             f"{place}: expected a Python function for {what}, got {function!r}; write a def or a lambda"
         ) from None
-    names = tuple(str(p) if p.kind in _ODD_KINDS else name for name, p in parameters.items())
+    names = tuple(f"*{name}" if p.kind in _ODD_KINDS else name for name, p in parameters.items())
     if names not in (single, whole):
         raise DeclarationError(
             f"{place}: expected the arguments ({', '.join(single)}) or ({', '.join(whole)}) for {what}, got ({', '.join(names)})"

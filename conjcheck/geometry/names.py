@@ -95,8 +95,8 @@ def parse_name(name: str) -> Parabolic:
     found = _NAMES.fullmatch(name.replace(" ", "")) if isinstance(name, str) else None
     if not found:
         raise NotationError(
-            "expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3', 'LG(3,6)', 'IG(2,6)', 'OG(3,7)', 'Q^5', "
-            f"'A3/P1,3' or 'G2/B', got {name!r}"
+            "expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3', 'LG(3,6)', 'IG(2,6)', 'OG(3,7)', 'Q^5' or "
+            f"'A3/P1,3', got {name!r}"
         )
     if found["complete"]:
         n = int(found["complete"])

@@ -12,8 +12,9 @@ from hypothesis import strategies as st
 from conjcheck.errors import NotationError, OutOfReach
 from conjcheck.geometry.flag_variety import LG, MOST_CLASSES, OG, Fl, FlagVariety, Gr
 
-
-A_NAME = "expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3', 'LG(3,6)', 'IG(2,6)', 'OG(3,7)', 'Q^5', 'A3/P1,3' or 'G2/B'"
+A_NAME = (
+    "expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3', 'LG(3,6)', 'IG(2,6)', 'OG(3,7)', 'Q^5' or 'A3/P1,3'"
+)
 
 
 @st.composite

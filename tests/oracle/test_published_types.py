@@ -9,6 +9,7 @@ independent programs without a published source, "standard" in every text book.
 s_n``, the words of the parts follow each other from the smallest part to the largest.
 """
 
+import random
 import re
 from collections import Counter
 from itertools import combinations, pairwise
@@ -55,7 +56,7 @@ w21 * w21 = 2 q1 w12 + q1 q2
 w1212 * w1212 = q1 q2^2 w21 + q1^2 q2^2
 """
 # The same on SO5/B = B2/B, where alpha_2 is short: nodes exchanged.
-SO_5 = SP_4.translate(str.maketrans("12", "21")).replace("^1", "^2")
+SO_5 = re.sub(r"(?<=[wq])[12]+", lambda found: found[0].translate(str.maketrans("12", "21")), SP_4)
 # G2/B, alpha_1 short: computed.
 G_2 = """
 w1 * w1 = w21 + q1
@@ -73,7 +74,7 @@ def asked(names):
     return [(engine.name, name) for name in names for engine in engines_for(FlagVariety(name))]
 
 
-def ranked(letter, ranks, most=None):
+def ranked(letter, ranks):
     """Triples (engine, variety ``Ln/Pn``, n)."""
     return [(engine, FlagVariety(f"{letter}{n}/P{n}"), n) for n in ranks for engine, _ in asked([f"{letter}{n}/P{n}"])]
 
@@ -138,7 +139,7 @@ def monomial(engine, X, *factors):
 
 
 def test_which_engines_are_asked():
-    """Every value below is asked of the recursion and of localisation, but for spaces of rank 6 and more, which only the latter reaches."""
+    """Every value below is asked of the recursion and of localisation; on E6, E7, E8 and from B6 on only the latter reaches."""
     small = [*PRINTED, "C5/P5", "B5/P5", "D5/P5", "F4/P1", "G2/P2", "B3/B", "C3/B"]
     assert asked(small) == [(engine, name) for name in small for engine in ("recursion", "localisation")]
     assert {engine for engine, _ in asked(["A3/B"])} >= {"recursion", "localisation"}
@@ -223,9 +224,7 @@ def components(rows):
     only neighbouring rows can touch, where the lower one ends just left of the upper one.
     """
     filled = [low <= high for low, high in rows]
-    joints = sum(
-        filled[i] and filled[i + 1] and below[1] + 1 == above[0] for i, (above, below) in enumerate(pairwise(rows))
-    )
+    joints = sum(filled[i] and filled[i + 1] and below[1] + 1 == above[0] for i, (above, below) in enumerate(pairwise(rows)))
     return sum(filled) - joints, sum(low == 1 for (low, _), full in zip(rows, filled, strict=True) if full)
 
 
@@ -305,7 +304,13 @@ def test_degrees_of_orthogonal_grassmannians(engine, X, n):
     assert degree(engine, X) == OG_DEGREES[n - 1]
 
 
-@pytest.mark.parametrize(("engine", "name"), asked(["A1/B", "A2/B", "A3/B", "B2/B", "C2/B", "G2/B", "B3/B", "C3/B"]))
+COMPLETE = [
+    pytest.param(engine, name, marks=[pytest.mark.slow] if engine == "localisation" and name in {"B3/B", "C3/B"} else [])
+    for engine, name in asked(["A1/B", "A2/B", "A3/B", "B2/B", "C2/B", "G2/B", "B3/B", "C3/B"])
+]
+
+
+@pytest.mark.parametrize(("engine", "name"), COMPLETE)
 def test_anticanonical_degrees_of_complete_flags(engine, name):
     """``(2 D)^N = 2^N N!`` on G/B of dimension N (Weyl): A2 48, A3 46080, B2 384, G2 46080, B3 and C3 185794560."""
     X = FlagVariety(name)
@@ -362,10 +367,12 @@ def unit_in(engine, h, u):
     return any(w is u.variety.identity and any(d) for w, d in product(h, u, engine=engine))
 
 
-@pytest.mark.parametrize(("engine", "name"), asked([f"{letter}{n}/P1" for letter in "BCD" for n in (2, 3, 4, 5) if (letter, n) >= ("D", 4) or letter < "D"]))
+@pytest.mark.parametrize(
+    ("engine", "name"), asked(f"{kind}/P1" for kind in ("B2", "B3", "B4", "B5", "C2", "C3", "C4", "C5", "D4", "D5"))
+)
 def test_powers_of_the_hyperplane(engine, name):
-    """``h^(N+1) = q`` on ``Cn/P1 = P^(2n-1)`` and ``= 4 q h`` on the quadrics ``Bn/P1`` and ``Dn/P1``; points: ``pt * pt = q^2`` on quadrics,
-    ``q h^(2n-2)`` on projective space (standard).
+    """``h^(N+1) = q`` on ``Cn/P1 = P^(2n-1)`` and ``= 4 q h`` on the quadrics ``Bn/P1`` and ``Dn/P1``; two points are ``q^2`` on
+    quadrics, ``q h^(2n-2)`` on projective space (standard).
     """
     X = FlagVariety(name)
     (h,) = X.of_length(1)
@@ -405,8 +412,8 @@ SAME = [
 
 @pytest.mark.parametrize(("one", "name", "other", "rename"), SAME, ids=[f"{a} = {b}" for a, _, b, _ in SAME])
 def test_isomorphic_varieties_have_the_same_products(one, name, other, rename):
-    """``OG(n,2n+1) = OG(n+1,2n+2)``, ``LG(2,4) = Q^3``, ``Cn/P1 = P^(2n-1)``, ``OG(2,5) = P^3``, ``G2/P1 = Q^5`` (standard): every product, by
-    every pair of engines.
+    """``OG(n,2n+1) = OG(n+1,2n+2)``, ``LG(2,4) = Q^3``, ``Cn/P1 = P^(2n-1)``, ``OG(2,5) = P^3``, ``G2/P1 = Q^5`` (standard): the
+    products correspond, by every engine, all of them or forty at random.
     """
     X, Y = FlagVariety(one), FlagVariety(other)
     if name is None:
@@ -416,9 +423,10 @@ def test_isomorphic_varieties_have_the_same_products(one, name, other, rename):
     there = dict(pairs)
     assert len(there) == len(set(there.values())) == len(X.classes) == len(Y.classes)
     assert X.q_degrees == Y.q_degrees
-    for engine, _ in asked([one]):
-        for partner, _ in asked([other]):
-            for u in X.classes:
-                for v in X.classes[u.index :]:
-                    moved = {(there[w], d): count for (w, d), count in product(u, v, engine=engine).items()}
-                    assert product(there[u], there[v], engine=partner) == moved
+    engines = [engine for engine, _ in asked([one])]
+    assert len(engines) >= 2
+    every = [(u, v) for u in X.classes for v in X.classes[u.index :]]
+    for u, v in random.Random(one).sample(every, min(len(every), 40)):
+        for engine in engines:
+            moved = {(there[w], d): count for (w, d), count in product(u, v, engine=engine).items()}
+            assert product(there[u], there[v], engine=engine) == moved

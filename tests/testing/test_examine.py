@@ -79,7 +79,14 @@ def test_claims_have_no_laws():
 
 def test_seeds():
     """With a seed the random parts draw the same again."""
-    counted = [[(o.part, o.rows, o.cases) for o in examine(rule_by_rows(), effort="quick", seed=5)] for _ in range(2)]
+    unhurried = replace(EFFORTS["quick"], laws=60.0, probe=60.0)
+
+    def drawn():
+        examination = Examination(rule_by_rows(), unhurried)
+        parts = [examination.laws(seed=5), *(examination.probe(n, spaces, 60.0, seed=5) for n, spaces in examination.levels())]
+        return [(outcome.part, outcome.rows, outcome.cases) for outcome in parts]
+
+    counted = [drawn(), drawn()]
     assert counted[0] == counted[1]
 
 
