@@ -36,6 +36,8 @@ if TYPE_CHECKING:
     from conjcheck.geometry.flag_variety import FlagVariety as FlagVariety
     from conjcheck.geometry.flag_variety import Gr as Gr
     from conjcheck.geometry.flag_variety import SchubertClass as SchubertClass
+    from conjcheck.geometry.polynomial import RootPolynomial as RootPolynomial
+    from conjcheck.geometry.polynomial import simple_roots as simple_roots
     from conjcheck.oracle import Product as Product
     from conjcheck.oracle import constant as constant
     from conjcheck.oracle import product as product
@@ -66,6 +68,7 @@ _ROOMS = {
     "Product": "oracle",
     "ProjectiveSpaces": "geometry.families",
     "Row": "geometry.case",
+    "RootPolynomial": "geometry.polynomial",
     "SchubertClass": "geometry.flag_variety",
     "StepFlags": "geometry.families",
     "Varieties": "geometry.families",
@@ -74,6 +77,7 @@ _ROOMS = {
     "constant": "oracle",
     "examine": "testing.examine",
     "product": "oracle",
+    "simple_roots": "geometry.polynomial",
     "table": "oracle",
 }
 

@@ -25,7 +25,7 @@ from conjcheck.pytest_plugin import _STATE, _seconds
 from conjcheck.report.text import text_report
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.limits import CallInterrupted, CallLimit
-from conjcheck.testing.outcome import Outcome
+from conjcheck.testing.outcome import Outcome, plain_value
 from conjcheck.testing.probe import Check, ProbeCount, TimeIsUp, gravest, probe_test
 
 __all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
@@ -254,10 +254,11 @@ def recorded(examination: Examination, record: Record) -> Outcome:
                 f"stale record: expected {examination.conjecture.name} to be refuted at {known.where}, but {what}; "
                 "if the rule was repaired, remove the counterexample from its record"
             )
-        if (found.rule, found.oracle) != (known.rule, known.oracle) and known.oracle is not None:
+        values = plain_value(found.rule), plain_value(found.oracle)
+        if values != (known.rule, known.oracle) and known.oracle is not None:
             raise RecordError(
                 f"stale record: expected rule {known.rule} and oracle {known.oracle} at {known.where}, "
-                f"got rule {found.rule} and oracle {found.oracle}; record it anew with --conjcheck-record"
+                f"got rule {values[0]} and oracle {values[1]}; record it anew with --conjcheck-record"
             )
     assert outcome is not None, "a record is only verified when it holds a counterexample"
     return replace(outcome, part="recorded", scope=f"{len(record.counterexamples)} recorded counterexamples")
@@ -336,7 +337,7 @@ class PartItem(pytest.Function):
         finding, conjecture = outcome.finding, self.node.conjecture
         assert finding is not None, "a refutation has a finding"
         minimal = outcome.minimum is not None and outcome.minimum.certified
-        new = Counterexample(finding.where, finding.rule, finding.oracle, minimal)
+        new = Counterexample(finding.where, plain_value(finding.rule), plain_value(finding.oracle), minimal)
         write_record(conjecture, read_record(conjecture).with_counterexample(new))
 
     def repr_failure(self, excinfo: pytest.ExceptionInfo[BaseException], style: Any = None) -> Any:

@@ -14,7 +14,7 @@ __all__ = ["Conjecture", "candidate", "claim"]
 
 Rule = Callable[..., Any]
 
-_RINGS = ("quantum", "classical")
+_RINGS = ("quantum", "classical", "equivariant quantum", "equivariant")
 _ODD_KINDS = (inspect.Parameter.KEYWORD_ONLY, inspect.Parameter.VAR_POSITIONAL, inspect.Parameter.VAR_KEYWORD)
 
 
@@ -28,7 +28,8 @@ class Conjecture:
         role: ``"candidate"`` (a formula for constants) or ``"claim"`` (a statement about them).
         by_rows: whether one call answers a whole row ``(X, u, v)`` instead of one case.
         on: the family of flag varieties it speaks about.
-        ring: ``"quantum"``, or ``"classical"``: then degrees drop out of all signatures and only ``d = 0`` is compared.
+        ring: ``"quantum"``; ``"classical"``: then degrees drop out of all signatures and only ``d = 0`` is compared; or
+            ``"equivariant quantum"`` and ``"equivariant"``: the same, with polynomials in the simple roots instead of counts.
         premise: the hypothesis, ``None`` for none; ``premise_by_rows`` tells which signature it has.
         statement: in LaTeX.
         references, contributors: for the report and for the citation.
@@ -64,7 +65,12 @@ class Conjecture:
     @property
     def is_classical(self) -> bool:
         """Whether only ``d = 0`` is compared."""
-        return self.ring == "classical"
+        return self.ring in ("classical", "equivariant")
+
+    @property
+    def is_equivariant(self) -> bool:
+        """Whether the values are polynomials in the simple roots."""
+        return self.ring.startswith("equivariant")
 
     def called(self, name: str) -> "Conjecture":
         """The same conjecture under another name: that of the variable that holds it."""
@@ -100,7 +106,8 @@ def candidate(
         statement: the formula in LaTeX, for reports.
         references: where it is published, one string each.
         contributors: who proposes it.
-        ring: ``"quantum"`` or ``"classical"``.
+        ring: ``"quantum"``, ``"classical"``, ``"equivariant quantum"`` or ``"equivariant"``. In the equivariant rings a value is a
+            polynomial in the simple roots: one made from ``simple_roots(X)``, an ``int``, or a sympy expression in ``alpha1, ...``.
 
     Raises:
         DeclarationError: the message names file, line, argument and remedy.
@@ -156,11 +163,13 @@ def _declare(
             raise DeclarationError(f"{place}: expected a list of strings for {name}, got {name}={value!r}; write {name}=[...]")
     if inspect.isgeneratorfunction(premise) or (premise is not None and not callable(premise)):
         raise DeclarationError(f"{place}: expected a function that returns a bool for premise, got premise={premise!r}")
-    tail = () if ring == "classical" else ("d",)
+    tail = () if ring in ("classical", "equivariant") else ("d",)
     whole, single = ("X", "u", "v"), ("X", "u", "v", "w", *tail)
     oracle = ("N",) if role == "claim" else ()
     by_rows = _signature(place, "the rule", rule, (*single, *oracle), (*whole, *oracle))
     premise_by_rows = premise is None or _signature(place, "the premise", premise, single, whole)
+    if role == "claim" and ring.startswith("equivariant"):
+        raise DeclarationError(f"{place}: expected ring='quantum' or 'classical' for a claim, got ring={ring!r}")
     if role == "claim" and by_rows and not premise_by_rows:
         raise DeclarationError(
             f"{place}: expected a premise on rows, with the arguments ({', '.join(whole)}), since the claim is about rows, got one on cases"

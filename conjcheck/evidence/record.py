@@ -25,13 +25,13 @@ class Counterexample:
 
     Attributes:
         where: the case, or the row for a claim about whole products.
-        rule, oracle: the two values; ``None`` where there is no number.
+        rule, oracle: the two values, polynomials as text; ``None`` where there is none.
         minimal: whether all smaller cases were compared when it was recorded.
     """
 
     where: Case | Row
-    rule: int | None
-    oracle: int | None
+    rule: int | str | None
+    oracle: int | str | None
     minimal: bool
 
     def as_json(self) -> dict[str, Any]:
@@ -102,9 +102,10 @@ def _entry(path: Path, place: int, entry: object) -> Counterexample:
         raise RecordError(f'{path}: expected an object with a text under "where" as counterexample {place}, got {entry!r}')
     for key in ("rule", "oracle"):
         value = entry.get(key)
-        if value is not None and (type(value) is not int or value < 0):
+        if value is not None and not isinstance(value, str) and (type(value) is not int or value < 0):
             raise RecordError(
-                f'{path}: expected null or an integer of 0 or more under "{key}" of counterexample {place}, got {value!r}'
+                f'{path}: expected null, an integer of 0 or more, or a polynomial as text under "{key}" of counterexample {place}, '
+                f"got {value!r}"
             )
     try:
         where = parse_place(entry["where"])

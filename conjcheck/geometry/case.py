@@ -202,11 +202,16 @@ def degrees_of_total(X: FlagVariety, total: int) -> tuple[Degree, ...]:
 
 
 @lru_cache(maxsize=64)
-def outcomes(X: FlagVariety, total: int, *, classical: bool = False) -> tuple[tuple[SchubertClass, Degree], ...]:
-    """All ``(w, d)`` with ``l(w) + sum d_i deg q_i = total``, in order; only ``d = 0`` if classical.
+def outcomes(
+    X: FlagVariety, total: int, *, classical: bool = False, equivariant: bool = False
+) -> tuple[tuple[SchubertClass, Degree], ...]:
+    """All ``(w, d)`` with ``l(w) + sum d_i deg q_i = total``, in order; only ``d = 0`` if classical; ``<= total`` if equivariant.
 
     Cost: their number, ``count_cases``, which grows fast: 22,000 for the point squared on ``Fl(5)``.
     """
+    if equivariant:
+        levels = [outcomes(X, smaller, classical=classical) for smaller in range(total + 1)]
+        return tuple(sorted((outcome for level in levels for outcome in level), key=place_in_row))
     none = (0,) * len(X.marked)
     found = [
         (w, d)
@@ -218,8 +223,10 @@ def outcomes(X: FlagVariety, total: int, *, classical: bool = False) -> tuple[tu
 
 
 @lru_cache(maxsize=65536)
-def count_cases(X: FlagVariety, total: int, *, classical: bool = False) -> int:
+def count_cases(X: FlagVariety, total: int, *, classical: bool = False, equivariant: bool = False) -> int:
     """The number of outcomes, without making them."""
+    if equivariant:
+        return sum(count_cases(X, smaller, classical=classical) for smaller in range(total + 1))
     if classical:
         return len(X.of_length(total))
     return sum(_count_degrees(X.q_degrees, total - length) * len(X.of_length(length)) for length in range(min(total, X.dim) + 1))
@@ -233,8 +240,12 @@ def _count_degrees(weights: tuple[int, ...], total: int) -> int:
     return sum(_count_degrees(weights[1:], total - x) for x in range(0, total + 1, weights[0]))
 
 
-def count_below(X: FlagVariety, total: int, outcome: tuple[SchubertClass, Degree], *, classical: bool = False) -> int:
+def count_below(
+    X: FlagVariety, total: int, outcome: tuple[SchubertClass, Degree], *, classical: bool = False, equivariant: bool = False
+) -> int:
     """The number of outcomes of ``count_cases`` that are smaller than a given outcome, without making them."""
+    if equivariant:
+        return sum(count_below(X, smaller, outcome, classical=classical) for smaller in range(total + 1))
     w, d = outcome
     smaller = 0
     for length in [total] if classical else range(min(total, X.dim) + 1):

@@ -46,49 +46,52 @@ def read_signed(value: Iterable[int], kind: CartanType, marked: Sequence[int]) -
                 f"in signed={w}"
             )
         seen[abs(entry)] = place
-    signs = [entry for entry in w if entry < 0]
-    if kind.letter == "D" and len(signs) % 2:
-        raise NotationError(f"expected an even number of signs in type D, got {len(signs)} in signed={w}: {_listed(signs)}")
-    for i in range(1, n + 1):
-        if i not in marked and (wrong := _fault(w, i, kind.letter)):
-            raise NotationError(f"expected a minimal representative, got {wrong} in signed={w}")
+    signs = sum(entry < 0 for entry in w)
+    if kind.letter == "D" and signs % 2:
+        raise NotationError(f"expected an even number of signs in type D, got {signs} in signed={w}")
+    levi = [i for i in range(1, n + 1) if i not in marked]
+    wrong = next((i for i in levi if _falls(w, i, kind.letter)), None)
+    if wrong is not None:
+        raise NotationError(f"expected a minimal representative, got {_fault(w, wrong, levi, kind.letter)}")
     return w
 
 
-def _listed(entries: Sequence[int]) -> str:
-    return ", ".join(map(str, entries))
-
-
-def _fault(w: Signed, i: int, letter: str) -> str:
-    """What is wrong if w turns the simple root ``alpha_i`` into a negative one, and how to sort; otherwise nothing."""
+def _falls(w: Signed, i: int, letter: str) -> bool:
+    """Whether w turns the simple root ``alpha_i`` into a negative one, that is ``l(w s_i) < l(w)``."""
     n = len(w)
-    order = f"the order 1, ..., {n}, -{n}, ..., -1"
-    if i < n:
-        if _spot(w[i - 1], n) < _spot(w[i], n):
-            return ""
-        return (
-            f"{w[i - 1]} before {w[i]} at entries {i} and {i + 1}: alpha_{i} = e_{i} - e_{i + 1} of the Levi becomes negative; sort the "
-            f"entries of each block by {order}"
-        )
-    if letter != "D":
-        if w[-1] > 0:
-            return ""
-        root = "e" if letter == "B" else "2 e"
-        return (
-            f"the sign of entry {n} = {w[-1]}: alpha_{n} = {root}_{n} of the Levi becomes negative; drop the signs of the last block and "
-            "sort its entries"
-        )
-    if _spot(w[-2], n) < _spot(-w[-1], n):
-        return ""
-    return (
-        f"{w[-2]}, {w[-1]} as entries {n - 1} and {n}: alpha_{n} = e_{n - 1} + e_{n} of the Levi becomes negative; change the sign of both "
-        f"and sort the last block with entry {n} negated, by {order}"
-    )
+    if i == n and letter != "D":
+        return w[-1] < 0
+    before, after = (w[i - 1], w[i]) if i < n else (w[-2], -w[-1])
+    return _spot(before, n) > _spot(after, n)
 
 
 def _spot(entry: int, n: int) -> int:
     """The place of an entry in the order ``1, ..., n, -n, ..., -1``."""
     return entry if entry > 0 else 2 * n + 1 + entry
+
+
+def _times(w: Signed, i: int, letter: str) -> Signed:
+    """``w s_i``."""
+    if i < len(w):
+        return (*w[: i - 1], w[i], w[i - 1], *w[i + 1 :])
+    return (*w[:-2], -w[-1], -w[-2]) if letter == "D" else (*w[:-1], -w[-1])
+
+
+def _fault(w: Signed, i: int, levi: Sequence[int], letter: str) -> str:
+    """Which root of the Levi falls, how to sort, and what comes out."""
+    n, best = len(w), w
+    while falling := [j for j in levi if _falls(best, j, letter)]:
+        best = _times(best, falling[0], letter)
+    if i < n:
+        what, root = f"{w[i - 1]} before {w[i]} at entries {i} and {i + 1}", f"e_{i} - e_{i + 1}"
+        how = f"sort each block by the order 1, ..., {n}, -{n}, ..., -1"
+    elif letter == "D":
+        what, root = f"{w[-2]}, {w[-1]} as entries {n - 1} and {n}", f"e_{n - 1} + e_{n}"
+        how = f"negate both, swap them, and sort each block by the order 1, ..., {n}, -{n}, ..., -1"
+    else:
+        what, root = f"entry {n} = {w[-1]}", f"e_{n}" if letter == "B" else f"2 e_{n}"
+        how = "drop the signs of the last block and sort it"
+    return f"{what} in signed={w}: alpha_{i} = {root} of the Levi becomes negative; {how}: the minimal representative is {best}"
 
 
 def strict_partition_of(w: Sequence[int], letter: str) -> tuple[int, ...]:

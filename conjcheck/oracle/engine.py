@@ -15,33 +15,33 @@ __all__ = ["Block", "Engine", "Product", "RowTerms", "blocks_by_rows"]
 RowTerms = dict[tuple[SchubertClass, Degree], int]
 
 
-class Product(dict[tuple[SchubertClass, Degree], int]):
+class Product(dict[tuple[SchubertClass, Degree], Any]):
     """A product of Schubert classes: ``{(w, d): N}``, nonzero terms only, in the order of cases (``sum d``, ``d``, ``w``).
+
+    The values are integers, or polynomials for an equivariant product.
 
     Prints as mathematics: ``q^(1) sigma(2) + q^(1) sigma(1,1)`` in text, LaTeX in notebooks.
     """
 
     @classmethod
-    def of(cls, terms: Mapping[tuple[SchubertClass, Degree], int]) -> "Product":
+    def of(cls, terms: Mapping[tuple[SchubertClass, Degree], Any]) -> "Product":
         """The product with its terms put in order."""
         return cls(sorted(terms.items(), key=lambda item: place_in_row(item[0])))
 
     def __repr__(self) -> str:
-        return (
-            " + ".join(
-                f"{count if count != 1 else ''}{' ' if count != 1 else ''}{_power('q^({})', d)}{w!r}"
-                for (w, d), count in self.items()
-            ).strip()
-            or "0"
-        )
+        return " + ".join(f"{_size(count)}{_power('q^({})', d)}{w!r}" for (w, d), count in self.items()) or "0"
 
     __str__ = __repr__
 
     def _repr_latex_(self) -> str:
-        body = " + ".join(
-            f"{count if count != 1 else ''}{_power('q^{{({})}}', d)}\\sigma_{{{w}}}" for (w, d), count in self.items()
-        )
+        body = " + ".join(f"{_size(count)}{_power('q^{{({})}}', d)}\\sigma_{{{w}}}" for (w, d), count in self.items())
         return f"${body or '0'}$"
+
+
+def _size(count: Any) -> str:
+    if count == 1:
+        return ""
+    return f"{count} " if isinstance(count, int) else f"({count}) "
 
 
 def _power(shape: str, d: Degree) -> str:

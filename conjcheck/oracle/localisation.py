@@ -37,7 +37,7 @@ from conjcheck.geometry.weyl import Ints, roots, weight_drops, weight_images
 from conjcheck.oracle.engine import Block, RowTerms, blocks_by_rows
 from conjcheck.oracle.guard import note_question
 
-__all__ = ["MOST_CLASSES", "MOST_WORK", "Localisation", "LocalisationEngine", "localisation"]
+__all__ = ["MOST_CLASSES", "MOST_WORK", "Localisation", "LocalisationEngine", "localisation", "primes"]
 
 MOST_CLASSES = 1_000
 """The coordinates of all classes are square tables of this size, one for each power of z."""
@@ -46,7 +46,8 @@ MOST_WORK = 400_000_000
 """Above about so many modular multiplications a row is out of reach; about ten seconds."""
 
 
-def _primes(count: int) -> list[int]:
+@lru_cache
+def primes(count: int) -> list[int]:
     """The largest primes below ``2^31``."""
     found: list[int] = []
     p = 2**31 - 1
@@ -108,38 +109,49 @@ def _terms(X: FlagVariety) -> _Terms:
     return _Terms(targets[take, order], coefficients[take, order], weights[take, order], valid[take, order])
 
 
+class _Numbers:
+    """Residues for the simple roots and for a divisor that separate the eigenvalues of X.
+
+    Args:
+        X: the variety.
+        p: the prime.
+        seed: chooses the residues; the same seed, the same residues.
+    """
+
+    def __init__(self, X: FlagVariety, p: int, seed: int) -> None:
+        marked = [i - 1 for i in X.marked]
+        drops = weight_drops(X.kind, X.marked)[:, marked, :]
+        size = len(drops)
+        for attempt in range(100):
+            chooser = np.random.default_rng([p, seed, attempt])
+            self.divisor = chooser.integers(1, p, size=len(marked), dtype=np.int64)
+            self.simple = chooser.integers(1, p, size=X.rank, dtype=np.int64)
+            self.values: Ints = np.zeros(size, dtype=np.int64)
+            for k in range(len(marked)):
+                mine = np.zeros(size, dtype=np.int64)
+                for i in range(X.rank):
+                    mine = (mine + drops[:, k, i] % p * self.simple[i]) % p
+                self.values = (self.values + mine * self.divisor[k]) % p
+            if len(np.unique(self.values)) == size:
+                return
+        raise AssertionError("no numbers that separate the eigenvalues among 100 choices")
+
+
 class _Point:
     """The coordinates ``sigma_u|_w(z)`` at one choice of numbers, up to a power of z.
 
     Args:
         X: the variety.
         p: the prime.
+        numbers: residues for the simple roots and the divisor.
         g: the residues ``g_i`` in ``q_i = g_i z^{deg q_i / step}``.
         depth: the highest power of z.
         step: the common divisor of the degrees of the q's: z has that degree.
-        seed: chooses the other numbers.
     """
 
-    def __init__(self, X: FlagVariety, p: int, g: list[int], depth: int, step: int, seed: int) -> None:
+    def __init__(self, X: FlagVariety, p: int, numbers: _Numbers, g: list[int], depth: int, step: int) -> None:
         self.p, self.depth = p, depth
-        whole, terms = orbit_of(X), _terms(X)
-        marked = [i - 1 for i in X.marked]
-        drops = weight_drops(X.kind, X.marked)[:, marked, :]
-        size = len(whole.lengths)
-        for attempt in range(100):
-            chooser = np.random.default_rng([seed, attempt])
-            divisor = chooser.integers(1, p, size=len(marked), dtype=np.int64)
-            simple = chooser.integers(1, p, size=X.rank, dtype=np.int64)
-            values = np.zeros(size, dtype=np.int64)
-            for k in range(len(marked)):
-                mine = np.zeros(size, dtype=np.int64)
-                for i in range(X.rank):
-                    mine = (mine + drops[:, k, i] % p * simple[i]) % p
-                values = (values + mine * divisor[k]) % p
-            if len(np.unique(values)) == size:
-                break
-        else:
-            raise AssertionError("no numbers that separate the eigenvalues among 100 choices")
+        whole, terms, divisor = orbit_of(X), _terms(X), numbers.divisor
         scale = np.ones(terms.targets.shape, dtype=np.int64)
         total = np.zeros(terms.targets.shape, dtype=np.int64)
         for k, residue in enumerate(g):
@@ -148,7 +160,7 @@ class _Point:
             scale = scale * powers[used] % p
             total = (total + np.where(terms.valid, terms.coefficients[:, :, k], 0) * divisor[k]) % p
         coefficients = np.where(terms.valid, total * scale % p, 0)
-        self.values = self._solve(whole.lengths, terms.targets, coefficients, terms.weights // step, values)
+        self.values = self._solve(whole.lengths, terms.targets, coefficients, terms.weights // step, numbers.values)
         self.back = self._invert(self.values[0])
 
     def _solve(self, lengths: Ints, targets: Ints, coefficients: Ints, shifts: Ints, values: Ints) -> Ints:
@@ -221,13 +233,19 @@ class Localisation:
     def __init__(self, X: FlagVariety) -> None:
         self.X = X
         self.step = gcd(*X.q_degrees)
+        self.seed = 0
         self._bounds: dict[tuple[int, int], int] = {}
 
-    @lru_cache(maxsize=256)  # noqa: B019  # lives as long as the variety
-    def _point(self, p: int, power: int, depth: int) -> _Point:
+    @lru_cache(maxsize=64)  # noqa: B019  # lives as long as the variety
+    def numbers(self, p: int, seed: int) -> _Numbers:
+        """Residues for the simple roots and the divisor."""
+        return _Numbers(self.X, p, seed)
+
+    @lru_cache(maxsize=256)  # noqa: B019
+    def _point(self, p: int, seed: int, power: int, depth: int) -> _Point:
         """The coordinates at the power-th power of the base point; one q needs no point but 1."""
         base = [1] if len(self.X.marked) == 1 else [pow(x, power, p) for x in self._base(p)]
-        return _Point(self.X, p, base, depth, self.step, seed=power)
+        return _Point(self.X, p, self.numbers(p, seed), base, depth, self.step)
 
     def _base(self, p: int) -> list[int]:
         return [int(x) for x in np.random.default_rng(p).integers(2, p, size=len(self.X.marked))]
@@ -275,18 +293,14 @@ class Localisation:
         X, total, depth = self.X, u.length + v.length, most // self.step
         candidates = [degrees_of_total(X, e * self.step) if total - e * self.step >= 0 else () for e in range(depth + 1)]
         bound = self.bound(u.index, v.index)
-        primes = _primes(1)
-        while prod(primes) <= bound:
-            primes = _primes(len(primes) + 1)
-        count = 1 if len(X.marked) == 1 else max(map(len, candidates))
-        residues: list[dict[tuple[SchubertClass, Degree], int]] = []
-        for p in primes:
-            products = [self._point(p, k, depth).product(u.index, v.index) for k in range(count)]
-            residues.append(self._resolve(p, products, candidates, total))
+        chosen = primes(1)
+        while prod(chosen) <= bound:
+            chosen = primes(len(chosen) + 1)
+        residues = [self._residues(p, self.seed, u.index, v.index, candidates, total, equivariant=False) for p in chosen]
         result: RowTerms = {}
         for key in residues[0]:
             value, modulus = 0, 1
-            for p, found in zip(primes, residues, strict=True):
+            for p, found in zip(chosen, residues, strict=True):
                 value += modulus * ((found[key] - value) * pow(modulus, -1, p) % p)
                 modulus *= p
             assert value <= bound, "a residue exceeds the bound: not a structure constant"
@@ -294,13 +308,16 @@ class Localisation:
                 result[key] = value
         return result
 
-    def _resolve(
-        self, p: int, products: list[Ints], candidates: list[tuple[Degree, ...]], total: int
+    def _residues(
+        self, p: int, seed: int, u: int, v: int, candidates: list[tuple[Degree, ...]], total: int, *, equivariant: bool
     ) -> dict[tuple[SchubertClass, Degree], int]:
-        """Residues of the constants, from the coefficients of z at all points."""
-        X, found = self.X, {}
+        """Residues of the constants, from the coefficients of z at all powers of the base point."""
+        X, found, depth = self.X, {}, len(candidates) - 1
+        count = 1 if len(X.marked) == 1 else max(map(len, candidates))
+        products = [self._point(p, seed, k, depth).product(u, v) for k in range(count)]
         for e, degrees in enumerate(candidates):
-            level = X.of_length(total - e * self.step)
+            left = total - e * self.step
+            level = tuple(w for w in X.classes if w.length <= left) if equivariant else X.of_length(left)
             if not level or not degrees:
                 continue
             values = np.stack([product[e, [w.index for w in level]] for product in products[: len(degrees)]])
@@ -310,6 +327,15 @@ class Localisation:
             for d, line in zip(degrees, values.tolist(), strict=True):
                 found.update({(w, d): value for w, value in zip(level, line, strict=True)})
         return found
+
+    def equivariant_residues(
+        self, u: SchubertClass, v: SchubertClass, most: int, prime: int, seed: int
+    ) -> dict[tuple[SchubertClass, Degree], int]:
+        """All equivariant constants ``c_{u,v}^{w,d}`` with q-degree up to ``most``, modulo the prime-th prime, at ``numbers(p, seed)``."""
+        note_question()
+        total = u.length + v.length
+        candidates = [degrees_of_total(self.X, e * self.step) for e in range(min(most, total) // self.step + 1)]
+        return self._residues(primes(prime + 1)[prime], seed, u.index, v.index, candidates, total, equivariant=True)
 
 
 def _vandermonde(nodes: list[int], values: Ints, p: int) -> Ints:
@@ -354,7 +380,8 @@ class LocalisationEngine:
         """About how many modular multiplications the powers of q up to a degree take."""
         return localisation(X).work(total)
 
-    def _check(self, X: FlagVariety, total: int) -> None:
+    def check(self, X: FlagVariety, total: int) -> None:
+        """Raise ``OutOfReach`` if the powers of q up to a degree take too much work."""
         if (work := self.work(X, total)) > MOST_WORK:
             raise OutOfReach(f"expected a product of at most {MOST_WORK:,} modular multiplications, got about {work:,} on {X}")
 
@@ -364,12 +391,12 @@ class LocalisationEngine:
         Raises:
             OutOfReach: there are too many q's and too high powers of them.
         """
-        self._check(u.variety, u.length + v.length)
+        self.check(u.variety, u.length + v.length)
         return localisation(u.variety).row(u, v)
 
     def constant(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree) -> int:
         """One constant; cheaper than its row if d is small."""
-        self._check(u.variety, max(u.length + v.length - w.length, 0))
+        self.check(u.variety, max(u.length + v.length - w.length, 0))
         return localisation(u.variety).constant(u, v, w, d)
 
     def blocks(self, X: FlagVariety) -> Iterator[Block]:

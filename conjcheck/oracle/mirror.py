@@ -14,6 +14,7 @@ Mirror symmetry and toric degenerations of partial flag manifolds, Acta Math. 18
 from collections.abc import Callable
 from importlib.util import find_spec
 from itertools import pairwise
+from itertools import product as cartesian
 from typing import Any
 
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
@@ -21,7 +22,14 @@ from conjcheck.oracle.engine import RowTerms
 
 __all__ = ["CRITICAL_POINTS", "critical_values", "has_sympy", "spectrum"]
 
-CRITICAL_POINTS = {"Gr(1,3)": (3, 1.0), "Gr(2,4)": (4, 1.0), "Gr(2,5)": (10, 5.0), "Fl(3)": (6, 1.0), "Fl(1,3;4)": (9, 5.0), "Fl(1,2;4)": (11, 60.0)}
+CRITICAL_POINTS = {
+    "Gr(1,3)": (3, 1.0),
+    "Gr(2,4)": (4, 1.0),
+    "Gr(2,5)": (10, 5.0),
+    "Fl(3)": (6, 1.0),
+    "Fl(1,3;4)": (9, 5.0),
+    "Fl(1,2;4)": (11, 60.0),
+}
 """The spaces where this is tried: how many critical points the potential has there (computed, no source), and about how many seconds it takes.
 
 On ``Gr(2,4)``, ``Fl(1,3;4)`` and ``Fl(1,2;4)`` these are fewer than the 6, 12 and 12 Schubert classes: known of toric potentials, common practice.
@@ -51,33 +59,41 @@ def _potential(X: FlagVariety) -> tuple[Any, list[Any]]:
 
 
 def critical_values(X: FlagVariety) -> tuple[Any, int]:
-    """A squarefree polynomial over Q whose roots are the critical values, and the number of critical points.
+    """A squarefree polynomial in t over Q whose roots are the critical values, and the number of critical points.
 
-    Cost: a Groebner basis in dim X + 2 variables.
+    The critical points are the zeros of an ideal; its quotient has the standard monomials of a Groebner basis as a basis, and the
+    eigenvalues of multiplication by the potential are the critical values. ``z`` is the inverse of the product of all variables.
+
+    Cost: a Groebner basis in dim X + 1 variables.
     """
     import sympy
 
     potential, variables = _potential(X)
-    value, unit = sympy.symbols("t z")
+    inverse = sympy.Symbol("z")
+    symbols = (inverse, *variables)
+    whole = sympy.prod(variables)
     equations = [sympy.numer(sympy.together(sympy.diff(potential, x))) for x in variables]
-    equations += [sympy.numer(sympy.together(potential - value)), unit * sympy.prod(variables) - 1]
-    basis = sympy.groebner(equations, unit, *variables, value, order="grevlex").fglm("lex")
-    last = sympy.Poly(basis.exprs[-1], value)
-    heads = [sympy.Poly(f, unit, *variables, value).monoms(order="lex")[0] for f in basis.exprs]
-    return sympy.quo(last, sympy.gcd(last, last.diff(value))), _standard_monomials(heads)
+    basis = sympy.groebner([*equations, inverse * whole - 1], *symbols, order="grevlex")
+    heads = [sympy.Poly(f, *symbols).monoms(order="grevlex")[0] for f in basis.exprs]
+    places = {term: k for k, term in enumerate(_standard_monomials(heads))}
+    as_polynomial = sympy.expand(inverse * sympy.expand(potential * whole))
+    matrix = sympy.zeros(len(places))
+    for term, k in places.items():
+        factor = sympy.prod(x**e for x, e in zip(symbols, term, strict=True))
+        for found, count in sympy.Poly(basis.reduce(sympy.expand(as_polynomial * factor))[1], *symbols).terms():
+            matrix[k, places[found]] = count
+    polynomial = matrix.charpoly(sympy.Symbol("t")).as_poly()
+    return sympy.quo(polynomial, sympy.gcd(polynomial, polynomial.diff())), len(places)
 
 
-def _standard_monomials(heads: list[tuple[int, ...]]) -> int:
-    """The dimension of the quotient by an ideal of dimension 0 with these leading exponents."""
+def _standard_monomials(heads: list[tuple[int, ...]]) -> list[tuple[int, ...]]:
+    """The exponents that no leading exponent divides, for an ideal of dimension 0."""
     bounds = [next(head[i] for head in heads if sum(head) == head[i] > 0) for i in range(len(heads[0]))]
-    count, todo = 0, [()]
-    while todo:
-        term: tuple[int, ...] = todo.pop()
-        if len(term) == len(bounds):
-            count += not any(all(a >= b for a, b in zip(term, head, strict=True)) for head in heads)
-        else:
-            todo += [(*term, x) for x in range(bounds[len(term)])]
-    return count
+    return [
+        term
+        for term in cartesian(*map(range, bounds))
+        if not any(all(a >= b for a, b in zip(term, head, strict=True)) for head in heads)
+    ]
 
 
 def spectrum(X: FlagVariety, row: Callable[[SchubertClass, SchubertClass], RowTerms]) -> Any:

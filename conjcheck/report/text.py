@@ -8,10 +8,11 @@ from typing import Any
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import SchubertClass
 from conjcheck.oracle.engine import Product
-from conjcheck.testing.answer import shown_number
+from conjcheck.oracle.equivariant import Sampled
+from conjcheck.testing.answer import shown_value
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer
-from conjcheck.testing.outcome import Outcome, environment
+from conjcheck.testing.outcome import Outcome, environment, smaller_agree
 
 __all__ = ["describe_class", "summary_table", "text_report"]
 
@@ -70,7 +71,7 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
             lines += ["", *("    " + line for line in finding.trace.rstrip().splitlines()), ""]
         return lines + _entry("minimal", _minimality(outcome))
     if finding.rule is not None:
-        lines += _entry("rule", shown_number(finding.rule))
+        lines += _entry("rule", shown_value(finding.rule))
         if finding.objects is not None:
             lines += _entry("objects", "; ".join(finding.objects) or "none")
     if finding.oracle is not None:
@@ -79,13 +80,11 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
         lines += _entry("confirmed", outcome.confirmed_by)
     if outcome.explanation:
         lines += _entry("kind", ", ".join(outcome.explanation.kinds) or finding.detail)
-        if outcome.explanation.by_rule is not None:
-            asked = ", asked only where the oracle is not 0" if outcome.explanation.partial else ""
-            lines += _entry("product", f"by the rule{asked}: {_product(outcome.explanation.by_rule)}")
-        lines += _entry(
-            "" if outcome.explanation.by_rule is not None else "product",
-            f"by the oracle: {_product(outcome.explanation.by_oracle)}",
-        )
+        asked = ", asked only where the oracle is not 0" if outcome.explanation.partial else ""
+        sides = [(f"by the rule{asked}", outcome.explanation.by_rule), ("by the oracle", outcome.explanation.by_oracle)]
+        shown = [f"{side}: {_product(product)}" for side, product in sides if product is not None]
+        for label, text in zip(["product", ""], shown, strict=False):
+            lines += _entry(label, text)
     lines += _entry("minimal", _minimality(outcome))
     if outcome.layer:
         lines += _layer(outcome.layer, finding.row)
@@ -97,7 +96,7 @@ def _minimality(outcome: Outcome) -> str:
     if minimum is None:
         return "not looked at: only this case was compared"
     if minimum.certified:
-        return f"yes: all {minimum.below:,} smaller cases were compared and agree"
+        return f"yes: {smaller_agree(minimum.below, 'were compared and agree')}"
     return f"not certain: {minimum.reach}"
 
 
@@ -112,11 +111,15 @@ def _layer(layer: Layer, row: Row) -> list[str]:
         text = f"at least {pairs} of {row.X}: {cases:,} failing {'case' if cases == 1 else 'cases'} in {orbits} among {layer.rows:,} rows"
     lines = _entry("layer", text)
     for finding in layer.findings[:_MOST_LINES]:
-        values = f": rule {shown_number(finding.rule)}, oracle {finding.oracle}" if finding.rule is not None else ""
+        values = f": rule {shown_value(finding.rule)}, oracle {_oracle_value(finding)}" if finding.rule is not None else ""
         lines += _entry("", str(finding.where).removeprefix(f"{row.X}: ") + values, wrap=False)
     if cases > _MOST_LINES:
         lines += _entry("", f"... {cases - _MOST_LINES:,} more")
     return lines
+
+
+def _oracle_value(finding: Finding) -> str:
+    return "another polynomial" if isinstance(finding.oracle, Sampled) else str(finding.oracle)
 
 
 def describe_class(u: SchubertClass) -> str:

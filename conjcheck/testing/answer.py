@@ -4,7 +4,13 @@ from collections.abc import Iterable, Mapping
 from reprlib import Repr
 from typing import Any
 
-__all__ = ["WrongAnswer", "count_of", "shown_number", "shown_objects", "truth_of"]
+from conjcheck.geometry.polynomial import RootPolynomial, read_polynomial
+from conjcheck.oracle.equivariant import MOST_DEGREE
+
+__all__ = ["Value", "WrongAnswer", "count_of", "polynomial_of", "shown_objects", "shown_value", "truth_of"]
+
+Value = int | RootPolynomial
+"""What a rule gives at a case: a count, or in the equivariant rings a polynomial."""
 
 _MOST_SHOWN = 12
 _SHORT, _LONG = Repr(), Repr()
@@ -37,9 +43,28 @@ def shown_objects(answer: Any) -> tuple[str, ...] | None:
     return shown if len(objects) <= _MOST_SHOWN else (*shown, f"... {len(objects) - _MOST_SHOWN} more")
 
 
-def shown_number(number: int) -> str:
-    """An integer in digits, or its size if it has too many of them."""
-    return str(number) if number.bit_length() < 4_000 else f"an integer of {number.bit_length():,} bits"
+def shown_value(value: object) -> str:
+    """A value as text; of an integer with too many digits only its size."""
+    if isinstance(value, int) and value.bit_length() >= 4_000:
+        return f"an integer of {value.bit_length():,} bits"
+    return str(value)
+
+
+def polynomial_of(answer: Any, rank: int) -> RootPolynomial:
+    """The polynomial in the simple roots that an answer stands for.
+
+    Raises:
+        WrongAnswer: it stands for none, or for one of a degree that no structure constant has.
+    """
+    found = read_polynomial(answer, rank)
+    if found is None:
+        raise WrongAnswer(
+            f"expected a polynomial in the {rank} simple roots, got {_kind(answer)} {_SHORT.repr(answer)}; build it from simple_roots(X), "
+            "or as a sympy expression in alpha1, alpha2, ... with integer coefficients"
+        )
+    if found.degree > MOST_DEGREE:
+        raise WrongAnswer(f"expected a polynomial of degree at most {MOST_DEGREE}, got one of degree {found.degree}")
+    return found
 
 
 def _counted(answer: Any) -> tuple[int, list[Any] | None]:
@@ -61,7 +86,7 @@ def _counted(answer: Any) -> tuple[int, list[Any] | None]:
     else:
         return _distinct(answer)
     if number < 0:
-        raise WrongAnswer(f"expected a count of 0 or more, got the negative number {shown_number(number)}")
+        raise WrongAnswer(f"expected a count of 0 or more, got the negative number {shown_value(number)}")
     return number, None
 
 

@@ -11,20 +11,22 @@ from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import NotationError
-from conjcheck.geometry.case import Case, Row, read_degree
+from conjcheck.geometry.case import Case, Row, count_below, count_cases, outcomes, read_degree
 from conjcheck.geometry.flag_variety import Degree, SchubertClass
-from conjcheck.oracle.engine import RowTerms
 from conjcheck.oracle.guard import Watch, watched
-from conjcheck.testing.answer import WrongAnswer, count_of, shown_number, truth_of
+from conjcheck.testing.answer import Value, WrongAnswer, count_of, polynomial_of, shown_value, truth_of
 from conjcheck.testing.asker import Asker
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.limits import CallInterrupted, CallLimit
 from conjcheck.testing.trouble import trouble
 
-__all__ = ["Key", "RuleCalls"]
+__all__ = ["Key", "RuleCalls", "Values"]
 
 Key = tuple[SchubertClass, Degree]
 """An outcome ``(w, d)`` of a row."""
+
+Values = dict[Key, Value]
+"""A rule's values on a row."""
 
 _DOUBTS = 8
 _DOUBT_SECONDS = 0.5
@@ -46,6 +48,27 @@ class RuleCalls:
         self.is_claim = conjecture.role == "claim"
         self._premise_hangs = False
         self.oracle: tuple[Asker, ...] = (self.asker,) if self.is_claim else ()
+        self._rings = {"classical": conjecture.is_classical, "equivariant": conjecture.is_equivariant}
+
+    def outcomes(self, row: Row) -> tuple[Key, ...]:
+        """All outcomes of a row that the conjecture's ring has, in order."""
+        return outcomes(row.X, row.u.length + row.v.length, **self._rings)
+
+    def size(self, row: Row) -> int:
+        """Their number, without making them."""
+        return count_cases(row.X, row.u.length + row.v.length, **self._rings)
+
+    def below(self, row: Row, key: Key) -> int:
+        """The number of outcomes smaller than a given one."""
+        return count_below(row.X, row.u.length + row.v.length, key, **self._rings)
+
+    def read(self, answer: Any, row: Row) -> Value:
+        """The value an answer stands for: a count, or a polynomial in the equivariant rings.
+
+        Raises:
+            WrongAnswer: it stands for none.
+        """
+        return polynomial_of(answer, row.X.rank) if self.conjecture.is_equivariant else count_of(answer)
 
     def inside(self, row: Row) -> bool:
         """Whether the premise on rows holds (a premise on cases is asked case by case).
@@ -93,7 +116,7 @@ class RuleCalls:
         tail = (case.w,) if conjecture.is_classical else (case.w, case.d)
         return bool(conjecture.premise(case.X, case.u, case.v, *tail))
 
-    def values(self, row: Row, keys: Iterable[Key]) -> dict[Key, int]:
+    def values(self, row: Row, keys: Iterable[Key]) -> Values:
         """The rule's nonzero values at those of some outcomes of a row that the premise admits; none for a claim.
 
         A rule that answers by rows gives all its admitted values, also at other outcomes. Raises whatever the rule raises;
@@ -108,12 +131,12 @@ class RuleCalls:
                 if self.conjecture.by_rows:
                     whole = self.whole(self.conjecture.rule(row.X, row.u, row.v), row)
                     return {key: n for key, n in whole.items() if self.admits(Case(row.X, row.u, row.v, *key))}
-                found = {}
+                found: Values = {}
                 for key in keys:
                     self.limit.started = perf_counter()
                     if by_cases and not self.admits(Case(row.X, row.u, row.v, *key)):
                         continue
-                    if count := count_of(self.conjecture.rule(*self.arguments(row, *key))):
+                    if count := self.read(self.conjecture.rule(*self.arguments(row, *key)), row):
                         found[key] = count
                 return found
             finally:
@@ -124,7 +147,7 @@ class RuleCalls:
         tail = (w,) if self.conjecture.is_classical else (w, d)
         return (row.X, row.u, row.v, *tail, *self.oracle)
 
-    def whole(self, answer: Any, row: Row) -> RowTerms:
+    def whole(self, answer: Any, row: Row) -> Values:
         """A rule's answer for a whole row as ``{(w, d): count}``, zeros dropped.
 
         Raises:
@@ -136,7 +159,7 @@ class RuleCalls:
                 f"expected a mapping {expected} for a whole product, got {type(answer).__name__} {reprlib.repr(answer)}"
             )
         zero = (0,) * len(row.X.marked)
-        values: RowTerms = {}
+        values: Values = {}
         for key, value in answer.items():
             try:
                 w, d = (key, zero) if self.conjecture.is_classical else key
@@ -147,7 +170,7 @@ class RuleCalls:
                 raise WrongAnswer(f"expected keys as in {expected}, got the key {reprlib.repr(key)} ({error})") from None
             if (w, d) in values:
                 raise WrongAnswer(f"expected one value for each outcome, got two keys for {w!r} and d={d}")
-            values[w, d] = value if type(value) is int and value >= 0 else count_of(value)
+            values[w, d] = self.read(value, row)
         return {key: count for key, count in values.items() if count}
 
     def trouble(self, place: Case | Row, error: BaseException) -> Finding:
@@ -170,7 +193,7 @@ class RuleCalls:
 
     def _portrait(self, finding: Finding) -> str:
         if finding.status == "refuted":
-            return "False" if self.is_claim else shown_number(finding.rule or 0)
+            return "False" if self.is_claim else shown_value(finding.rule or 0)
         return _kind_of_trouble(finding)
 
     def _answer_again(self, place: Case | Row) -> str:
@@ -188,11 +211,11 @@ class RuleCalls:
                     if self.is_claim:
                         return str(truth_of(answer))
                     values = self.whole(answer, row)
-                    return shown_number(values.get((place.w, place.d), 0)) if isinstance(place, Case) else "an answer"
+                    return shown_value(values.get((place.w, place.d), 0)) if isinstance(place, Case) else "an answer"
                 if not isinstance(place, Case):
                     return "an answer"
                 answer = rule(*self.arguments(row, place.w, place.d))
-                return str(truth_of(answer)) if self.is_claim else shown_number(count_of(answer))
+                return str(truth_of(answer)) if self.is_claim else shown_value(self.read(answer, row))
             except KeyboardInterrupt:
                 raise
             except BaseException as error:

@@ -8,16 +8,19 @@ from time import perf_counter
 from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.geometry.case import Case, Row, count_below, count_cases, degrees_of_total, outcomes, place_in_row
+from conjcheck.geometry.case import Case, Row, degrees_of_total, place_in_row
 from conjcheck.geometry.flag_variety import Degree
 from conjcheck.oracle import row_terms
-from conjcheck.oracle.engine import RowTerms
+from conjcheck.oracle.equivariant import Sampled, equivariant_terms
 from conjcheck.oracle.guard import Watch, watched
-from conjcheck.testing.answer import WrongAnswer, count_of, shown_number, shown_objects, truth_of
-from conjcheck.testing.calls import Key, RuleCalls
+from conjcheck.testing.answer import Value, WrongAnswer, shown_objects, shown_value, truth_of
+from conjcheck.testing.calls import Key, RuleCalls, Values
 from conjcheck.testing.finding import Finding
 
-__all__ = ["Comparer", "Key", "RowResult"]
+__all__ = ["Comparer", "Key", "RowResult", "Truth"]
+
+Truth = dict[Key, Any]
+"""The oracle's nonzero terms of a row: integers, or sampled polynomials in the equivariant rings."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,10 +56,12 @@ class Comparer(RuleCalls):
         self.cross_check = cross_check
         self._progress: tuple[Key | None, int, int] = None, 0, 0
 
-    def truth(self, row: Row) -> RowTerms:
+    def truth(self, row: Row) -> Truth:
         """The oracle's nonzero terms that the conjecture speaks about."""
+        if self.conjecture.is_equivariant:
+            return dict(equivariant_terms(row.u, row.v, quantum=not self.conjecture.is_classical))
         terms = row_terms(row.u, row.v, cross_check=self.cross_check)
-        return {key: n for key, n in terms.items() if not any(key[1])} if self.conjecture.is_classical else terms
+        return {key: n for key, n in terms.items() if not (self.conjecture.is_classical and any(key[1]))}
 
     def row(self, row: Row, *, deadline: float = float("inf"), most_cases: int | None = None) -> RowResult:
         """Compare one row, up to the first thing wrong.
@@ -89,7 +94,7 @@ class Comparer(RuleCalls):
         """Compare one single case."""
         return self._compare(case.row, self.truth(case.row), only=(case.w, case.d)).finding
 
-    def _compare(self, row: Row, truth: RowTerms, **choices: Any) -> RowResult:
+    def _compare(self, row: Row, truth: Truth, **choices: Any) -> RowResult:
         """Compare under guard and limit; whatever ends a call becomes a finding."""
         watch = Watch()
         self._progress = None, 0, 0
@@ -115,7 +120,7 @@ class Comparer(RuleCalls):
     def _walk(
         self,
         row: Row,
-        truth: RowTerms,
+        truth: Truth,
         *,
         deadline: float = float("inf"),
         most_cases: int | None = None,
@@ -130,8 +135,8 @@ class Comparer(RuleCalls):
         if conjecture.premise is not None and conjecture.premise_by_rows and not conjecture.premise(X, u, v):
             return RowResult(0, 0, None, True)
         premise = None if conjecture.premise_by_rows else conjecture.premise
-        size = count_cases(X, u.length + v.length, classical=classical)
-        values: RowTerms | None = None
+        size, counting = self.size(row), not conjecture.is_equivariant
+        values: Values | None = None
         complete, agreeing = only is None, 0
         keys: Iterable[Key]
         if conjecture.by_rows:
@@ -147,11 +152,11 @@ class Comparer(RuleCalls):
                 keys = sorted({*values, *truth}, key=place_in_row)
                 agreeing = max(size - len(keys), 0)
             else:
-                keys = sorted({*values, *outcomes(X, u.length + v.length, classical=classical)}, key=place_in_row)
+                keys = sorted({*values, *self.outcomes(row)}, key=place_in_row)
         elif most_cases is not None and size > most_cases:
-            keys, complete = _sample(row, truth, most_cases, classical), False
+            keys, complete = _sample(row, truth, most_cases, self.conjecture), False
         else:
-            keys = outcomes(X, u.length + v.length, classical=classical)
+            keys = self.outcomes(row)
         if only is not None:
             keys = [only]
         cases = nonzero = 0
@@ -173,22 +178,24 @@ class Comparer(RuleCalls):
                 if claimed:
                     count = true if truth_of(answer) else -1
                 else:
-                    count = answer if type(answer) is int and answer >= 0 else count_of(answer)
+                    count = answer if counting and type(answer) is int and answer >= 0 else self.read(answer, row)
             if count != true:
                 limit.started = 0.0
                 if values is not None and premise is None:
-                    cases = count_below(X, u.length + v.length, key, classical=classical)
+                    cases = self.below(row, key)
                 return RowResult(cases, nonzero, self._difference(Case(X, u, v, w, d), count, true), complete)
             cases += 1
             if true:
                 nonzero += 1
         return RowResult(cases + agreeing, nonzero, None, complete)
 
-    def _difference(self, place: Case, count: int, true: int) -> Finding:
+    def _difference(self, place: Case, count: Value, true: Value | Sampled) -> Finding:
         """The finding for two values that differ, with the rule's objects if it gives objects."""
         if self.is_claim:
             return Finding("refuted", place, None, true, f"the claim is false here; the constant is {true}")
         conjecture = self.conjecture
+        if conjecture.is_equivariant:
+            return Finding("refuted", place, count, true, f"the rule gives {count}, the oracle another polynomial")
         if conjecture.by_rows:
             answer = conjecture.rule(place.X, place.u, place.v)
             answer = answer.get(place.w if conjecture.is_classical else (place.w, place.d), 0)
@@ -198,10 +205,10 @@ class Comparer(RuleCalls):
             objects = shown_objects(answer)
         except WrongAnswer:
             objects = None
-        return Finding("refuted", place, count, true, f"the rule gives {shown_number(count)}, the oracle {true}", objects)
+        return Finding("refuted", place, count, true, f"the rule gives {shown_value(count)}, the oracle {true}", objects)
 
 
-def _sample(row: Row, truth: RowTerms, most: int, classical: bool) -> list[Key]:
+def _sample(row: Row, truth: Truth, most: int, conjecture: Conjecture) -> list[Key]:
     """All nonzero outcomes of a row and a sample of the others, the same every time, in order."""
     chooser = random.Random(str(row))  # noqa: S311  # a reproducible sample, no secret
     X, total = row.X, row.u.length + row.v.length
@@ -210,8 +217,10 @@ def _sample(row: Row, truth: RowTerms, most: int, classical: bool) -> list[Key]:
     for _ in range(max(most - len(truth), 0)):
         w = chooser.choice(X.classes)
         left = total - w.length
+        if conjecture.is_equivariant and left > 0:
+            left = chooser.randint(0, left)
         if left not in weights:
-            weights[left] = degrees_of_total(X, left) if not classical or left == 0 else ()
+            weights[left] = degrees_of_total(X, left) if not conjecture.is_classical or left == 0 else ()
         if weights[left]:
             keys.add((w, chooser.choice(weights[left])))
     return sorted(keys, key=place_in_row)

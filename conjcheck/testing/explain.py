@@ -2,14 +2,19 @@
 
 from dataclasses import dataclass
 
-from conjcheck.geometry.case import Case, Row, outcomes
+from conjcheck.geometry.case import Case, Row
+from conjcheck.geometry.polynomial import RootPolynomial
 from conjcheck.oracle.engine import Product
-from conjcheck.testing.compare import Comparer, Key
+from conjcheck.oracle.equivariant import equivariant_constant, number_of_monomials
+from conjcheck.testing.calls import Key, Values
+from conjcheck.testing.compare import Comparer
 from conjcheck.testing.finding import Finding
 
 __all__ = ["Explanation", "explain"]
 
 _MOST_OUTCOMES = 4_000
+_MOST_POLYNOMIALS = 12
+_MOST_MONOMIALS = 40
 
 
 @dataclass(frozen=True, slots=True)
@@ -19,12 +24,12 @@ class Explanation:
     Attributes:
         kinds: the kinds of failure, e.g. ``("undercount", "support")``.
         by_rule: the rule's product of the row, ``None`` for a claim; ``partial`` if it was asked only where the oracle is nonzero.
-        by_oracle: the true product.
+        by_oracle: the true product; ``None`` if its polynomials are too many or too long to be written out.
     """
 
     kinds: tuple[str, ...]
     by_rule: Product | None
-    by_oracle: Product
+    by_oracle: Product | None
     partial: bool
 
 
@@ -36,18 +41,20 @@ def explain(comparer: Comparer, finding: Finding) -> Explanation:
     ``not symmetric`` (the rule gives another value for v, u).
     """
     row = finding.row
+    if comparer.conjecture.is_equivariant:
+        return _explain_polynomials(comparer, finding)
     truth = comparer.truth(row)
     by_oracle = Product.of(truth)
     if comparer.conjecture.role == "claim":
         return Explanation(("false claim",), None, by_oracle, False)
-    every = list(outcomes(row.X, row.u.length + row.v.length, classical=comparer.conjecture.is_classical))
+    every = list(comparer.outcomes(row))
     partial = len(every) > _MOST_OUTCOMES and not comparer.conjecture.by_rows
     keys = [*truth] if partial else every
     with comparer.limit:
         values = _values(comparer, row, keys)
         kinds = []
-        if isinstance(finding.where, Case) and finding.rule is not None and finding.oracle is not None:
-            case, rule, true = finding.where, finding.rule, finding.oracle
+        case, rule, true = finding.where, finding.rule, finding.oracle
+        if isinstance(case, Case) and isinstance(rule, int) and isinstance(true, int):
             values.update({(case.w, case.d): rule} if rule else {})
             kinds.append("undercount" if rule < true else "overcount")
             if not rule or not true:
@@ -64,7 +71,31 @@ def explain(comparer: Comparer, finding: Finding) -> Explanation:
     return Explanation(tuple(kinds), Product.of(values), by_oracle, partial)
 
 
-def _values(comparer: Comparer, row: Row, keys: list[Key]) -> dict[Key, int]:
+def _explain_polynomials(comparer: Comparer, finding: Finding) -> Explanation:
+    """The same in an equivariant ring. Kinds: ``support``, ``degree axiom``, ``negative coefficient``, ``other polynomial``."""
+    row, case, rule = finding.row, finding.where, finding.rule
+    truth = comparer.truth(row)
+    with comparer.limit:
+        values = _values(comparer, row, list(comparer.outcomes(row)))
+    kinds = []
+    if isinstance(case, Case) and rule is not None:
+        polynomial = rule if isinstance(rule, RootPolynomial) else RootPolynomial.of(row.X.rank, {(0,) * row.X.rank: rule})
+        weight = sum(a * b for a, b in zip(case.d, row.X.q_degrees, strict=True))
+        degree = row.u.length + row.v.length - case.w.length - weight
+        if not polynomial or (case.w, case.d) not in truth:
+            kinds.append("support")
+        elif not polynomial.is_homogeneous or polynomial.degree != degree:
+            kinds.append("degree axiom")
+        if not polynomial.is_positive:
+            kinds.append("negative coefficient")
+    places = {key: Case(row.X, row.u, row.v, *key) for key in truth}
+    by_oracle = None
+    if len(places) <= _MOST_POLYNOMIALS and all(number_of_monomials(place) <= _MOST_MONOMIALS for place in places.values()):
+        by_oracle = Product.of({key: equivariant_constant(place) for key, place in places.items()})
+    return Explanation(tuple(kinds or ["other polynomial"]), Product.of(values), by_oracle, False)
+
+
+def _values(comparer: Comparer, row: Row, keys: list[Key]) -> Values:
     """The rule's values, none where it has none."""
     try:
         return comparer.values(row, keys)

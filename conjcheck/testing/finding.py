@@ -7,6 +7,8 @@ from dataclasses import dataclass
 from typing import NoReturn
 
 from conjcheck.geometry.case import Case, Row
+from conjcheck.geometry.polynomial import RootPolynomial
+from conjcheck.oracle.equivariant import Sampled
 
 __all__ = ["STATUSES", "Finding", "Found", "raise_finding"]
 
@@ -30,8 +32,8 @@ class Finding:
 
     status: str
     where: Case | Row
-    rule: int | None = None
-    oracle: int | None = None
+    rule: int | RootPolynomial | None = None
+    oracle: int | RootPolynomial | Sampled | None = None
     detail: str = ""
     objects: tuple[str, ...] | None = None
     trace: str = ""

@@ -3,19 +3,23 @@
 The laws are those of the structure constants themselves, so a rule that breaks one is wrong at one of the two places compared.
 """
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass
 
-from conjcheck.geometry.case import Case, Row, count_cases, outcomes, place_in_row
+from conjcheck.geometry.case import Case, Row, place_in_row
 from conjcheck.geometry.flag_variety import SchubertClass
+from conjcheck.geometry.polynomial import RootPolynomial
 from conjcheck.geometry.symmetries import diagram_images, seidel
-from conjcheck.testing.compare import Comparer, Key
+from conjcheck.testing.answer import Value
+from conjcheck.testing.calls import Key, Values
+from conjcheck.testing.compare import Comparer
 
 __all__ = ["LAWS", "BrokenLaw", "NoValue", "broken_laws", "laws_apply"]
 
 LAWS = (
     "one answer",
     "unit",
+    "positivity",
     "commutativity",
     "Poincare duality",
     "S3-symmetry",
@@ -27,8 +31,6 @@ LAWS = (
 
 _MOST_OUTCOMES = 3_000
 _MOST_TERMS = 40
-
-Values = dict[Key, int]
 
 
 @dataclass(frozen=True, slots=True)
@@ -72,12 +74,11 @@ def broken_laws(comparer: Comparer, row: Row, choice: int = 0) -> Iterator[Broke
 
 def laws_apply(comparer: Comparer, row: Row) -> bool:
     """Whether the laws have anything to say around a row: it is not too large, and some case lies inside the premise."""
-    X, total, classical = row.X, row.u.length + row.v.length, comparer.conjecture.is_classical
-    if not 0 < count_cases(X, total, classical=classical) <= _MOST_OUTCOMES or not comparer.inside(row):
+    if not 0 < comparer.size(row) <= _MOST_OUTCOMES or not comparer.inside(row):
         return False
     if comparer.conjecture.premise_by_rows:
         return True
-    return any(comparer.admits(Case(X, row.u, row.v, w, d)) for w, d in outcomes(X, total, classical=classical))
+    return any(comparer.admits(Case(row.X, row.u, row.v, w, d)) for w, d in comparer.outcomes(row))
 
 
 class _Neighbourhood:
@@ -90,20 +91,19 @@ class _Neighbourhood:
 
     def _of(self, row: Row) -> Values | None:
         """The rule's nonzero values on a row; ``None`` outside the premise or where there are too many outcomes."""
-        total, classical = row.u.length + row.v.length, self.conjecture.is_classical
-        if count_cases(row.X, total, classical=classical) > _MOST_OUTCOMES or row.X not in self.conjecture.on:
+        if self.comparer.size(row) > _MOST_OUTCOMES or row.X not in self.conjecture.on:
             return None
         if not self.comparer.inside(row):
             return None
         try:
-            return self.comparer.values(row, outcomes(row.X, total, classical=classical))
+            return self.comparer.values(row, self.comparer.outcomes(row))
         except KeyboardInterrupt:
             raise
         except BaseException as error:
             raise NoValue(row) from error
 
     def _compare(
-        self, law: str, expected: Values, row: Row, found: Values, back: dict[Key, Case] | None = None
+        self, law: str, expected: Mapping[Key, Value], row: Row, found: Mapping[Key, Value], back: dict[Key, Case] | None = None
     ) -> Iterator[BrokenLaw]:
         """Differences between two sets of values on ``row``; ``back`` gives the case that an expected value came from."""
         for w, d in sorted({*expected, *found}, key=place_in_row):
@@ -122,7 +122,11 @@ class _Neighbourhood:
         self.values = values
         yield from self._compare("one answer", values, self.row, self._of(self.row) or {})
         yield from self._unit()
+        if self.conjecture.is_equivariant:
+            yield from self._positive()
         yield from self._commutative()
+        if self.conjecture.is_equivariant:
+            return  # the other symmetries move the torus action
         yield from self._duality()
         yield from self._s3()
         if not self.conjecture.is_classical:
@@ -136,6 +140,18 @@ class _Neighbourhood:
         if u is X.identity or v is X.identity:
             other = v if u is X.identity else u
             yield from self._compare("unit", {(other, (0,) * len(X.marked)): 1}, self.row, self.values)
+
+    def _positive(self) -> Iterator[BrokenLaw]:
+        """Coefficients are nonnegative (Graham, Duke Math. J. 109 (2001); Mihalcea, Amer. J. Math. 128 (2006)) and degrees are right."""
+        X, u, v = self.row.X, self.row.u, self.row.v
+        for (w, d), value in self.values.items():
+            weight = sum(a * b for a, b in zip(d, X.q_degrees, strict=True))
+            place, degree = Case(X, u, v, w, d), u.length + v.length - w.length - weight
+            polynomial = value if isinstance(value, RootPolynomial) else RootPolynomial.of(X.rank, {(0,) * X.rank: value})
+            if not polynomial.is_positive:
+                yield BrokenLaw("positivity", f"{polynomial} at {place} has a negative coefficient", (self.row,))
+            if not polynomial.is_homogeneous or polynomial.degree != degree:
+                yield BrokenLaw("positivity", f"{polynomial} at {place} is not homogeneous of degree {degree}", (self.row,))
 
     def _commutative(self) -> Iterator[BrokenLaw]:
         X, u, v = self.row.X, self.row.u, self.row.v

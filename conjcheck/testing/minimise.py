@@ -3,10 +3,13 @@
 from dataclasses import dataclass, replace
 from time import perf_counter
 
-from conjcheck.errors import EnginesDisagree
+from conjcheck.conjecture.declare import Conjecture
+from conjcheck.errors import EnginesDisagree, OutOfReach
 from conjcheck.geometry.case import Case, Row, rows
+from conjcheck.geometry.polynomial import RootPolynomial
 from conjcheck.geometry.symmetries import orbit_of_case
 from conjcheck.oracle import row_terms, witnesses
+from conjcheck.oracle.equivariant import Sampled, equivariant_constant
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.survey import Coverage, survey
@@ -153,16 +156,20 @@ def layer_of(comparer: Comparer, finding: Finding, *, budget: float) -> Layer:
                 complete = False
                 break
     found.sort(key=lambda f: f.where.sort_key)
-    return Layer(tuple(found), seen, complete, _orbits(found, comparer.conjecture.is_classical), len(X.classes) ** 2)
+    return Layer(tuple(found), seen, complete, _orbits(found, comparer.conjecture), len(X.classes) ** 2)
 
 
-def _orbits(findings: list[Finding], classical: bool) -> int:
-    """The number of orbits among failing cases; rows that fail as a whole count one each."""
+def _orbits(findings: list[Finding], conjecture: Conjecture) -> int:
+    """The number of orbits among failing cases; rows that fail as a whole count one each. Equivariantly only u and v may be swapped."""
     left = {f.where for f in findings if isinstance(f.where, Case)}
     orbits = sum(not isinstance(f.where, Case) for f in findings)
     while left:
         orbits += 1
-        left -= orbit_of_case(next(iter(left)), seidel_too=not classical)
+        case = next(iter(left))
+        if conjecture.is_equivariant:
+            left -= {case, Case(case.X, case.v, case.u, case.w, case.d)}
+        else:
+            left -= orbit_of_case(case, seidel_too=not conjecture.is_classical)
     return orbits
 
 
@@ -176,6 +183,8 @@ def confirm(finding: Finding) -> tuple[Finding, str]:
         row_terms(finding.row.u, finding.row.v, cross_check=True)
         return finding, "the product was computed on two routes"
     ways = witnesses(finding.where)
+    if isinstance(finding.oracle, Sampled) or isinstance(finding.rule, RootPolynomial):
+        return _confirm_polynomial(finding, finding.where)
     if finding.oracle is None:
         finding = replace(finding, oracle=ways[0][1])
     for how, value in ways:
@@ -185,3 +194,14 @@ def confirm(finding: Finding) -> tuple[Finding, str]:
                 "doubt and no verdict of this version can be trusted: please report this"
             )
     return finding, ", ".join(how for how, _ in ways)
+
+
+def _confirm_polynomial(finding: Finding, case: Case) -> tuple[Finding, str]:
+    """The finding with the oracle's polynomial written out, from other points than those of the comparison."""
+    try:
+        exact = equivariant_constant(case)
+    except OutOfReach:
+        return finding, "values at two random points modulo two primes; it has too many monomials to be written out"
+    if exact == finding.rule or not (finding.oracle or 0) == exact:
+        raise EnginesDisagree(f"expected {exact} at {case} to be the constant of the comparison, it is not; the oracle is in doubt")
+    return replace(finding, oracle=exact), "interpolation at as many points as it has monomials, and two more modulo another prime"

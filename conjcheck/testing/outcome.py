@@ -9,12 +9,12 @@ from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.geometry.case import Case
-from conjcheck.testing.answer import shown_number
+from conjcheck.testing.answer import shown_value
 from conjcheck.testing.explain import Explanation
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer, Minimum
 
-__all__ = ["Outcome", "environment"]
+__all__ = ["Outcome", "environment", "plain_value", "smaller_agree"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -67,7 +67,7 @@ class Outcome:
         if self.finding.rule is None:
             values = "the claim is false" + (f", the constant is {self.finding.oracle}" if self.finding.oracle is not None else "")
         else:
-            values = f"rule {shown_number(self.finding.rule)}, oracle {self.finding.oracle}"
+            values = f"rule {shown_value(self.finding.rule)}, oracle {self.finding.oracle}"
         return f"{head} at {self.finding.where}: {values} ({self.minimality})"
 
     @property
@@ -76,7 +76,7 @@ class Outcome:
         if self.minimum is None:
             return "smaller cases not looked at"
         if self.minimum.certified:
-            return f"minimal: all {self.minimum.below:,} smaller cases agree"
+            return f"minimal: {smaller_agree(self.minimum.below, 'agree')}"
         return f"not known to be minimal: {self.minimum.reach}"
 
     def as_json(self) -> dict[str, Any]:
@@ -100,9 +100,7 @@ class Outcome:
         if self.note:
             found["note"] = self.note
         if self.finding:
-            rule = self.finding.rule
-            found["rule"] = rule if rule is None or rule.bit_length() < 64 else shown_number(rule)
-            found["oracle"] = self.finding.oracle
+            found["rule"], found["oracle"] = plain_value(self.finding.rule), plain_value(self.finding.oracle)
             found["kinds"] = list(self.explanation.kinds) if self.explanation else []
             found["confirmed_by"] = self.confirmed_by
         if self.layer:
@@ -113,6 +111,20 @@ class Outcome:
                 "complete": self.layer.complete,
             }
         return found
+
+
+def plain_value(value: object) -> int | str | None:
+    """A value for JSON: small integers as they are, others and polynomials as text."""
+    return value if value is None or (isinstance(value, int) and value.bit_length() < 64) else shown_value(value)
+
+
+def smaller_agree(count: int, what: str) -> str:
+    """``all 63 smaller cases agree``, also for none and one."""
+    if count == 0:
+        return "there is no smaller case"
+    if count == 1:
+        return f"the one smaller case {what.replace('were', 'was').replace('agree', 'agrees')}"
+    return f"all {count:,} smaller cases {what}"
 
 
 def environment() -> str:

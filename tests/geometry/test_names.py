@@ -81,7 +81,7 @@ def test_calls_are_the_names():
 
 
 def test_dimensions_of_isotropic_grassmannians():
-    """``IG(k,2n)`` has dimension ``k(2n - k) - k(k - 1)/2``, ``OG(k,N)`` has ``k(N - k) - k(k + 1)/2``, ``Q^N`` has N: what the names promise."""
+    """``IG(k,2n)`` has dimension ``k(2n - k) - k(k - 1)/2``, ``OG(k,N)`` has ``k(N - k) - k(k + 1)/2``, ``Q^N`` has N (standard)."""
     for n in range(2, 7):
         for k in range(1, n + 1):
             assert IG(k, 2 * n).dim == k * (2 * n - k) - k * (k - 1) // 2

@@ -10,7 +10,7 @@ from conjcheck.errors import OutOfReach
 from conjcheck.geometry.case import rows
 from conjcheck.geometry.families import PartialFlags
 from conjcheck.oracle import ENGINES, witnesses
-from conjcheck.oracle.localisation import _inverses, _primes, _vandermonde, localisation
+from conjcheck.oracle.localisation import _inverses, primes, _vandermonde, localisation
 
 
 def word(X, *letters):
@@ -149,7 +149,7 @@ def test_bounds_hold_and_are_not_idle():
         assert max(product(row.u, row.v).values()) <= engine.bound(row.u.index, row.v.index)
 
 
-def test_several_primes_when_the_bound_asks_for_them(monkeypatch):
+def test_severalprimes_when_the_bound_asks_for_them(monkeypatch):
     """With a bound beyond one prime the residues modulo several primes are put together, to the same constants."""
     X = Gr(2, 4)
     engine = localisation(X)
@@ -168,7 +168,7 @@ def test_out_of_reach():
 
 def test_arithmetic_modulo_a_prime():
     """Inverses and the Vandermonde system are those of the field."""
-    (p, q) = _primes(2)
+    (p, q) = primes(2)
     assert (p, q) == (2**31 - 1, 2147483629)
     values = np.array([1, 2, 12345, p - 1], dtype=np.int64)
     assert (values * _inverses(values, p) % p == 1).all()

@@ -12,15 +12,21 @@ import pytest
 sys.path.insert(0, str(Path(__file__).parent))
 
 
+PROFILE = """
+from hypothesis import settings
+
+settings.register_profile("short", max_examples=12)
+settings.load_profile("short")
+"""
+
+
 class Project:
     """A folder with plug-ins, and runs of pytest on it."""
 
-    def __init__(self, pytester, monkeypatch):
+    def __init__(self, pytester):
         self.pytester, self.path = pytester, pytester.path
-        monkeypatch.setenv("COLUMNS", "240")
-        monkeypatch.delenv("PYTEST_ADDOPTS", raising=False)
-        monkeypatch.delenv("CI", raising=False)
         self.ini()
+        self.write("conftest.py", PROFILE)
 
     def ini(self, *lines):
         """The ini file: quick, and more lines."""
@@ -55,9 +61,10 @@ class Project:
         start = next((k for k, line in enumerate(lines) if re.fullmatch(r"=+ conjectures =+", line)), None)
         if start is None:
             return None
-        assert lines[start + 1].startswith("conjecture ")
+        below = [line for line in lines[start + 1 :] if line]
+        assert below[0].startswith("conjecture ")
         found = {}
-        for line in lines[start + 2 :]:
+        for line in below[1:]:
             cells = re.split(r"\s{2,}", line.strip())
             if len(cells) < 7:
                 break
@@ -73,7 +80,17 @@ class Project:
         return found
 
 
+@pytest.fixture(scope="session")
+def bytecode(tmp_path_factory):
+    """Where the runs share their bytecode: compiling everything anew takes longer than most of them."""
+    return tmp_path_factory.mktemp("bytecode")
+
+
 @pytest.fixture
-def project(pytester, monkeypatch):
+def project(pytester, monkeypatch, bytecode):
     """An empty project."""
-    return Project(pytester, monkeypatch)
+    monkeypatch.setenv("COLUMNS", "240")
+    monkeypatch.setenv("PYTHONPYCACHEPREFIX", str(bytecode))
+    for name in ("PYTHONDONTWRITEBYTECODE", "PYTEST_ADDOPTS", "CI"):
+        monkeypatch.delenv(name, raising=False)
+    return Project(pytester)

@@ -48,7 +48,7 @@ def test_a_refutation(project):
     project.write("conjectures/twice.py", WRONG.format(name="twice"))
     project.write("conjectures/powers.py", PROJECTIVE.format(name="powers"))
     result = project.run("--junitxml=out.xml", "--hypothesis-seed=1")
-    verdict = f"refuted: twice at {FAULT}: rule 2, oracle 1 (minimal: all 20 smaller cases agree)"
+    verdict = f"refuted: twice at {FAULT}: rule 2, oracle 1 (minimal: all 22 smaller cases agree)"
     assert result.ret == 1
     result.assert_outcomes(passed=2, failed=1, skipped=1)
     assert project.table(result) == {"twice": "refuted", "powers": "agrees"}
@@ -80,11 +80,8 @@ def test_a_refutation(project):
 
 @pytest.mark.parametrize(
     ("case", "words"),
-    [
-        ("Gr(1,4): (9) * (1) -> ()", "expected"),
-        ("nonsense", "expected a row such as"),
-        ("Gr(2,4): (1) * (1)", "expected a case on Gr(1,3), Gr(1,4), the family of powers"),
-    ],
+    [("nonsense", "expected a row such as"), ("Gr(2,4): (1) * (1)", "expected a case on Gr(1,3), Gr(1,4), the family of powers")],
+    ids=["nonsense", "another family"],
 )
 def test_a_case_that_is_none(project, case, words):
     """A case that denotes nothing, or lies outside the family, is one failing item with a clear line, never an agreement."""
@@ -118,7 +115,7 @@ def test_rules_in_trouble(project):
             f"conjectures/{name}.py",
             f'{header}\ndef premise(X, u, v):\n    {body}\n\n@candidate(on=Varieties("Gr(1,3)"), premise=premise)\ndef {name}(X, u, v):\n    return {{}}\n',
         )
-    result = project.run("--conjcheck-call-limit=0.3", "-rs")
+    result = project.run("--conjcheck-call-limit=0.3")
     assert result.ret == 1
     statuses = {
         "crashed": "crashed",

@@ -2,7 +2,6 @@
 
 import json
 
-import pytest
 from sources import FAULT, PROJECTIVE, WRONG
 
 pytest_plugins = ["pytester"]
@@ -25,7 +24,7 @@ def test_written_verified_stale(project):
     second.stdout.fnmatch_lines(["conjectures/twice.py::twice::recorded PASSED*", "conjectures/twice.py::twice::survey PASSED*"])
     assert project.table(second) == {"twice": "refuted"}
     second.stdout.fnmatch_lines(["*on record as refuted: this is the expected verdict*"])
-    second.stdout.fnmatch_lines([f"refuted: twice at {FAULT}: rule 2, oracle 1 (minimal: all 20 smaller cases agree)"])
+    second.stdout.fnmatch_lines([f"refuted: twice at {FAULT}: rule 2, oracle 1 (minimal: all 22 smaller cases agree)"])
     assert {o["part"] for values in project.properties().values() for o in values} == {"recorded", "survey"}
     assert (project.path / RECORD).read_text() == text
 
@@ -44,35 +43,35 @@ def test_written_verified_stale(project):
 
 def test_other_values(project):
     """A recorded value that is not the rule's any more, or an oracle's value that is not the oracle's, is stale too."""
-    project.write("conjectures/twice.py", WRONG.format(name="twice"))
-    for values in ({"rule": 3, "oracle": 1}, {"rule": 2, "oracle": 0}, {"rule": 3, "oracle": None}):
+    records = {"first": {"rule": 3, "oracle": 1}, "second": {"rule": 2, "oracle": 0}, "third": {"rule": 3, "oracle": None}}
+    for name, values in records.items():
+        project.write(f"conjectures/{name}.py", WRONG.format(name=name))
         entry = {"where": FAULT, "minimal": True} | values
-        data = {"format": "conjcheck-record", "version": 1, "conjecture": "twice", "status": "refuted", "counterexamples": [entry]}
-        project.write(RECORD, json.dumps(data))
-        result = project.run("-k", "recorded")
-        result.assert_outcomes(failed=1, deselected=1)
-        assert "stale record: expected rule " in project.summary(result)[0]
+        data = {"format": "conjcheck-record", "version": 1, "conjecture": name, "status": "refuted", "counterexamples": [entry]}
+        project.write(f"conjectures/records/{name}.json", json.dumps(data))
+    result = project.run("-k", "recorded")
+    result.assert_outcomes(failed=3, deselected=3)
+    assert all(" - stale record: expected rule " in line for line in project.summary(result))
 
 
-@pytest.mark.parametrize(
-    ("content", "words"),
-    [
-        ("{", "expected JSON in UTF-8"),
-        ("[]", "this is not a record"),
-        ('{"format": "conjcheck-record", "version": 7}', "expected version 1, got 7"),
-    ],
-)
-def test_damaged(project, content, words):
+def test_damaged(project):
     """A damaged record is one failing item of its conjecture with a clear line; other conjectures are examined."""
-    project.write("conjectures/twice.py", WRONG.format(name="twice"))
+    damaged = {
+        "torn": ("{", "expected JSON in UTF-8"),
+        "other": ("[]", "this is not a record"),
+        "newer": ('{"format": "conjcheck-record", "version": 7}', "expected version 1, got 7"),
+    }
     project.write("conjectures/powers.py", PROJECTIVE.format(name="powers"))
-    project.write(RECORD, content)
+    for name, (content, _) in damaged.items():
+        project.write(f"conjectures/{name}.py", WRONG.format(name=name))
+        project.write(f"conjectures/records/{name}.json", content)
     result = project.run()
-    result.assert_outcomes(failed=1, passed=2)
-    (line,) = project.summary(result)
-    assert line.startswith("FAILED conjectures/twice.py::twice::record - record cannot be used: ")
-    assert words in line
-    assert "twice.json" in line
+    result.assert_outcomes(failed=3, passed=2)
+    lines = sorted(project.summary(result))
+    for line, (name, (_, words)) in zip(lines, sorted(damaged.items()), strict=True):
+        assert line.startswith(f"FAILED conjectures/{name}.py::{name}::record - record cannot be used: ")
+        assert words in line
+        assert f"{name}.json" in line
 
 
 def test_an_open_record_with_a_counterexample(project):

@@ -1,0 +1,181 @@
+"""What an audit is made of: checks, differences, rows by their place in the order, and a reader of products that remembers."""
+
+from bisect import bisect_right
+from collections.abc import Callable, Iterable, Iterator
+from dataclasses import dataclass
+from typing import Any, Protocol, TypeVar
+
+from conjcheck.errors import OutOfReach
+from conjcheck.geometry.case import Case, Row, place_in_row
+from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
+from conjcheck.oracle import engines_for, row_terms
+from conjcheck.oracle.engine import Engine, RowTerms
+from conjcheck.oracle.localisation import LocalisationEngine
+
+__all__ = ["Check", "Difference", "Reader", "RowList", "TripleList", "afford", "at_two_places", "compare", "sum_degrees", "times"]
+
+Value = int | str
+T_co = TypeVar("T_co", covariant=True)
+
+_MOST_WORK = 40_000_000
+_MOST_TERMS = 2_000_000
+
+
+@dataclass(frozen=True, slots=True)
+class Difference:
+    """Two values that should be equal and are not.
+
+    Attributes:
+        where: the case; words where no single case is meant, as in a degree or in a relation.
+        one, other: pairs (how it was found, value).
+    """
+
+    where: Case | str
+    one: tuple[str, Value]
+    other: tuple[str, Value]
+
+    @property
+    def sort_key(self) -> tuple[Any, ...]:
+        """The order "smaller": cases in their own order, then the others."""
+        return (0, *self.where.sort_key) if isinstance(self.where, Case) else (1, self.where)
+
+
+class Units(Protocol[T_co]):
+    """Things that are compared one after the other, by their place in the order; they need not exist before they are asked for."""
+
+    def __len__(self) -> int: ...
+
+    def __getitem__(self, place: int, /) -> T_co: ...
+
+
+@dataclass(frozen=True, slots=True)
+class Check:
+    """One thing that must hold on one space.
+
+    Attributes:
+        name: how tables call it.
+        unit: what one unit is, in the plural.
+        units: the units, in order.
+        ask: compares one unit: nothing if it agrees. It may raise ``OutOfReach``: then this unit is left out.
+        weight: its share of the time among the checks of its space.
+        needs: about how many seconds one unit takes, where that matters.
+        missing: why it cannot run at all.
+    """
+
+    name: str
+    unit: str
+    units: Units[Any]
+    ask: Callable[[Any], Iterable[Difference]]
+    weight: int = 1
+    needs: float = 0.0
+    missing: str = ""
+
+
+class RowList:
+    """All rows of X in the order of ``conjcheck.geometry.case.rows``, or those with ``l(u) + l(v) = total``, without listing them.
+
+    >>> from conjcheck.geometry.flag_variety import Gr
+    >>> len(RowList(Gr(2, 4))), RowList(Gr(2, 4))[35]
+    (36, Row.parse('Gr(2,4): (2,2) * (2,2)'))
+    """
+
+    def __init__(self, X: FlagVariety, total: int | None = None) -> None:
+        self.X = X
+        self._starts: list[int] = []
+        self._lengths: list[tuple[int, int]] = []
+        self._size = 0
+        for whole in range(2 * X.dim + 1) if total is None else [total]:
+            for length in range(max(0, whole - X.dim), min(whole, X.dim) + 1):
+                self._starts.append(self._size)
+                self._lengths.append((length, whole - length))
+                self._size += len(X.of_length(length)) * len(X.of_length(whole - length))
+
+    def __len__(self) -> int:
+        return self._size
+
+    def __getitem__(self, place: int, /) -> Row:
+        if not 0 <= place < self._size:
+            raise IndexError(place)
+        block = bisect_right(self._starts, place) - 1
+        left, right = (self.X.of_length(length) for length in self._lengths[block])
+        u, v = divmod(place - self._starts[block], len(right))
+        return Row(self.X, left[u], right[v])
+
+
+class TripleList:
+    """All pairs (row, class) of X, in the order of rows, then of classes."""
+
+    def __init__(self, X: FlagVariety) -> None:
+        self.X, self._rows = X, RowList(X)
+
+    def __len__(self) -> int:
+        return len(self._rows) * len(self.X.classes)
+
+    def __getitem__(self, place: int, /) -> tuple[Row, SchubertClass]:
+        row, z = divmod(place, len(self.X.classes))
+        return self._rows[row], self.X.classes[z]
+
+
+def afford(engine: Engine, X: FlagVariety, total: int) -> None:
+    """Refuse a row of localisation up to the degree ``total`` that would take more than about a second.
+
+    Raises:
+        OutOfReach: it would.
+    """
+    if isinstance(engine, LocalisationEngine) and (work := engine.work(X, total)) > _MOST_WORK:
+        raise OutOfReach(f"expected a row of at most {_MOST_WORK:,} modular multiplications, got about {work:,} on {X}")
+
+
+class Reader:
+    """Products as a user gets them, by the engine that the oracle chooses; remembered, as far as memory allows."""
+
+    def __init__(self) -> None:
+        self._known: dict[tuple[SchubertClass, SchubertClass], RowTerms] = {}
+        self._terms = 0
+
+    def __call__(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
+        """The nonzero terms of ``sigma_u * sigma_v``."""
+        found = self._known.get((u, v))
+        if found is None:
+            afford(engines_for(u.variety)[0], u.variety, u.length + v.length)
+            found = self._known[u, v] = row_terms(u, v)
+            self._terms += len(found) + 1
+            if self._terms > _MOST_TERMS:
+                self._known, self._terms = {(u, v): found}, len(found)
+        return found
+
+
+def sum_degrees(*degrees: Degree) -> Degree:
+    """The entrywise sum."""
+    return tuple(map(sum, zip(*degrees, strict=True)))
+
+
+def times(read: Reader, x: RowTerms, y: RowTerms) -> RowTerms:
+    """The product of two elements ``{(w, d): coefficient}`` of QH*(X), by bilinearity; zeros dropped."""
+    total: RowTerms = {}
+    for (u, d), a in x.items():
+        for (v, e), b in y.items():
+            for (w, f), count in read(u, v).items():
+                key = w, sum_degrees(d, e, f)
+                total[key] = total.get(key, 0) + a * b * count
+    return {key: count for key, count in total.items() if count}
+
+
+def compare(row: Row, one: tuple[str, RowTerms], other: tuple[str, RowTerms]) -> Iterator[Difference]:
+    """The smallest case of a row where two products differ, if there is one."""
+    a, b = one[1], other[1]
+    keys = [key for key in {*a, *b} if a.get(key, 0) != b.get(key, 0)]
+    if keys:
+        w, d = min(keys, key=place_in_row)
+        yield Difference(Case(row.X, row.u, row.v, w, d), (one[0], a.get((w, d), 0)), (other[0], b.get((w, d), 0)))
+
+
+def at_two_places(law: str, pairs: Iterable[tuple[Case, int, Case, int]]) -> Iterator[Difference]:
+    """The smallest difference among constants at two cases each that a law says are equal; the smaller case is the one named."""
+    found = []
+    for first, n, second, m in pairs:
+        if n != m:
+            (here, a), (there, b) = sorted([(first, n), (second, m)], key=lambda pair: pair[0].sort_key)
+            found.append(Difference(here, ("product", a), (f"{law}, from {there}", b)))
+    if found:
+        yield min(found, key=lambda difference: difference.sort_key)
