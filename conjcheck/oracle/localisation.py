@@ -12,7 +12,7 @@ are pointwise in these coordinates. Coefficients of degree 0 in the simple roots
 the constants.
 
 Exactness. Coinciding eigenvalues are detected and other numbers are chosen. Residues stay below ``2^31`` and their products
-below ``2^62``; a sum of products is reduced term by term. A constant is at most the corresponding entry of ``D^{l(u)} *
+below ``2^62``; sums of products are reduced term by term, or one factor is cut in two so that the sum stays below ``2^63``. A constant is at most the corresponding entry of ``D^{l(u)} *
 sigma_v`` for D the sum of all divisors, because ``sigma_u`` is a summand of ``D^{l(u)}``; that bound is computed in integers,
 rounded upwards, and so many primes are used that their product exceeds it. Which powers of several q's a coefficient of z
 collects is resolved by evaluating at the powers of one point g and solving the Vandermonde system, whose nodes are checked to
@@ -66,6 +66,13 @@ def _inverses(values: Ints, p: int) -> Ints:
             result = result * power % p
         power = power * power % p
         exponent >>= 1
+    return result
+
+
+def _times(matrix: Ints, column: Ints, p: int) -> Ints:
+    """``matrix @ column`` modulo p, exactly: the column is cut into 15 and 16 bits, so that up to ``2^16`` products fit into 63 bits."""
+    high, low = column >> 16, column & 0xFFFF
+    result: Ints = (((matrix @ high) % p << 16) + matrix @ low) % p
     return result
 
 
@@ -161,7 +168,8 @@ class _Point:
             total = (total + np.where(terms.valid, terms.coefficients[:, :, k], 0) * divisor[k]) % p
         coefficients = np.where(terms.valid, total * scale % p, 0)
         self.values = self._solve(whole.lengths, terms.targets, coefficients, terms.weights // step, numbers.values)
-        self.back = self._invert(self.values[0])
+        self._back = np.ascontiguousarray(self._invert(self.values[0]).T)
+        self._flipped = np.ascontiguousarray(self.values.transpose(0, 2, 1))
 
     def _solve(self, lengths: Ints, targets: Ints, coefficients: Ints, shifts: Ints, values: Ints) -> Ints:
         """All coordinates, ``(depth + 1, N, N)``: entry ``[e, u, w]`` is the coefficient of ``z^e`` in ``sigma_u|_w``."""
@@ -203,27 +211,24 @@ class _Point:
         diagonal = _inverses(np.diagonal(matrix).copy(), p)
         inverse = np.zeros_like(matrix)
         for w in range(size):
-            column = np.zeros(size, dtype=np.int64)
-            for start in range(0, w, 256):
-                part = slice(start, min(start + 256, w))
-                column = (column + (inverse[:, part] * matrix[part, w] % p).sum(axis=1)) % p
-            inverse[:, w] = -column * diagonal[w] % p
+            column = _times(inverse[:w, :w], matrix[:w, w], p)
+            inverse[:w, w] = -column * diagonal[w] % p
             inverse[w, w] = diagonal[w]
         return inverse
 
     def product(self, u: int, v: int) -> Ints:
         """``sigma_u * sigma_v`` in the Schubert basis: ``(depth + 1, N)``, powers of z by classes."""
         p, values = self.p, self.values
-        found = np.zeros((self.depth + 1, len(self.back)), dtype=np.int64)
+        found = np.zeros((self.depth + 1, len(self._back)), dtype=np.int64)
         live = [f for f in range(1, self.depth + 1) if values[f].any()]
         for e in range(self.depth + 1):
-            side = np.zeros(len(self.back), dtype=np.int64)
+            side = np.zeros(len(self._back), dtype=np.int64)
             for f in range(e + 1):
                 side = (side + values[f, u] * values[e - f, v]) % p
             for f in live:
                 if f <= e and found[e - f].any():
-                    side = (side - (found[e - f][:, None] * values[f] % p).sum(axis=0)) % p
-            found[e] = (side[:, None] * self.back % p).sum(axis=0) % p
+                    side = (side - _times(self._flipped[f], found[e - f], p)) % p
+            found[e] = _times(self._back, side, p)
         return found
 
 
