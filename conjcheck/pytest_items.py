@@ -26,7 +26,7 @@ from conjcheck.report.text import text_report
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.limits import CallInterrupted, CallLimit
 from conjcheck.testing.outcome import Outcome, plain_value
-from conjcheck.testing.probe import Check, ProbeCount, TimeIsUp, gravest, probe_test
+from conjcheck.testing.probe import Check, ProbeCount, TimeIsUp, gravest, level_name, probe_test
 
 __all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
 
@@ -153,8 +153,8 @@ class ConjectureNode(pytest.Collector):
         if conjecture.role == "candidate":
             yield self._drawing_item("laws", self._laws)
         yield self._plain_item("survey", lambda examination: examination.survey())
-        for n, spaces in levels:
-            yield self._drawing_item(f"probe[n={n}]", self._probe(n, spaces, len(levels)))
+        for _, spaces in levels:
+            yield self._drawing_item(f"probe[{level_name(spaces)}]", self._probe(spaces, len(levels)))
 
     @property
     def examination(self) -> Examination:
@@ -218,7 +218,7 @@ class ConjectureNode(pytest.Collector):
             count, examination.law_check(count), examination.small_spaces(), lambda: examination.laws_agree(count, started)
         )
 
-    def _probe(self, n: int, spaces: list[FlagVariety], share: int) -> Callable[[], Draws]:
+    def _probe(self, spaces: list[FlagVariety], share: int) -> Callable[[], Draws]:
         def draws() -> Draws:
             examination, started = self.examination, perf_counter()
             count = ProbeCount(started + examination.effort.probe / share)
@@ -226,7 +226,7 @@ class ConjectureNode(pytest.Collector):
                 count,
                 examination.probe_check(count),
                 examination.unfinished(spaces),
-                lambda: examination.probe_agrees(n, spaces, count, started),
+                lambda: examination.probe_agrees(spaces, count, started),
             )
 
         return draws

@@ -1,32 +1,29 @@
 """The audit: the oracle held against itself, against the laws, against closed formulas, published values and the mirror side, on one space.
 
-A check goes through its units in order, smallest first, for half of its time; then it draws from the rest at random. Either way it goes on
-after a difference and keeps the smallest one. What was compared is counted, and nothing compared is never called an agreement.
+Every check goes through its units in order, smallest first; what is not through when four fifths of the budget are spent goes on at random.
+It does not stop at a difference, and keeps the smallest one. What was compared is counted, and nothing compared is never called an agreement.
 """
 
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from functools import lru_cache, partial
-from itertools import chain
 from random import Random
 from time import perf_counter
-from typing import Any
 
 from conjcheck.errors import OutOfReach
 from conjcheck.geometry.case import Row
-from conjcheck.geometry.cartan import CartanType
-from conjcheck.geometry.flag_variety import FlagVariety
+from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.oracle import engines_for
 from conjcheck.oracle.check import Check, Difference, Reader, RowList, afford, compare
 from conjcheck.oracle.comparison import RecursionEngine
 from conjcheck.oracle.engine import Engine, RowTerms
 from conjcheck.oracle.formulas import formulas
 from conjcheck.oracle.laws import laws
-from conjcheck.oracle.localisation import Localisation, LocalisationEngine, _Point
+from conjcheck.oracle.localisation import Localisation, LocalisationEngine
 from conjcheck.oracle.mirror import CRITICAL_POINTS, critical_values, has_sympy, spectrum
 from conjcheck.oracle.published import published
 
-__all__ = ["Result", "audit", "checks_of", "spaces_of_rank"]
+__all__ = ["Result", "audit", "checks_of"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,86 +70,99 @@ def checks_of(X: FlagVariety) -> list[Check]:
     return [*_engines(X, read), *laws(X, read), *formulas(X, read), *published(X, read), *_mirror(X, read)]
 
 
-def audit(X: FlagVariety, *, seconds: float = 10.0, seed: int = 0, starting: Callable[[str], None] | None = None) -> Iterator[Result]:
-    """Run all checks on X, one result each.
+def audit(
+    X: FlagVariety, *, seconds: float = 10.0, seed: int = 0, watching: Callable[[str, float], None] | None = None
+) -> list[Result]:
+    """Run all checks on X, one result each, in the order of the table.
 
     Args:
         X: the space.
-        seconds: the budget. Each check gets its share of what is left; one that ends early leaves its time to the others. A unit that
-            has begun is finished, and so is the set-up of an engine.
+        seconds: the budget. A unit that has begun is finished, and so is the set-up of an engine.
         seed: chooses the random units.
-        starting: called with the name of each check before it begins.
+        watching: called now and then with the name of a check and the share of the budget that is spent.
 
     Raises:
         OutOfReach: no engine covers X.
     """
-    deadline = perf_counter() + seconds
-    checks = checks_of(X)
-    for k, check in enumerate(checks):
-        if starting:
-            starting(check.name)
-        left = max(deadline - perf_counter(), 0.0)
-        share = left * check.weight / sum(other.weight for other in checks[k:])
-        yield _run(X, check, left, share, Random(f"{seed}/{X}/{check.name}"))  # noqa: S311  # a choice of rows, no secret
-
-
-def _run(X: FlagVariety, check: Check, left: float, share: float, rng: Random) -> Result:
-    size = len(check.units)
-    if check.missing or check.needs > left:
-        why = check.missing or f"takes about {check.needs:.0f} s, {left:.1f} s are left: give more --seconds"
-        return Result(X, check.name, check.unit, size, why=why)
     begun = perf_counter()
-    tally = _Tally(check)
-    place = 0
-    while place < size and (place == 0 or perf_counter() < begun + share / 2):
-        tally.ask(place)
-        place += 1
-    in_order = place if not tally.left_out else tally.first_left_out
-    for drawn in _shuffled(rng, place, size):
-        if perf_counter() > begun + share:
-            break
-        tally.ask(drawn)
-    return Result(
-        X,
-        check.name,
-        check.unit,
-        size,
-        in_order,
-        tally.compared,
-        tally.differing,
-        tally.smallest,
-        perf_counter() - begun,
-        f"{tally.left_out:,} left out: {tally.why}" if tally.left_out else "",
-    )
+    runs = [_Run(X, check, Random(f"{seed}/{X}/{check.name}")) for check in checks_of(X)]  # noqa: S311  # a choice of rows, no secret
+    for end, at_random in ((0.5, False), (0.8, False), (1.0, True)):
+        first, until = True, begun + end * seconds
+        while (open_ := [run for run in runs if run.is_open]) and (first or perf_counter() < until):
+            for k, run in enumerate(open_):
+                now = perf_counter()
+                if watching:
+                    watching(run.check.name, min((now - begun) / seconds, 1.0))
+                share = max(until - now, 0.0) * run.check.weight / sum(other.check.weight for other in open_[k:])
+                run.go_on(now + share, begun + seconds, at_random=at_random)
+            first = False
+    return [run.result() for run in runs]
 
 
-class _Tally:
-    """The count of one check."""
+class _Run:
+    """One check in progress.
 
-    def __init__(self, check: Check) -> None:
-        self.check = check
-        self.compared = self.differing = self.left_out = self.first_left_out = 0
+    Attributes:
+        place: the units below it have been asked in order; those that are drawn at random lie at or above it.
+        first_gap: the first unit that was left out because it takes too much work.
+    """
+
+    def __init__(self, X: FlagVariety, check: Check, rng: Random) -> None:
+        self.X, self.check, self.rng = X, check, rng
+        self.size = len(check.units)
+        self.place = self.compared = self.differing = self.left_out = 0
+        self.first_gap: int | None = None
         self.smallest: Difference | None = None
-        self.why = ""
+        self.seconds = 0.0
+        self.why = check.missing
+        self.is_open = not check.missing and self.size > 0
+        self._drawn: Iterator[int] | None = None
 
-    def ask(self, place: int) -> None:
+    def go_on(self, until: float, deadline: float, *, at_random: bool) -> None:
+        """Compare units until a time: at least one if none has been."""
+        begun = perf_counter()
+        if self.check.needs > deadline - begun:
+            self.why = f"takes about {self.check.needs:.0f} s: give more --seconds"
+            self.is_open = False
+            return
+        if at_random and self._drawn is None:
+            self._drawn = _shuffled(self.rng, self.place, self.size)
+        while self.place == 0 or perf_counter() < until:
+            unit = next(self._drawn, None) if self._drawn else self.place if self.place < self.size else None
+            if unit is None:
+                self.is_open = False
+                break
+            self._ask(unit)
+            self.place += self._drawn is None
+        self.seconds += perf_counter() - begun
+
+    def _ask(self, place: int) -> None:
         """Compare one unit. An engine that stops at an inner contradiction differs, too."""
         unit = self.check.units[place]
         try:
             found = list(self.check.ask(unit))
         except OutOfReach as reason:
-            if not self.left_out:
-                self.first_left_out, self.why = place, str(reason)
+            if self.first_gap is None:
+                self.first_gap, self.why = place, str(reason)
             self.left_out += 1
             return
         except AssertionError as error:
-            where = str(unit) if isinstance(unit, Row) else f"{self.check.name}, {self.check.unit} number {place + 1}"
+            where = str(unit) if isinstance(unit, Row) else f"{self.X}: {self.check.name}, number {place + 1} of the {self.check.unit}"
             found = [Difference(where, ("an engine stopped", str(error)), ("it should give", "a product"))]
         self.compared += 1
         if found:
             self.differing += 1
             candidates = [*found, self.smallest] if self.smallest else found
             self.smallest = min(candidates, key=lambda difference: difference.sort_key)
+
+    def result(self) -> Result:
+        """What was found so far."""
+        in_order = self.place if self.first_gap is None else min(self.place, self.first_gap)
+        if self.compared == self.size:
+            in_order = self.size
+        why = f"{self.left_out:,} left out: {self.why}" if self.left_out else self.why
+        found = self.compared, self.differing, self.smallest, self.seconds, why
+        return Result(self.X, self.check.name, self.check.unit, self.size, in_order, *found)
 
 
 def _shuffled(rng: Random, low: int, high: int) -> Iterator[int]:
@@ -168,24 +178,6 @@ def _shuffled(rng: Random, low: int, high: int) -> Iterator[int]:
     yield from rest
 
 
-def spaces_of_rank(most_rank: int, most_classes: int) -> list[FlagVariety]:
-    """All G/P of types A to G of rank at most ``most_rank`` with at most ``most_classes`` Schubert classes, in the order of spaces.
-
-    >>> [X.name for X in spaces_of_rank(2, 5)]
-    ['Gr(1,2)', 'Gr(1,3)', 'Gr(2,3)', 'Q^3', 'OG(2,5)', 'IG(1,4)', 'LG(2,4)']
-    """
-    found = []
-    for rank in range(1, most_rank + 1):
-        for letter, low, high in zip("ABCDEFG", (1, 2, 2, 4, 6, 4, 2), (99, 99, 99, 99, 8, 4, 2), strict=True):
-            if low <= rank <= high:
-                kind = CartanType(letter, rank)
-                for marks in range(1, 2**rank):
-                    X = FlagVariety(f"{kind}/P{','.join(str(i + 1) for i in range(rank) if marks >> i & 1)}")
-                    if X.number_of_classes <= most_classes:
-                        found.append(X)
-    return sorted(found)
-
-
 # -- engines -------------------------------------------------------------------------------------------------------------
 
 
@@ -198,7 +190,7 @@ def _engines(X: FlagVariety, read: Reader) -> Iterator[Check]:
         ask = partial(_same, read, "recursion", "recursion, direct route", first.direct_row)
         yield Check("recursion = its direct route", "rows", RowList(X), ask, weight=2)
     if isinstance(first, LocalisationEngine):
-        ask = partial(_same, read, "localisation", "localisation at other numbers", _elsewhere)
+        ask = partial(_same, read, "localisation", "localisation at other numbers", lambda u, v: _elsewhere(X).row(u, v))
         yield Check("localisation at other numbers", "rows", RowList(X), ask, weight=4)
 
 
@@ -207,29 +199,16 @@ def _agree(read: Reader, first: Engine, other: Engine, row: Row) -> Iterator[Dif
     yield from compare(row, (first.name, read(row.u, row.v)), (other.name, other.row(row.u, row.v)))
 
 
-def _same(read: Reader, one: str, other: str, route: Callable[..., RowTerms], row: Row) -> Iterator[Difference]:
+def _same(read: Reader, one: str, other: str, route: Callable[[SchubertClass, SchubertClass], RowTerms], row: Row) -> Iterator[Difference]:
     yield from compare(row, (one, read(row.u, row.v)), (other, route(row.u, row.v)))
 
 
-def _elsewhere(u: Any, v: Any) -> RowTerms:
-    return _localisation_elsewhere(u.variety).row(u, v)
-
-
 @lru_cache(maxsize=8)
-def _localisation_elsewhere(X: FlagVariety) -> "_Elsewhere":
-    return _Elsewhere(X)
-
-
-class _Elsewhere(Localisation):
-    """Localisation with other numbers for the simple roots, the divisor and the q's: the constants must not depend on them."""
-
-    @lru_cache(maxsize=256)  # noqa: B019  # lives as long as the variety
-    def _point(self, p: int, power: int, depth: int) -> _Point:
-        base = [1] if len(self.X.marked) == 1 else [pow(x, power, p) for x in self._base(p)]
-        return _Point(self.X, p, base, depth, self.step, seed=power + 1_000_003)
-
-    def _base(self, p: int) -> list[int]:
-        return [int(x) for x in np.random.default_rng([p, 1]).integers(2, p, size=len(self.X.marked))]
+def _elsewhere(X: FlagVariety) -> Localisation:
+    """Localisation with other numbers for the simple roots and the divisor: the constants must not depend on them."""
+    engine = Localisation(X)
+    engine.seed = 1_000_003
+    return engine
 
 
 # -- the mirror side -----------------------------------------------------------------------------------------------------

@@ -3,7 +3,8 @@
 Sources. Quantum Chevalley formula: Fulton, Woodward, J. Algebraic Geom. 13 (2004), Theorem 10.1. Degree: Weyl's dimension formula.
 Quantum Pieri: on Grassmannians Buch, Compositio Math. 137 (2003), Theorem 1; on ``Fl(n)`` Ciocan-Fontanine, Duke Math. J. 98 (1999)
 (from memory); on ``LG`` and ``OG`` Kresch, Tamvakis, J. Algebraic Geom. 12 (2003) and Compositio Math. 140 (2004) (from memory). Rim hooks:
-Bertram, Ciocan-Fontanine, Fulton, J. Algebra 219 (1999). Rational curves: Ravi, Rosenthal, Wang, Math. Ann. 311 (1998) (from memory).
+Bertram, Ciocan-Fontanine, Fulton, J. Algebra 219 (1999). A transposition and
+the point: Kirillov, Maeno, Discrete Math. 217 (2000), Remark 12 (seen). Rational curves: Ravi, Rosenthal, Wang, Math. Ann. 311 (1998) (from memory).
 """
 
 from collections.abc import Iterator
@@ -45,6 +46,8 @@ def formulas(X: FlagVariety, read: Reader) -> Iterator[Check]:
     elif X.kind.letter == "A" and X.is_complete and X.n <= _LARGEST_PIERI:
         factors = [(m, k, distinct) for m in range(1, X.n) for k in range(1, X.n) for distinct in (0, 1) if k <= (m, X.n - m)[distinct]]
         yield Check("quantum Pieri", "products", [(*f, w) for f in factors for w in X.classes], partial(_flag_pieri, read))
+        triples = [(X, k, i, j) for k in range(1, X.n) for i, j in combinations(range(1, X.n + 1), 2)]
+        yield Check("transposition times point", "numbers", triples, partial(_point_and_transposition, read))
     elif is_lagrangian(X) or is_odd_orthogonal(X):
         shapes = strict_partitions(X.rank)
         units = [(X, k, lam) for k in range(1, X.rank + 1) for lam in shapes]
@@ -223,6 +226,18 @@ def _flag_pieri(read: Reader, unit: tuple[int, int, int, SchubertClass]) -> Iter
     factor = X.schubert(word=letters)
     expected = {(X.schubert(permutation=line), d): 1 for line, d, _ in states}
     yield from compare(Row(X, factor, w), ("product", read(factor, w)), ("quantum Pieri rule", expected))
+
+
+def _point_and_transposition(read: Reader, unit: tuple[FlagVariety, int, int, int]) -> Iterator[Difference]:
+    """``[pt] sigma_{s_k} * sigma_{t_ij} * [pt]`` is ``q_i ... q_{j-1}`` if ``i <= k < j``, else 0."""
+    X, k, i, j = unit
+    zero, line = (0,) * (X.n - 1), list(range(1, X.n + 1))
+    line[i - 1], line[j - 1] = j, i
+    factor, other = X.schubert(word=(k,)), X.schubert(permutation=line)
+    whole = times(read, read(factor, other), {(X.point, zero): 1})
+    found = {(w, d): count for (w, d), count in whole.items() if w is X.point}
+    expected = {(X.point, tuple(int(i <= r < j) for r in range(1, X.n))): 1} if i <= k < j else {}
+    yield from compare(Row(X, factor, other), ("coefficient in (u * v) * [pt]", found), ("Kirillov-Maeno, Remark 12", expected))
 
 
 # -- Lagrangian and odd orthogonal Grassmannians -------------------------------------------------------------------------

@@ -7,6 +7,7 @@ from typing import Any
 
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import SchubertClass
+from conjcheck.geometry.notation import text_of_permutation
 from conjcheck.oracle.engine import Product
 from conjcheck.oracle.equivariant import Sampled
 from conjcheck.testing.answer import shown_value
@@ -129,12 +130,16 @@ def describe_class(u: SchubertClass) -> str:
     >>> describe_class(Gr(2, 4).schubert(partition=(2,)))
     '(2)  permutation 1423, string 0110, word 3.2, length 2'
     """
-    if u.variety.kind.letter != "A":
-        return f"{u}  length {u.length}"
-    one_line = "".join(map(str, u.permutation)) if u.variety.n <= 9 else ".".join(map(str, u.permutation))
-    permutation = f"permutation {one_line}, " if u.variety.is_grassmannian else ""
-    word = ".".join(map(str, u.word)) or "empty"
-    return f"{u}  {permutation}string {u.string}, word {word}, length {u.length}"
+    X, views = u.variety, []
+    if X.kind.letter == "A":
+        if X.is_grassmannian:
+            views.append(f"permutation {text_of_permutation(u.permutation)}")
+        views.append(f"string {u.string}")
+    elif X.kind.letter in "BCD" and not str(u).startswith("["):
+        views.append(f"signed {'.'.join(map(str, u.signed))}")
+    if not str(u).startswith("<"):
+        views.append(f"word {'.'.join(map(str, u.word)) or 'empty'}")
+    return f"{u}  {', '.join([*views, f'length {u.length}'])}"
 
 
 def _product(product: Product) -> str:

@@ -16,7 +16,7 @@ from conjcheck.testing.finding import Finding, Found
 from conjcheck.testing.laws import NoValue, broken_laws, laws_apply
 from conjcheck.testing.minimise import Minimum, certified, confirm, descend, layer_of, minimise
 from conjcheck.testing.outcome import Outcome
-from conjcheck.testing.probe import ProbeCount, probe_levels, run_probe
+from conjcheck.testing.probe import ProbeCount, level_name, probe_levels, run_probe
 from conjcheck.testing.scope import probe_scope, survey_scope, survey_spaces
 from conjcheck.testing.survey import Coverage, in_reach, survey
 
@@ -119,15 +119,15 @@ class Examination:
             return self.work_out(found.finding, "laws", started, count.broken_law)
         return self.laws_agree(count, started)
 
-    def probe(self, n: int, spaces: list[FlagVariety], seconds: float, *, seed: int | None = None) -> Outcome | None:
+    def probe(self, spaces: list[FlagVariety], seconds: float, *, seed: int | None = None) -> Outcome | None:
         """Compare rows drawn at random on some spaces; ``None`` if no row inside the premise was met."""
         started = perf_counter()
         count = ProbeCount(started + seconds)
         try:
             run_probe(self.probe_check(count), self.unfinished(spaces), self.comparer, count, seed=seed, draws=self.effort.draws)
         except Found as found:
-            return self.work_out(found.finding, f"probe[n={n}]", started)
-        return self.probe_agrees(n, spaces, count, started)
+            return self.work_out(found.finding, f"probe[{level_name(spaces)}]", started)
+        return self.probe_agrees(spaces, count, started)
 
     def case(self, where: Case | Row) -> Outcome:
         """Compare one single case, or row, and nothing else."""
@@ -225,15 +225,15 @@ class Examination:
         scope = f"the laws hold around {count.rows:,} rows drawn at random ({count.distinct:,} distinct)"
         return Outcome(self.conjecture, "laws", "agrees", scope, rows=count.rows, seconds=perf_counter() - started)
 
-    def probe_agrees(self, n: int, spaces: list[FlagVariety], count: ProbeCount, started: float) -> Outcome | None:
+    def probe_agrees(self, spaces: list[FlagVariety], count: ProbeCount, started: float) -> Outcome | None:
         """The outcome of a probe that found nothing wrong; ``None`` if it compared nothing."""
         if not count.rows:
             return None
         return Outcome(
             self.conjecture,
-            f"probe[n={n}]",
+            f"probe[{level_name(spaces)}]",
             "agrees",
-            probe_scope(n, spaces, count),
+            probe_scope(spaces, count),
             rows=count.rows,
             cases=count.cases,
             nonzero=count.nonzero,
@@ -294,9 +294,9 @@ def examine(conjecture: Conjecture, *, effort: str = "normal", seed: int | None 
     if conjecture.role == "candidate" and not examination.failure:
         outcomes.append(examination.laws(seed=seed))
     levels = examination.levels()
-    for n, spaces in levels:
+    for _, spaces in levels:
         if not examination.failure:
-            outcomes.append(examination.probe(n, spaces, examination.effort.probe / len(levels), seed=seed))
+            outcomes.append(examination.probe(spaces, examination.effort.probe / len(levels), seed=seed))
     return [outcome for outcome in outcomes if outcome]
 
 

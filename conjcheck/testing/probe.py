@@ -18,7 +18,7 @@ from conjcheck.testing.compare import Comparer
 from conjcheck.testing.finding import STATUSES, Finding, Found, raise_finding
 from conjcheck.testing.survey import in_reach
 
-__all__ = ["Check", "ProbeCount", "TimeIsUp", "gravest", "probe_levels", "probe_test", "run_probe"]
+__all__ = ["Check", "ProbeCount", "TimeIsUp", "gravest", "level_name", "probe_levels", "probe_test", "run_probe"]
 
 Check = Callable[[Row, int], None]
 """A check of one drawn row; the integer is free for the check to use. Raises ``Found``."""
@@ -104,7 +104,7 @@ def probe_levels(conjecture: Conjecture, most_classes: int) -> list[tuple[int, l
     """
     levels: dict[int, list[FlagVariety]] = {}
     for X in in_reach(conjecture, last_rank=_LAST_RANK, most_spaces=_MOST_SPACES):
-        if X.number_of_classes > most_classes or (X.n == 8 and not X.is_grassmannian and most_classes < 40_320):
+        if X.number_of_classes > most_classes or (X.n == 8 and len(X.marked) > 1 and most_classes < 40_320):
             continue
         if X.number_of_classes >= _FEWEST_CLASSES:
             levels.setdefault(X.n, []).append(X)
@@ -112,6 +112,12 @@ def probe_levels(conjecture: Conjecture, most_classes: int) -> list[tuple[int, l
     if len(chosen) > _MOST_LEVELS:
         chosen = [chosen[0], chosen[len(chosen) // 2], chosen[-1]]
     return [(n, levels[n]) for n in chosen]
+
+
+def level_name(spaces: list[FlagVariety]) -> str:
+    """``n=5``, or ``rank=4`` where not all spaces are of type A."""
+    first = spaces[0]
+    return f"n={first.n}" if all(X.kind.letter == "A" for X in spaces) else f"rank={first.rank}"
 
 
 def probe_test(

@@ -2,7 +2,7 @@
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.geometry.flag_variety import FlagVariety
-from conjcheck.testing.probe import ProbeCount
+from conjcheck.testing.probe import ProbeCount, level_name
 from conjcheck.testing.survey import Coverage
 
 __all__ = ["probe_scope", "survey_scope", "survey_spaces"]
@@ -38,9 +38,9 @@ def survey_scope(coverage: Coverage, conjecture: Conjecture) -> str:
     return text
 
 
-def probe_scope(n: int, spaces: list[FlagVariety], count: ProbeCount) -> str:
+def probe_scope(spaces: list[FlagVariety], count: ProbeCount) -> str:
     """What a probe has compared, and the largest share of failing rows that is still compatible with it at 95 %."""
-    where = spaces[0].name if len(spaces) == 1 else f"{len(spaces)} spaces with n = {n}"
+    where = spaces[0].name if len(spaces) == 1 else f"{len(spaces)} spaces with {level_name(spaces)}"
     sampled = f" ({count.sampled:,} rows with all nonzero cases and a sample of the zeros)" if count.sampled else ""
     return (
         f"{count.rows:,} rows drawn at random on {where}, {count.distinct:,} of them distinct, {count.cases:,} cases{sampled}; "

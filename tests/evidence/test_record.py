@@ -115,10 +115,10 @@ def entry(**changes):
         (entry(where="Gr(2,4): (9) * (1)"), "counterexample 2: "),
         (entry(where="nonsense"), "counterexample 2: expected a row"),
         (entry(where="P^999999999: (1) * (1)"), "counterexample 2: "),
-        (entry(rule=-1), 'expected null or an integer of 0 or more under "rule" of counterexample 2, got -1'),
+        (entry(rule=-1), 'an integer of 0 or more, or a polynomial as text under "rule" of counterexample 2, got -1'),
         (entry(rule=1.0), 'under "rule" of counterexample 2, got 1.0'),
         (entry(oracle=True), 'under "oracle" of counterexample 2, got True'),
-        (entry(oracle="1"), 'under "oracle" of counterexample 2'),
+        (entry(oracle=[1]), 'under "oracle" of counterexample 2'),
     ],
     ids=range(25),
 )

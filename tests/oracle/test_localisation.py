@@ -65,11 +65,12 @@ def test_sp4():
     X = FlagVariety("C2/B")
     point = X.point.word
     pairs = [((1,), (1,)), ((2,), (2,)), ((2, 1), (2, 1)), (point, point)]
-    assert products(X, pairs) == [
-        "sigma<2.1> + q^(1,0) sigma<>",
-        "2 sigma<1.2> + q^(0,1) sigma<>",
-        "2 q^(1,0) sigma<1.2> + q^(1,1) sigma<>",
-        "q^(1,2) sigma<2.1> + q^(2,2) sigma<>",
+    found = [product(word(X, *u), word(X, *v), engine="localisation") for u, v in pairs]
+    assert [{(w.word, d): n for (w, d), n in terms.items()} for terms in found] == [
+        {((2, 1), (0, 0)): 1, ((), (1, 0)): 1},
+        {((1, 2), (0, 0)): 2, ((), (0, 1)): 1},
+        {((1, 2), (1, 0)): 2, ((), (1, 1)): 1},
+        {((2, 1), (1, 2)): 1, ((), (2, 2)): 1},
     ]
 
 

@@ -168,7 +168,7 @@ def test_an_incomplete_layer():
         (lambda: Gr(2, 4).identity, "()  permutation 1234, string 0011, word empty, length 0"),
         (lambda: Fl(1, 3, n=4).point, "[4231]  string 2110, word 1.2.3.2.1, length 5"),
         (lambda: Gr(1, 11).point, "(10)  permutation 11.1.2.3.4.5.6.7.8.9.10, string 11111111110, word 10.9.8.7.6.5.4.3.2.1, length 10"),
-        (lambda: FlagVariety("B2/B").classes[3], "<1.2>  length 2"),
+        (lambda: FlagVariety("G2/B").classes[3], "<1.2>  length 2"),
     ],
     ids=range(5),
 )

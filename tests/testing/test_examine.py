@@ -42,7 +42,7 @@ def parts(conjecture, effort=BRIEF, **options):
         elif part == "laws" and conjecture.role == "candidate":
             found.append(examination.laws(seed=1))
         elif part == "probe":
-            found += [examination.probe(n, spaces, 0.3, seed=1) for n, spaces in examination.levels()]
+            found += [examination.probe(spaces, 0.3, seed=1) for _, spaces in examination.levels()]
     return [outcome for outcome in found if outcome]
 
 
@@ -83,7 +83,7 @@ def test_seeds():
 
     def drawn():
         examination = Examination(rule_by_rows(), unhurried)
-        parts = [examination.laws(seed=5), *(examination.probe(n, spaces, 60.0, seed=5) for n, spaces in examination.levels())]
+        parts = [examination.laws(seed=5), *(examination.probe(spaces, 60.0, seed=5) for _, spaces in examination.levels())]
         return [(outcome.part, outcome.rows, outcome.cases) for outcome in parts]
 
     counted = [drawn(), drawn()]
@@ -203,7 +203,7 @@ def test_no_time():
     assert (outcome.rows, outcome.cases) == (0, 0)
     examination = Examination(rule_by_rows(), replace(BRIEF, laws=-1.0))
     assert examination.laws() is None
-    assert examination.probe(4, [Fl(4)], -1.0) is None
+    assert examination.probe([Fl(4)], -1.0) is None
 
 
 @pytest.mark.parametrize("by_rows", [True, False], ids=["premise on rows", "premise on cases"])
@@ -276,7 +276,7 @@ def test_a_fault_beyond_the_survey():
     first = next(case for case in cases_of(Fl(4)) if case[1].length + case[2].length == 7 and truth(Fl(4))[case[1:3]].get(case[3:]))
     for minimise, certified in ((60.0, True), (0.0, False)):
         examination = Examination(rule, replace(BRIEF, minimise=minimise))
-        outcome = examination.probe(4, [Fl(4)], 5.0, seed=1)
+        outcome = examination.probe([Fl(4)], 5.0, seed=1)
         assert (outcome.part, outcome.status, outcome.minimum.certified) == ("probe[n=4]", "refuted", certified)
         if certified:
             assert outcome.finding.where == Case(*first)

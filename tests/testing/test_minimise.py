@@ -49,6 +49,11 @@ FAULTS = st.one_of(
 """Faults anywhere, and faults that lie close together, often in one row."""
 
 
+def minimality(below):
+    """What a certified outcome says."""
+    return f"minimal: all {below:,} smaller cases agree" if below else "minimal: there is no smaller case"
+
+
 def reported(case):
     """The finding that a probe or a replay would come with."""
     true = truth(case[0])[case[1:3]].get(case[3:], 0)
@@ -90,10 +95,10 @@ def test_worked_out(faults, kind, part):
     assert outcome is examination.failure
     assert (outcome.status, outcome.finding.where) == ("refuted", as_case(smallest))
     below = smaller_than(smallest, SPACES)
-    assert outcome.minimality == f"minimal: all {below:,} smaller cases agree"
+    assert outcome.minimality == minimality(below)
     true = truth(smallest[0])[smallest[1:3]].get(smallest[3:], 0)
     assert outcome.verdict == (
-        f"refuted: {outcome.conjecture.name} at {as_case(smallest)}: rule {true + 1}, oracle {true} (minimal: all {below:,} smaller cases agree)"
+        f"refuted: {outcome.conjecture.name} at {as_case(smallest)}: rule {true + 1}, oracle {true} ({minimality(below)})"
     )
     layer = [as_case(case) for case in sorted(faults, key=key_of) if case[0] is smallest[0]]
     assert outcome.layer.complete
@@ -133,6 +138,7 @@ def test_reports_without_time(faults, kind, budget):
     assert not outcome.minimum.certified
     assert "(not known to be minimal: " in outcome.verdict
     assert "minimal: all" not in text
+    assert "minimal: there" not in text
     assert "yes:" not in text
     assert outcome.as_json()["minimal"] is False
     assert not outcome.layer.complete or len(outcome.layer.findings) == sum(case[0] is last[0] for case in {*faults, last})
