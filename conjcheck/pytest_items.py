@@ -21,7 +21,7 @@ from conjcheck.evidence.record import Counterexample, Record, parse_place, read_
 from conjcheck.geometry.case import Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.oracle.guard import Watch, watched
-from conjcheck.pytest_plugin import _STATE, _seconds
+from conjcheck.pytest_state import STATE, seconds
 from conjcheck.report.text import text_report
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.limits import CallInterrupted, CallLimit
@@ -160,16 +160,16 @@ class ConjectureNode(pytest.Collector):
     def examination(self) -> Examination:
         """The examination that the parts share."""
         config = self.config
-        shared: dict[Conjecture, Examination] = config.stash[_STATE]["examinations"]
+        shared: dict[Conjecture, Examination] = config.stash[STATE]["examinations"]
         if self.conjecture not in shared:
             effort = EFFORTS[config.getoption("--conjcheck-effort") or config.getini("conjcheck_effort")]
-            budget = _seconds(config, "conjcheck_budget")
+            budget = seconds(config, "conjcheck_budget")
             if budget:
                 effort = replace(effort, survey=budget)
             shared[self.conjecture] = Examination(
                 self.conjecture,
                 effort,
-                call_limit=_seconds(config, "conjcheck_call_limit") or 10.0,
+                call_limit=seconds(config, "conjcheck_call_limit") or 10.0,
                 cross_check=config.getoption("--conjcheck-cross-check"),
             )
         return shared[self.conjecture]
@@ -209,7 +209,7 @@ class ConjectureNode(pytest.Collector):
 
     @property
     def _seed(self) -> Any:
-        return self.config.stash[_STATE]["seed"]
+        return self.config.stash[STATE]["seed"]
 
     def _laws(self) -> Draws:
         examination, started = self.examination, perf_counter()
@@ -292,7 +292,7 @@ class PartItem(pytest.Function):
         outcome = self.outcome
         assert outcome is not None, "every part ends in an outcome"
         if self._make_draws is not None:
-            outcome = replace(outcome, seed=str(self.config.stash[_STATE]["seed"]))
+            outcome = replace(outcome, seed=str(self.config.stash[STATE]["seed"]))
         expected = self.expected is not None and outcome.status == "refuted" and self.expected.status == "refuted"
         if expected:
             outcome = replace(outcome, note="on record as refuted: this is the expected verdict")

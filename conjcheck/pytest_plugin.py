@@ -13,14 +13,13 @@ from typing import TYPE_CHECKING, Any
 
 import pytest
 
+from conjcheck.pytest_state import EFFORTS, LINES, STATE, seconds
+
 if TYPE_CHECKING:
     from collections.abc import Generator
     from pathlib import Path
 
 _FOLDERS = "conjcheck_folders"
-_STATE = pytest.StashKey[Any]()
-_LINES = pytest.StashKey[list[dict[str, Any]]]()
-_EFFORTS = ("quick", "normal", "thorough")
 
 
 def pytest_addoption(parser: pytest.Parser) -> None:
@@ -28,7 +27,7 @@ def pytest_addoption(parser: pytest.Parser) -> None:
     group = parser.getgroup("conjcheck", "conjcheck: candidate rules for quantum Schubert calculus")
     group.addoption(
         "--conjcheck-effort",
-        choices=_EFFORTS,
+        choices=EFFORTS,
         help="how much work goes into each conjecture (default: the ini key conjcheck_effort, else normal)",
     )
     group.addoption(
@@ -59,16 +58,16 @@ def pytest_configure(config: pytest.Config) -> None:
     """Choose the seed of the run, once, and pass the folders of installed plug-ins to the collection."""
     given = config.getoption("--hypothesis-seed", None)
     worker = getattr(config, "workerinput", {})
-    config.stash[_STATE] = {
+    config.stash[STATE] = {
         "seed": worker.get("conjcheck_seed", given if given is not None else random.randrange(2**32)),  # noqa: S311
         "examinations": {},
     }
-    config.stash[_LINES] = []
+    config.stash[LINES] = []
     effort = config.getini("conjcheck_effort")
-    if effort not in _EFFORTS:
-        raise pytest.UsageError(f"expected conjcheck_effort to be one of {', '.join(_EFFORTS)}, got {effort!r}")
+    if effort not in EFFORTS:
+        raise pytest.UsageError(f"expected conjcheck_effort to be one of {', '.join(EFFORTS)}, got {effort!r}")
     for key in ("conjcheck_budget", "conjcheck_call_limit"):
-        _seconds(config, key)
+        seconds(config, key)
     if config.getoption("--conjcheck-installed") and not worker:
         from conjcheck.conjecture.discover import installed_files
 
@@ -78,22 +77,7 @@ def pytest_configure(config: pytest.Config) -> None:
 @pytest.hookimpl(optionalhook=True)
 def pytest_configure_node(node: Any) -> None:
     """Under xdist, every worker draws with the seed of the controller."""
-    node.workerinput["conjcheck_seed"] = node.config.stash[_STATE]["seed"]
-
-
-def _seconds(config: pytest.Config, key: str) -> float | None:
-    """A number of seconds from the command line or the ini file."""
-    given = config.getoption(f"--{key.replace('_', '-')}")
-    text = str(given) if given is not None else config.getini(key)
-    if text == "":
-        return None
-    try:
-        seconds = float(text)
-    except ValueError:
-        seconds = 0.0
-    if not seconds > 0:
-        raise pytest.UsageError(f"expected a number of seconds above 0 for {key}, got {text!r}")
-    return seconds
+    node.workerinput["conjcheck_seed"] = node.config.stash[STATE]["seed"]
 
 
 def pytest_report_collectionfinish(config: pytest.Config, items: list[pytest.Item]) -> str | None:
@@ -103,7 +87,7 @@ def pytest_report_collectionfinish(config: pytest.Config, items: list[pytest.Ite
         return None
     import conjcheck
 
-    seed = config.stash[_STATE]["seed"]
+    seed = config.stash[STATE]["seed"]
     return f"conjcheck {conjcheck.__version__}: seed {seed} (repeat with --hypothesis-seed={seed})"
 
 
@@ -159,7 +143,7 @@ def pytest_runtest_logreport(report: pytest.TestReport) -> None:
     if report.when == "call" and _config is not None:
         for key, value in report.user_properties:
             if key == "conjcheck":
-                _config.stash[_LINES].append(json.loads(str(value)))
+                _config.stash[LINES].append(json.loads(str(value)))
 
 
 _config: pytest.Config | None = None
@@ -173,7 +157,7 @@ def pytest_sessionstart(session: pytest.Session) -> None:
 
 def pytest_terminal_summary(terminalreporter: Any, config: pytest.Config) -> None:
     """One line per conjecture; nothing if none ran."""
-    lines = config.stash[_LINES]
+    lines = config.stash[LINES]
     if not lines:
         return
     from conjcheck.report.text import summary_table

@@ -52,6 +52,7 @@ def modules():
 MODULES = modules()
 
 
+@cache
 def tree(room):
     """The syntax tree of a room."""
     return ast.parse(MODULES[room].read_text(encoding="utf-8"))

@@ -17,7 +17,7 @@ from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
 from conjcheck.geometry.signed import has_strict_partitions, read_signed, signed_from_partition, strict_partition_of, text_of_signed
 from conjcheck.geometry.weyl import Orbit, dual_indices, number_of_cosets, one_lines, orbit, signed_lines, weight_images
 
-__all__ = ["IG", "LG", "MOST_CLASSES", "OG", "Degree", "Fl", "FlagVariety", "Gr", "SchubertClass"]
+__all__ = ["IG", "LG", "MOST_CLASSES", "OG", "Degree", "Fl", "FlagVariety", "Gr", "SchubertClass", "orbit_of"]
 
 Degree = tuple[int, ...]
 

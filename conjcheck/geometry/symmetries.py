@@ -8,17 +8,19 @@ Source: Seidel, Pi_1 of symplectic automorphism groups ..., GAFA 7 (1997); in th
 of the equivariant quantum cohomology ring of rational homogeneous spaces, Math. Res. Lett. 16 (2009).
 """
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import lru_cache
+from time import perf_counter
 
 import numpy as np
 
 from conjcheck.geometry.cartan import automorphisms, cominuscule_nodes
 from conjcheck.geometry.case import Case
-from conjcheck.geometry.flag_variety import FlagVariety, orbit_of
+from conjcheck.geometry.flag_variety import Degree, FlagVariety, orbit_of
 from conjcheck.geometry.weyl import Ints, dual_indices, orbit, reflected_by_word, weight_drops
 
-__all__ = ["Seidel", "diagram_images", "orbit_of_case", "seidel"]
+__all__ = ["Seidel", "count_orbits", "diagram_images", "orbit_of_case", "seidel"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -86,27 +88,49 @@ def _sibling(X: FlagVariety, marked: tuple[int, ...]) -> FlagVariety:
     return FlagVariety(f"{X.kind}/P{','.join(map(str, marked))}")
 
 
+Indices = tuple[int, int, int, Degree]
+"""A case of one variety: indices of u, v and w, and d."""
+
+
 def orbit_of_case(case: Case, *, seidel_too: bool = True) -> set[Case]:
     """All cases of the same variety that have the same constant by laws 2, 3 and 4 (S3, diagram automorphisms, Seidel).
 
     Closed under: permuting the three insertions ``u, v, w^vee``; automorphisms that fix X; Seidel elements on u and v (these mix
     degrees: leave them out with ``seidel_too=False`` to stay inside the classical ring).
     """
-    X, group = case.X, seidel(case.X)
-    dual = dual_indices(X.kind, X.marked)
-    homes = [(images, places) for Y, images, places in diagram_images(X) if Y is X]
+    X = case.X
     start = (case.u.index, case.v.index, case.w.index, case.d)
+    return {Case(X, X.classes[u], X.classes[v], X.classes[w], d) for u, v, w, d in _orbit(X, start, seidel_too=seidel_too)}
+
+
+def count_orbits(cases: Iterable[Case], *, seidel_too: bool = True, deadline: float = float("inf")) -> tuple[int, bool]:
+    """The number of orbits that cases of one variety lie in, and whether all were sorted before the ``perf_counter()`` deadline."""
+    left = {(case.u.index, case.v.index, case.w.index, case.d): case.X for case in cases}
+    orbits = 0
+    while left:
+        if perf_counter() > deadline:
+            return orbits + 1, False
+        start, X = next(iter(left.items()))
+        orbits += 1
+        for member in _orbit(X, start, seidel_too=seidel_too):
+            left.pop(member, None)
+    return orbits, True
+
+
+def _orbit(X: FlagVariety, start: Indices, *, seidel_too: bool) -> set[Indices]:
+    group, dual = seidel(X), dual_indices(X.kind, X.marked)
+    homes = [(images, places) for Y, images, places in diagram_images(X) if Y is X]
     todo, seen = [start], {start}
     while todo:
         u, v, w, d = todo.pop()
         near = [(v, u, w, d), (u, int(dual[w]), int(dual[v]), d)]
         near += [(int(f[u]), int(f[v]), int(f[w]), tuple(d[p] for p in places)) for f, places in homes]
         for g in range(1, len(group.units)) if seidel_too else ():
-            # S_g * (sigma_u * sigma_v): the term q^d sigma_w becomes q^(d + shift(w) - shift(u)) sigma_(g w) in sigma_(g u) * sigma_v.
-            moved = tuple(int(x) for x in np.array(d) + group.shifts[g, w] - group.shifts[g, u])
+            # S_g (sigma_u sigma_v): the term q^d sigma_w becomes q^(d + shift(w) - shift(u)) sigma_(g w) of sigma_(g u) sigma_v.
+            moved = tuple((np.array(d) + group.shifts[g, w] - group.shifts[g, u]).tolist())
             if min(moved) >= 0:
                 near.append((int(group.images[g, u]), v, int(group.images[g, w]), moved))
-        fresh = [case for case in near if case not in seen]
+        fresh = [indices for indices in near if indices not in seen]
         seen.update(fresh)
         todo.extend(fresh)
-    return {Case(X, X.classes[u], X.classes[v], X.classes[w], d) for u, v, w, d in seen}
+    return seen

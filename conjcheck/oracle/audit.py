@@ -1,7 +1,8 @@
 """The audit: the oracle held against itself, against the laws, against closed formulas, published values and the mirror side, on one space.
 
-Every check goes through its units in order, smallest first; what is not through when four fifths of the budget are spent goes on at random.
-It does not stop at a difference, and keeps the smallest one. What was compared is counted, and nothing compared is never called an agreement.
+Every check goes through its units in order, smallest first; what is not through when four fifths of the budget are spent goes on
+at random. It does not stop at a difference, and keeps the smallest one. What was compared is counted, and nothing compared is never
+called an agreement.
 """
 
 from collections.abc import Callable, Iterator
@@ -14,7 +15,7 @@ from conjcheck.errors import OutOfReach
 from conjcheck.geometry.case import Row
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.oracle import engines_for
-from conjcheck.oracle.check import Check, Difference, Reader, RowList, afford, compare
+from conjcheck.oracle.check import Check, Difference, Reader, RowList, compare
 from conjcheck.oracle.comparison import RecursionEngine
 from conjcheck.oracle.engine import Engine, RowTerms
 from conjcheck.oracle.formulas import formulas
@@ -58,15 +59,15 @@ class Result:
         return "differ" if self.smallest else "agree" if self.compared else "not run"
 
 
-def checks_of(X: FlagVariety) -> list[Check]:
-    """All checks that apply to X, in the order of the table.
+def checks_of(X: FlagVariety, seconds: float = 10.0) -> list[Check]:
+    """All checks that apply to X, in the order of the table; ``seconds`` is the budget they will have.
 
     Raises:
         OutOfReach: no engine covers X.
     """
     if not engines_for(X):
         raise OutOfReach(f"expected a space in reach of some engine, got {X} with {X.number_of_classes:,} Schubert classes")
-    read = Reader()
+    read = Reader(seconds)
     return [*_engines(X, read), *laws(X, read), *formulas(X, read), *published(X, read), *_mirror(X, read)]
 
 
@@ -85,7 +86,7 @@ def audit(
         OutOfReach: no engine covers X.
     """
     begun = perf_counter()
-    runs = [_Run(X, check, Random(f"{seed}/{X}/{check.name}")) for check in checks_of(X)]  # noqa: S311  # a choice of rows, no secret
+    runs = [_Run(X, check, Random(f"{seed}/{X}/{check.name}")) for check in checks_of(X, seconds)]  # noqa: S311  # a choice of rows, no secret
     for end, at_random in ((0.5, False), (0.8, False), (1.0, True)):
         first, until = True, begun + end * seconds
         while (open_ := [run for run in runs if run.is_open]) and (first or perf_counter() < until):
@@ -121,7 +122,7 @@ class _Run:
     def go_on(self, until: float, deadline: float, *, at_random: bool) -> None:
         """Compare units until a time: at least one if none has been."""
         begun = perf_counter()
-        if self.check.needs > deadline - begun:
+        if self.check.needs and self.check.needs > deadline - begun:
             self.why = f"takes about {self.check.needs:.0f} s: give more --seconds"
             self.is_open = False
             return
@@ -147,7 +148,9 @@ class _Run:
             self.left_out += 1
             return
         except AssertionError as error:
-            where = str(unit) if isinstance(unit, Row) else f"{self.X}: {self.check.name}, number {place + 1} of the {self.check.unit}"
+            where = (
+                str(unit) if isinstance(unit, Row) else f"{self.X}: {self.check.name}, number {place + 1} of the {self.check.unit}"
+            )
             found = [Difference(where, ("an engine stopped", str(error)), ("it should give", "a product"))]
         self.compared += 1
         if found:
@@ -195,11 +198,13 @@ def _engines(X: FlagVariety, read: Reader) -> Iterator[Check]:
 
 
 def _agree(read: Reader, first: Engine, other: Engine, row: Row) -> Iterator[Difference]:
-    afford(other, row.X, row.u.length + row.v.length)
+    read.afford(other, row.u, row.v)
     yield from compare(row, (first.name, read(row.u, row.v)), (other.name, other.row(row.u, row.v)))
 
 
-def _same(read: Reader, one: str, other: str, route: Callable[[SchubertClass, SchubertClass], RowTerms], row: Row) -> Iterator[Difference]:
+def _same(
+    read: Reader, one: str, other: str, route: Callable[[SchubertClass, SchubertClass], RowTerms], row: Row
+) -> Iterator[Difference]:
     yield from compare(row, (one, read(row.u, row.v)), (other, route(row.u, row.v)))
 
 
@@ -217,7 +222,9 @@ def _elsewhere(X: FlagVariety) -> Localisation:
 def _mirror(X: FlagVariety, read: Reader) -> Iterator[Check]:
     if X.name in CRITICAL_POINTS:
         missing = "" if has_sympy() else "needs sympy"
-        yield Check("mirror potential", "spectra", [X], partial(_spectra, read), needs=CRITICAL_POINTS[X.name][1], missing=missing)
+        yield Check(
+            "mirror potential", "polynomials", [X], partial(_spectra, read), needs=CRITICAL_POINTS[X.name][1], missing=missing
+        )
 
 
 def _spectra(read: Reader, X: FlagVariety) -> Iterator[Difference]:

@@ -3,6 +3,7 @@
 from bisect import bisect_right
 from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
+from math import gcd
 from typing import Any, Protocol, TypeVar
 
 from conjcheck.errors import OutOfReach
@@ -12,12 +13,12 @@ from conjcheck.oracle import engines_for, row_terms
 from conjcheck.oracle.engine import Engine, RowTerms
 from conjcheck.oracle.localisation import LocalisationEngine
 
-__all__ = ["Check", "Difference", "Reader", "RowList", "TripleList", "afford", "at_two_places", "compare", "sum_degrees", "times"]
+__all__ = ["Check", "Difference", "Reader", "RowList", "TripleList", "at_two_places", "compare", "sum_degrees", "times"]
 
 Value = int | str
 T_co = TypeVar("T_co", covariant=True)
 
-_MOST_WORK = 40_000_000
+_MOST_WORK = 100_000_000
 _MOST_TERMS = 2_000_000
 
 
@@ -116,20 +117,15 @@ class TripleList:
         return self._rows[row], self.X.classes[z]
 
 
-def afford(engine: Engine, X: FlagVariety, total: int) -> None:
-    """Refuse a row of localisation up to the degree ``total`` that would take more than about a second.
-
-    Raises:
-        OutOfReach: it would.
-    """
-    if isinstance(engine, LocalisationEngine) and (work := engine.work(X, total)) > _MOST_WORK:
-        raise OutOfReach(f"expected a row of at most {_MOST_WORK:,} modular multiplications, got about {work:,} on {X}")
-
-
 class Reader:
-    """Products as a user gets them, by the engine that the oracle chooses; remembered, as far as memory allows."""
+    """Products as a user gets them, by the engine that the oracle chooses; remembered, as far as memory allows.
 
-    def __init__(self) -> None:
+    Args:
+        seconds: a product that needs more than about a tenth of it, but a second at least, is refused with ``OutOfReach``.
+    """
+
+    def __init__(self, seconds: float = 10.0) -> None:
+        self._patience = max(seconds / 10, 1.0)
         self._known: dict[tuple[SchubertClass, SchubertClass], RowTerms] = {}
         self._terms = 0
 
@@ -137,12 +133,27 @@ class Reader:
         """The nonzero terms of ``sigma_u * sigma_v``."""
         found = self._known.get((u, v))
         if found is None:
-            afford(engines_for(u.variety)[0], u.variety, u.length + v.length)
+            self.afford(engines_for(u.variety)[0], u, v)
             found = self._known[u, v] = row_terms(u, v)
             self._terms += len(found) + 1
             if self._terms > _MOST_TERMS:
                 self._known, self._terms = {(u, v): found}, len(found)
         return found
+
+    def afford(self, engine: Engine, u: SchubertClass, v: SchubertClass) -> None:
+        """Refuse a product by localisation that takes too long: the time goes into the points at which it evaluates.
+
+        Raises:
+            OutOfReach: it does.
+        """
+        if not isinstance(engine, LocalisationEngine):
+            return
+        X, total = u.variety, u.length + v.length
+        size, work, depth = X.number_of_classes, engine.work(X, total), total // gcd(*X.q_degrees)
+        points = work // ((depth + 1) * (depth + 2) * size**2)
+        seconds = points * (0.01 + size / 2_500)
+        if seconds > self._patience or work > _MOST_WORK:
+            raise OutOfReach(f"localisation of {Row(X, u, v)} takes about {seconds:.0f} s")
 
 
 def sum_degrees(*degrees: Degree) -> Degree:

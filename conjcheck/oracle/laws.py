@@ -160,7 +160,9 @@ def _seidel(read: Reader, row: Row) -> Iterator[Difference]:
             first = tuple(a - b for a, b in zip(d, group.shifts[g, origin.index].tolist(), strict=True))
             second = tuple(a - b for a, b in zip(d, start, strict=True))
             if min(first) < 0 or min(second) < 0:
-                case, count = (Case(X, gu, v, w, second), found[w, d]) if min(first) < 0 else (Case(X, u, v, origin, first), moved[w, d])
+                case, count = (
+                    (Case(X, gu, v, w, second), found[w, d]) if min(first) < 0 else (Case(X, u, v, origin, first), moved[w, d])
+                )
                 yield Difference(case, ("product", count), ("Seidel symmetry, a negative power of q", 0))
             else:
                 here_, there_ = Case(X, u, v, origin, first), Case(X, gu, v, w, second)
@@ -224,8 +226,10 @@ def _floats(read: Reader, row: Row) -> Iterator[Difference]:
 
 
 def _powers(read: Reader, row: Row) -> Iterator[Difference]:
-    """The smallest power of q in a product on ``Gr(k,n)`` is the least d such that the first partition without its first d rows and columns
-    lies inside the dual of the second; the powers form an interval; there is no q if the rows, or the columns, fit (Buch, Lemma 3).
+    """Which powers of q occur in a product on ``Gr(k,n)``.
+
+    The smallest is the least d such that the first partition without its first d rows and columns lies inside the dual of the
+    second; the powers form an interval; there is no q if the rows, or the columns, fit (Buch 2003, Lemma 3).
     """
     X, k, terms = row.X, row.X.marked[0], read(row.u, row.v)
     if not terms:
@@ -234,7 +238,9 @@ def _powers(read: Reader, row: Row) -> Iterator[Difference]:
     lam, inside = ((*shape, *[0] * k)[:k] for shape in (row.u.partition, row.v.dual.partition))
     least = next(d for d in range(k + 1) if all(max(a - d, 0) <= b for a, b in zip((*lam[d:], *[0] * d), inside, strict=True)))
     powers = sorted({d for _, (d,) in terms})
-    rows, columns = (sum(sizes) for sizes in zip(*((len(u.partition), max(u.partition, default=0)) for u in (row.u, row.v)), strict=True))
+    rows, columns = (
+        sum(sizes) for sizes in zip(*((len(u.partition), max(u.partition, default=0)) for u in (row.u, row.v)), strict=True)
+    )
     expected = [0] if rows <= k or columns <= X.n - k else list(range(least, least + len(powers)))
     if powers != expected:
         case = Case(X, row.u, row.v, *min(terms, key=place_in_row))

@@ -23,16 +23,16 @@ from conjcheck.oracle.engine import RowTerms
 __all__ = ["CRITICAL_POINTS", "critical_values", "has_sympy", "spectrum"]
 
 CRITICAL_POINTS = {
-    "Gr(1,3)": (3, 1.0),
-    "Gr(2,4)": (4, 1.0),
-    "Gr(2,5)": (10, 5.0),
-    "Fl(3)": (6, 1.0),
-    "Fl(1,3;4)": (9, 5.0),
-    "Fl(1,2;4)": (11, 60.0),
+    "Gr(1,3)": (3, 0.5),
+    "Gr(2,4)": (4, 0.5),
+    "Gr(2,5)": (10, 2.0),
+    "Fl(3)": (6, 0.5),
+    "Fl(1,3;4)": (9, 1.0),
+    "Fl(1,2;4)": (11, 5.0),
 }
-"""The spaces where this is tried: how many critical points the potential has there (computed, no source), and about how many seconds it takes.
+"""The spaces where this is tried: the number of critical points there (computed, no source), and about how many seconds it takes.
 
-On ``Gr(2,4)``, ``Fl(1,3;4)`` and ``Fl(1,2;4)`` these are fewer than the 6, 12 and 12 Schubert classes: known of toric potentials, common practice.
+On ``Gr(2,4)``, ``Fl(1,3;4)`` and ``Fl(1,2;4)`` there are fewer of them than the 6, 12 and 12 Schubert classes: common practice, no source.
 """
 
 

@@ -6,8 +6,8 @@ Perrin, Transform. Groups 13 (2008) 47-89. FGP = Fomin, Gelfand, Postnikov, J. A
 Wang, Math. Ann. 311 (1998) 11-26. "seen": read there; "from memory": stated there as far as known; "computed": agreed on by independent
 programs, no published source; "standard": in every text book.
 
-A line is an equation in QH*(X). ``S231`` is a class in one-line notation, ``s21`` a partition (on LG and OG a strict one), ``w21`` a reduced
-word; ``x2`` is ``sigma_{s_2} - sigma_{s_1}``; ``h`` a divisor, ``pt`` the point; ``q``, or ``q2`` for node 2.
+A line is an equation in QH*(X). ``S231`` is a class in one-line notation, ``s21`` a partition (on LG and OG a strict one), ``w21`` a
+reduced word; ``x2`` is ``sigma_{s_2} - sigma_{s_1}``; ``h`` is the divisor, ``pt`` the point; ``q2`` belongs to node 2.
 """
 
 import re
@@ -15,12 +15,13 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from functools import partial
 
-from conjcheck.geometry.case import Case, Row, place_in_row
+from conjcheck.geometry.case import Case, place_in_row
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.oracle import table
 from conjcheck.oracle.check import Check, Difference, Reader, sum_degrees, times
 from conjcheck.oracle.engine import RowTerms
-from conjcheck.oracle.formulas import classical_degree, is_lagrangian, is_odd_orthogonal, strict_class
+from conjcheck.oracle.formulas import classical_degree
+from conjcheck.oracle.pieri import is_lagrangian, is_odd_orthogonal, strict_class
 
 __all__ = ["Record", "evaluate", "published", "records"]
 
@@ -43,9 +44,17 @@ _LINES = [
         s11 s21 = q s1; s2 s22 = q s11; s11 s22 = q s2; s21 s21 = q s2 + q s11; s21 s22 = q s21; s22 s22 = q^2
         """,
     ),
-    ("Gr(2,5)", "Be, from memory", "s1 s31 = s32 + q; s1 s32 = s33 + q s1; s1 s33 = q s2; s11 s3 = q; s2 s21 = s32 + q; s2 s31 = s33 + q s1"),
+    (
+        "Gr(2,5)",
+        "Be, from memory",
+        "s1 s31 = s32 + q; s1 s32 = s33 + q s1; s1 s33 = q s2; s11 s3 = q; s2 s21 = s32 + q; s2 s31 = s33 + q s1",
+    ),
     ("Gr(2,5)", "Be, from memory", "s2 s32 = q s2 + q s11; s2 s33 = q s21"),
-    ("Gr(2,5)", "computed", "s21 s21 = s33 + q s1; s21 s31 = q s2 + q s11; s31 s31 = q s3 + q s21; s32 s32 = q s32 + q^2; s33 s33 = q^2 s11"),
+    (
+        "Gr(2,5)",
+        "computed",
+        "s21 s21 = s33 + q s1; s21 s31 = q s2 + q s11; s31 s31 = q s3 + q s21; s32 s32 = q s32 + q^2; s33 s33 = q^2 s11",
+    ),
     ("Gr(3,6)", "computed", "s21 s21 = s33 + 2s321 + s222 + q; s321 s321 = q s33 + 2q s321 + q s222 + q^2"),
     ("Gr(3,6)", "computed", "s21 s321 = s333 + q s3 + 2q s21 + q s111"),
     ("Gr(3,6)", "BKT, from memory", "s333 s333 = q^3"),
@@ -77,10 +86,18 @@ _LINES = [
     ("Fl(1,2;4)", "computed", "S4312 S4312 = q1q2^2S3124 + q1^2q2^2; S2134 S4312 = q1S3412 + q1q2S1324"),
     ("Fl(1,2;4)", "computed", "S2413 S4312 = q1q2S2413 + q1q2^2; S4213 S4213 = q1q2S3214 + q1q2S4123"),
     ("C2/P2", "KT, from memory", "s1 s1 = 2s2; s1 s2 = s21 + q; s1 s21 = q s1; s2 s2 = q s1; s2 s21 = q s2; s21 s21 = q^2"),
-    ("C3/P3", "computed", "s1 s3 = s31 + q; s2 s2 = 2s31 + q; s2 s31 = s321 + 2q s2; s3 s3 = q s2; s21 s21 = 2q s2; s31 s31 = 2q s31 + q^2"),
+    (
+        "C3/P3",
+        "computed",
+        "s1 s3 = s31 + q; s2 s2 = 2s31 + q; s2 s31 = s321 + 2q s2; s3 s3 = q s2; s21 s21 = 2q s2; s31 s31 = 2q s31 + q^2",
+    ),
     ("C3/P3", "computed", "s321 s321 = q^3"),
     ("B3/P3", "computed", "s2 s2 = 2s31; s3 s3 = q; s21 s21 = q; s32 s32 = 2q s31; s321 s321 = q^2"),
-    ("C2/B", "computed", "w1 w1 = w21 + q1; w2 w2 = 2w12 + q2; w1 w121 = q1w12 + q1q2; w21 w21 = 2q1w12 + q1q2; pt pt = q1q2^2w21 + q1^2q2^2"),
+    (
+        "C2/B",
+        "computed",
+        "w1 w1 = w21 + q1; w2 w2 = 2w12 + q2; w1 w121 = q1w12 + q1q2; w21 w21 = 2q1w12 + q1q2; pt pt = q1q2^2w21 + q1^2q2^2",
+    ),
     ("G2/B", "computed", "w1 w1 = w21 + q1; w2 w2 = 3w12 + q2; w1 w121 = w2121 + q1w12 + q1q2; w2 w121 = w1212 + 2w2121 + q1q2"),
     ("G2/B", "computed", "w1 w21212 = pt + q1q2^2; w2 w21212 = q2w2121 + 2q1q2^2"),
     ("E6/P1", "CMP, from memory", "3h w2431^2 - 6h^5 w2431 + 2h^9 = 0; w2431^3 - 12h^8 w2431 + 5h^12 = q"),
@@ -96,7 +113,7 @@ _CONSTANTS = {
     "Gr(2,6)": (171, 0.0),
     "Gr(3,6)": (345, 0.0),
 }
-"""Numbers of nonzero constants (computed), over ordered pairs (u, v) on ``Fl(n)``, unordered pairs on ``Gr(k,n)``; and about the seconds it takes."""
+"""Numbers of nonzero constants (computed), over ordered pairs (u, v) on ``Fl(n)``, unordered ones on ``Gr(k,n)``; and about the seconds."""
 
 _CLASSES_AND_INDEX = {"E6/P1": (27, 12), "E7/P7": (56, 18), "E6/P2": (72, 11), "E7/P1": (126, 17), "E8/P8": (240, 29)} | {
     "F4/P1": (24, 8),
@@ -202,7 +219,9 @@ def _terms(text: str) -> list[tuple[int, list[str]]]:
     plain = "".join(text.split())
     found = list(_TERM.finditer(plain))
     assert "".join(term[0] for term in found) == plain, f"expected terms, got {text!r}"
-    return [(-1 if term[1] == "-" else 1, [x[1] for x in _FACTOR.finditer(term[2]) for _ in range(int(x[2] or 1))]) for term in found]
+    return [
+        (-1 if term[1] == "-" else 1, [x[1] for x in _FACTOR.finditer(term[2]) for _ in range(int(x[2] or 1))]) for term in found
+    ]
 
 
 def evaluate(X: FlagVariety, text: str, read: Reader) -> RowTerms:
@@ -212,7 +231,7 @@ def evaluate(X: FlagVariety, text: str, read: Reader) -> RowTerms:
         product: RowTerms = {(X.identity, (0,) * len(X.marked)): sign}
         for name in names:
             if name[0].isdigit() or name[0] == "q":
-                ((_, d), count), = _symbol(X, name).items()
+                (((_, d), count),) = _symbol(X, name).items()
                 product = {(w, sum_degrees(d, e)): count * c for (w, e), c in product.items()}
             else:
                 product = times(read, _symbol(X, name), product)

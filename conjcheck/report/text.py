@@ -105,7 +105,8 @@ def _layer(layer: Layer, row: Row) -> list[str]:
     """The failures of the whole smallest space."""
     pairs = f"{layer.pairs:,} failing ordered {'pair' if layer.pairs == 1 else 'pairs'} (u, v)"
     cases = len(layer.findings)
-    orbits = f"{layer.orbits} {'orbit' if layer.orbits == 1 else 'orbits'} under the symmetries of {row.X}"
+    least = "" if layer.all_orbits else "at least "
+    orbits = f"{least}{layer.orbits} {'orbit' if layer.orbits == 1 else 'orbits'} under the symmetries of {row.X}"
     if layer.complete:
         text = f"{pairs} among the {layer.size:,} of {row.X}: {cases:,} failing {'case' if cases == 1 else 'cases'} in {orbits}"
     else:

@@ -7,7 +7,7 @@ from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import EnginesDisagree, OutOfReach
 from conjcheck.geometry.case import Case, Row, rows
 from conjcheck.geometry.polynomial import RootPolynomial
-from conjcheck.geometry.symmetries import orbit_of_case
+from conjcheck.geometry.symmetries import count_orbits
 from conjcheck.oracle import row_terms, witnesses
 from conjcheck.oracle.equivariant import Sampled, equivariant_constant
 from conjcheck.testing.compare import Comparer
@@ -17,6 +17,7 @@ from conjcheck.testing.survey import Coverage, survey
 __all__ = ["Layer", "Minimum", "certified", "confirm", "descend", "layer_of", "minimise"]
 
 _MOST_IN_LAYER = 2_000
+_ORBIT_SECONDS = 2.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,7 +27,8 @@ class Layer:
     Attributes:
         findings: one per failing case (or failing row of a claim about rows), in order.
         rows: number of rows compared from the smallest failure on; ``complete`` if that was all of them.
-        orbits: number of orbits of the failing cases under the symmetries of the space (S3, diagram automorphisms, Seidel).
+        orbits: number of orbits of the failing cases under the symmetries of the space (S3, diagram automorphisms, Seidel); at least
+            so many if not ``all_orbits``.
         size: number of rows of the space.
     """
 
@@ -34,6 +36,7 @@ class Layer:
     rows: int
     complete: bool
     orbits: int
+    all_orbits: bool
     size: int
 
     @property
@@ -156,21 +159,18 @@ def layer_of(comparer: Comparer, finding: Finding, *, budget: float) -> Layer:
                 complete = False
                 break
     found.sort(key=lambda f: f.where.sort_key)
-    return Layer(tuple(found), seen, complete, _orbits(found, comparer.conjecture), len(X.classes) ** 2)
+    orbits, sorted_out = _orbits(found, comparer.conjecture, max(deadline, perf_counter() + _ORBIT_SECONDS))
+    return Layer(tuple(found), seen, complete, orbits, sorted_out, len(X.classes) ** 2)
 
 
-def _orbits(findings: list[Finding], conjecture: Conjecture) -> int:
-    """The number of orbits among failing cases; rows that fail as a whole count one each. Equivariantly only u and v may be swapped."""
-    left = {f.where for f in findings if isinstance(f.where, Case)}
-    orbits = sum(not isinstance(f.where, Case) for f in findings)
-    while left:
-        orbits += 1
-        case = next(iter(left))
-        if conjecture.is_equivariant:
-            left -= {case, Case(case.X, case.v, case.u, case.w, case.d)}
-        else:
-            left -= orbit_of_case(case, seidel_too=not conjecture.is_classical)
-    return orbits
+def _orbits(findings: list[Finding], conjecture: Conjecture, deadline: float) -> tuple[int, bool]:
+    """The number of orbits of failing cases, and whether that is all; equivariantly only u and v may be swapped. Rows count one each."""
+    cases = [f.where for f in findings if isinstance(f.where, Case)]
+    rows_too = len(findings) - len(cases)
+    if conjecture.is_equivariant:
+        return rows_too + len({frozenset((c, Case(c.X, c.v, c.u, c.w, c.d))) for c in cases}), True
+    orbits, whole = count_orbits(cases, seidel_too=not conjecture.is_classical, deadline=deadline)
+    return rows_too + orbits, whole
 
 
 def confirm(finding: Finding) -> tuple[Finding, str]:

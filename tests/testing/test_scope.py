@@ -62,6 +62,7 @@ def test_premise_and_gaps():
 def test_probes():
     """A probe says how many rows, how many distinct, and the share of failing rows that is still possible at 95 %."""
     X = SMALL[-1]
+    assert X is Fl(4)
     count = ProbeCount()
     for row in [Row(X, X.identity, X.point)] * 2 + [Row(X, X.point, X.point)]:
         count.add(row, 10, 1)
@@ -70,4 +71,4 @@ def test_probes():
     )
     count.add(Row(X, X.point, X.identity), 5, 1, sampled=True)
     text = probe_scope([X, Gr(2, 4)], count)
-    assert text.startswith("4 rows drawn at random on 2 spaces with n = 4, 3 of them distinct, 35 cases (1 rows with all nonzero cases and")
+    assert text.startswith("4 rows drawn at random on 2 spaces with n=4, 3 of them distinct, 35 cases (1 rows with all nonzero cases and")

@@ -1,0 +1,8 @@
+"""``python -m conjcheck``: the same as the command ``conjcheck``."""
+
+from conjcheck.cli import main
+
+__all__: list[str] = []
+
+if __name__ == "__main__":
+    main(prog_name="conjcheck")
