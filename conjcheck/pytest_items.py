@@ -13,7 +13,6 @@ from typing import Any
 
 import pytest
 from hypothesis import settings
-from hypothesis.errors import Unsatisfiable
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import ConjcheckError, RecordError
@@ -26,7 +25,7 @@ from conjcheck.report.text import text_report
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.limits import CallInterrupted, CallLimit
 from conjcheck.testing.outcome import Outcome, plain_value
-from conjcheck.testing.probe import Check, ProbeCount, TimeIsUp, gravest, level_name, probe_test
+from conjcheck.testing.probe import Check, ProbeCount, gravest, level_name, probe_test
 
 __all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
 
@@ -255,7 +254,8 @@ def recorded(examination: Examination, record: Record) -> Outcome:
                 "if the rule was repaired, remove the counterexample from its record"
             )
         values = plain_value(found.rule), plain_value(found.oracle)
-        if values != (known.rule, known.oracle) and known.oracle is not None:
+        recorded_values = known.rule, known.oracle
+        if values != recorded_values and recorded_values != (None, None):
             raise RecordError(
                 f"stale record: expected rule {known.rule} and oracle {known.oracle} at {known.where}, "
                 f"got rule {values[0]} and oracle {values[1]}; record it anew with --conjcheck-record"
@@ -321,14 +321,19 @@ class PartItem(pytest.Function):
         try:
             if draws.spaces:
                 super().runtest()
-        except (TimeIsUp, Unsatisfiable):
-            pass  # the count says how far it got
         except BaseException as error:
             found = gravest(error)
-            if found is None:
+            if found is None and not draws.count.ended_by(error):
                 raise
+            if found is None:
+                self._keep(draws)
+                return
             self.outcome = examination.work_out(found.finding, self.name, started, draws.count.broken_law)
             return
+        self._keep(draws)
+
+    def _keep(self, draws: Draws) -> None:
+        """Keep the outcome of a search that found nothing wrong."""
         self.outcome = draws.agrees()
         if self.outcome is None:
             pytest.skip("no row inside the premise was drawn: nothing compared")

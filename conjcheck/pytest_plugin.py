@@ -68,7 +68,7 @@ def pytest_configure(config: pytest.Config) -> None:
         raise pytest.UsageError(f"expected conjcheck_effort to be one of {', '.join(EFFORTS)}, got {effort!r}")
     for key in ("conjcheck_budget", "conjcheck_call_limit"):
         seconds(config, key)
-    if config.getoption("--conjcheck-installed") and not worker:
+    if config.getoption("--conjcheck-installed"):
         from conjcheck.conjecture.discover import installed_files
 
         config.args.extend(str(path) for path in installed_files())
@@ -85,10 +85,10 @@ def pytest_report_collectionfinish(config: pytest.Config, items: list[pytest.Ite
     module = sys.modules.get("conjcheck.pytest_items")
     if module is None or not any(isinstance(item, module.PartItem) for item in items):
         return None
-    import conjcheck
+    from importlib.metadata import version
 
     seed = config.stash[STATE]["seed"]
-    return f"conjcheck {conjcheck.__version__}: seed {seed} (repeat with --hypothesis-seed={seed})"
+    return f"conjcheck {version('conjcheck')}: seed {seed} (repeat with --hypothesis-seed={seed})"
 
 
 # -- collection ----------------------------------------------------------------------------------------------------------

@@ -13,8 +13,9 @@ that below. See ``_puzzles.py``.
 Source: A. Knutson and T. Tao, Puzzles and (equivariant) cohomology of Grassmannians, Duke Math. J. 119 (2003), 221-260.
 """
 
-from functools import cache
-from math import prod
+from collections import Counter
+from collections.abc import Iterable
+from functools import cache, lru_cache
 
 from _puzzles import Pieces, Puzzle, classes_by_string
 
@@ -32,11 +33,11 @@ __all__ = ["equivariant_puzzles"]
         "A. Knutson, T. Tao, Puzzles and (equivariant) cohomology of Grassmannians, Duke Math. J. 119 (2003), 221-260",
     ],
 )
-def equivariant_puzzles(X: FlagVariety, u: SchubertClass, v: SchubertClass) -> dict[SchubertClass, RootPolynomial | int]:
+def equivariant_puzzles(X: FlagVariety, u: SchubertClass, v: SchubertClass) -> dict[SchubertClass, RootPolynomial]:
     """For each class the sum of the weights of its puzzles."""
     classes = classes_by_string(X)
     return {
-        classes[bottom]: sum(weight(X, rhombi(puzzle)) for puzzle in puzzles)
+        classes[bottom]: total(weight(X, rhombi(puzzle)) for puzzle in puzzles)
         for bottom, puzzles in equivariant_pieces().fill(u.string, v.string).items()
     }
 
@@ -54,8 +55,21 @@ def rhombi(puzzle: Puzzle) -> tuple[tuple[int, int], ...]:
     return tuple((i, j) for i, floor in enumerate(puzzle) for j, label in enumerate(floor) if label == "e")
 
 
-@cache
-def weight(X: FlagVariety, places: tuple[tuple[int, int], ...]) -> RootPolynomial | int:
+@lru_cache(maxsize=65536)
+def weight(X: FlagVariety, places: tuple[tuple[int, int], ...]) -> RootPolynomial:
     """The product of the weights of rhombi."""
     alpha = simple_roots(X)
-    return prod(sum(alpha[j : X.n - i + j - 1]) for i, j in places)
+    if not places:
+        return alpha[0] ** 0
+    *others, (i, j) = places
+    return weight(X, tuple(others)) * sum(alpha[j : X.n - i + j - 1])
+
+
+def total(polynomials: Iterable[RootPolynomial]) -> RootPolynomial:
+    """The sum of one polynomial or more, term by term."""
+    first, *others = polynomials
+    terms = Counter(dict(first.terms))
+    for other in others:
+        for exponents, coefficient in other.terms:
+            terms[exponents] += coefficient
+    return RootPolynomial.of(first.rank, terms)

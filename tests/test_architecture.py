@@ -91,7 +91,10 @@ def imports(room):
             assert node.level == 0, f"{room}:{node.lineno}: imports are written in full"
             whole = [f"{node.module}.{alias.name}" for alias in node.names]
             names = [name if room_of(name) else node.module for name in whole]
-        elif isinstance(node, ast.Call) and getattr(node.func, "id", getattr(node.func, "attr", "")) in ("import_module", "__import__"):
+        elif isinstance(node, ast.Call) and getattr(node.func, "id", getattr(node.func, "attr", "")) in (
+            "import_module",
+            "__import__",
+        ):
             names = [arg.value for arg in node.args[:1] if isinstance(arg, ast.Constant)]
         found |= {(room_of(name), node.lineno) for name in names if room_of(name)}
     return frozenset(found)
@@ -150,7 +153,19 @@ def test_the_plugin_is_light():
                 heavy += [alias.name.split(".")[0] for alias in node.names]
         ours = {"numpy", "hypothesis", "conjcheck", "scipy", "sympy", "networkx"}
         assert not (set(heavy) - allowed) & ours
-        assert set(heavy) - allowed <= {"__future__", "importlib", "json", "random", "sys", "typing", "collections", "shlex", "re", "os", "time"}
+        assert set(heavy) - allowed <= {
+            "__future__",
+            "importlib",
+            "json",
+            "random",
+            "sys",
+            "typing",
+            "collections",
+            "shlex",
+            "re",
+            "os",
+            "time",
+        }
 
 
 @pytest.mark.parametrize("room", MODULES)
@@ -190,7 +205,9 @@ HOOKS = {"pytest_plugin.py"}
 @pytest.mark.parametrize("room", [room for room in MODULES if not is_label(room) and room not in HOOKS])
 def test_all_is_there_and_sorted(room):
     """``__all__`` stands in every module, sorted, and names things that exist there."""
-    found = [node.value for node in tree(room).body if isinstance(node, ast.Assign) and getattr(node.targets[0], "id", "") == "__all__"]
+    found = [
+        node.value for node in tree(room).body if isinstance(node, ast.Assign) and getattr(node.targets[0], "id", "") == "__all__"
+    ]
     assert len(found) == 1
     if isinstance(found[0], ast.Call):
         assert room == "__init__.py"

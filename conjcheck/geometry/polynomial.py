@@ -160,6 +160,8 @@ def read_polynomial(answer: Any, rank: int) -> RootPolynomial | None:
         return None
     import sympy
 
+    if answer.has(sympy.Float):
+        return None
     symbols = sympy.symbols(f"alpha1:{rank + 1}")
     try:
         terms = sympy.Poly(answer, *symbols, domain="ZZ").terms()

@@ -30,7 +30,7 @@ ROUNDING_MARGIN = 0.01
 """A value in floating point that is further than this from an integer decides nothing."""
 
 _LARGEST_COMPLETE = 2_000
-_LAST_STABLE = 7
+_LAST_STABLE = 6
 
 
 def laws(X: FlagVariety, read: Reader) -> Iterator[Check]:

@@ -7,7 +7,7 @@ from typing import Any, NoReturn
 
 from hypothesis import HealthCheck, Phase, given, seed, settings
 from hypothesis import strategies as st
-from hypothesis.errors import Unsatisfiable
+from hypothesis.errors import HypothesisException, Unsatisfiable
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.geometry.case import Row
@@ -44,6 +44,7 @@ class ProbeCount:
         rows: rows compared, drawn independently, repetitions included.
         cases, nonzero: cases compared, and those with a nonzero constant.
         sampled: rows of which not every zero was compared.
+        timed_out: whether the deadline was met.
         failed: whether something was found; from then on time limits do not apply, so that shrinking sees one and the same check.
         broken_law: the law that led to it, if one did.
         slow: a finding that took too long to be met twice; a search that has one repeats it instead of calling the rule again.
@@ -55,6 +56,7 @@ class ProbeCount:
     nonzero: int = 0
     sampled: int = 0
     failed: bool = False
+    timed_out: bool = False
     broken_law: str = ""
     slow: Finding | None = None
     _seen: set[Row] = field(default_factory=set)
@@ -76,7 +78,13 @@ class ProbeCount:
 
     def time_is_up(self) -> bool:
         """Whether the deadline has passed; not after a failure, so that shrinking sees one and the same check."""
-        return not self.failed and perf_counter() > self.deadline
+        if not self.failed and perf_counter() > self.deadline:
+            self.timed_out = True
+        return self.timed_out and not self.failed
+
+    def ended_by(self, error: BaseException) -> bool:
+        """Whether an exception only says that the search ended: no row to draw, or the time was up, whatever Hypothesis makes of that."""
+        return isinstance(error, (TimeIsUp, Unsatisfiable)) or (self.timed_out and isinstance(error, HypothesisException))
 
     def is_over(self, row: Row) -> bool:
         """Whether a row need not be checked any more: the time is up, or a call was too slow (then that row fails again, unasked)."""
@@ -178,10 +186,11 @@ def run_probe(
     test = probe_test(check, lambda: spaces, comparer, count.time_is_up, fixed_seed=seed, draws=draws, database=None)
     try:
         test()
-    except (TimeIsUp, Unsatisfiable):
-        return  # the count says how far it got
-    except BaseExceptionGroup as group:
-        raise gravest(group) or group from None
+    except BaseException as error:
+        if found := gravest(error):
+            raise found from None
+        if not count.ended_by(error):
+            raise
 
 
 def gravest(error: BaseException) -> Found | None:

@@ -159,15 +159,30 @@ QUANTUM_RULE = r"expected the arguments \(X, u, v, w, d\) or \(X, u, v\) for the
         (candidate, {"ring": None}, whole, "got ring=None"),
         (candidate, {"ring": ["quantum"]}, whole, "got ring="),
         (candidate, {"statement": 5}, whole, "expected a str in LaTeX for statement, got statement=5"),
-        (candidate, {"references": "one"}, whole, r"expected a list of strings for references, got references='one'; write references=\["),
+        (
+            candidate,
+            {"references": "one"},
+            whole,
+            r"expected a list of strings for references, got references='one'; write references=\[",
+        ),
         (candidate, {"references": [1]}, whole, r"expected a list of strings for references, got references=\[1\]"),
         (candidate, {"references": None}, whole, "expected a list of strings for references, got references=None"),
         (candidate, {"contributors": 3}, whole, "expected a list of strings for contributors, got contributors=3"),
         (candidate, {"premise": True}, whole, "expected a function that returns a bool for premise, got premise=True"),
-        (candidate, {"premise": generator}, whole, "expected a function that returns a bool for premise, got premise=<function generator"),
+        (
+            candidate,
+            {"premise": generator},
+            whole,
+            "expected a function that returns a bool for premise, got premise=<function generator",
+        ),
         (candidate, {"premise": lambda u, v: True}, whole, r"or \(X, u, v\) for the premise, got \(u, v\)"),
         (candidate, {"premise": bool}, whole, "for the premise"),
-        (candidate, {"premise": lambda X, u, v, w, d: True, "ring": "classical"}, whole, r"expected the arguments \(X, u, v, w\) or"),
+        (
+            candidate,
+            {"premise": lambda X, u, v, w, d: True, "ring": "classical"},
+            whole,
+            r"expected the arguments \(X, u, v, w\) or",
+        ),
         (candidate, {}, lambda X, u, v, w: 1, QUANTUM_RULE + r"\(X, u, v, w\)"),
         (candidate, {}, lambda X, v, u: 1, QUANTUM_RULE + r"\(X, v, u\)"),
         (candidate, {}, lambda X, u, v, w, d, extra=1: 1, QUANTUM_RULE + r"\(X, u, v, w, d, extra\)"),
@@ -176,11 +191,21 @@ QUANTUM_RULE = r"expected the arguments \(X, u, v, w, d\) or \(X, u, v\) for the
         (candidate, {}, lambda X, u, *, v: 1, "for the rule"),
         (candidate, {}, lambda X, u, *v: 1, "for the rule"),
         (candidate, {}, single_claim, QUANTUM_RULE + r"\(X, u, v, w, d, N\)"),
-        (candidate, {"ring": "classical"}, single, r"expected the arguments \(X, u, v, w\) or \(X, u, v\) for the rule, got \(X, u, v, w, d\)"),
+        (
+            candidate,
+            {"ring": "classical"},
+            single,
+            r"expected the arguments \(X, u, v, w\) or \(X, u, v\) for the rule, got \(X, u, v, w, d\)",
+        ),
         (claim, {}, single, r"expected the arguments \(X, u, v, w, d, N\) or \(X, u, v, N\) for the rule, got \(X, u, v, w, d\)"),
         (claim, {"ring": "classical"}, single_claim, r"expected the arguments \(X, u, v, w, N\) or \(X, u, v, N\) for the rule"),
         (claim, {"premise": lambda X, u, v, N: True}, whole_claim, r"for the premise, got \(X, u, v, N\)"),
-        (claim, {"premise": lambda X, u, v, w, d: True}, whole_claim, r"expected a premise on rows, .* since the claim is about rows"),
+        (
+            claim,
+            {"premise": lambda X, u, v, w, d: True},
+            whole_claim,
+            r"expected a premise on rows, .* since the claim is about rows",
+        ),
     ],
     ids=range(29),
 )
@@ -195,7 +220,9 @@ def test_refusals(decorator, choices, rule, words):
 @pytest.mark.parametrize("thing", [5, WithCall(), WithCall, len, functools.partial(whole), staticmethod(whole), None])
 def test_no_functions(thing):
     """What is no plain function is refused with what came and what to do."""
-    with pytest.raises(DeclarationError, match=r"expected a plain function under @candidate, got .*; put @candidate\(on=...\) directly above a def"):
+    with pytest.raises(
+        DeclarationError, match=r"expected a plain function under @candidate, got .*; put @candidate\(on=...\) directly above a def"
+    ):
         candidate(on=Grassmannians())(thing)
 
 

@@ -38,7 +38,9 @@ def test_without_a_file(rule, tmp_path):
 
 def test_written_and_read(rule):
     """What is written is read back the same: cases and rows, with and without values."""
-    record = Record("my_rule", "refuted", (Counterexample(CASE, 0, 1, minimal=True), Counterexample(ROW, None, None, minimal=False)))
+    record = Record(
+        "my_rule", "refuted", (Counterexample(CASE, 0, 1, minimal=True), Counterexample(ROW, None, None, minimal=False))
+    )
     assert write_record(rule, record) == record_path(rule)
     assert read_record(rule) == record
     write_record(rule, Record("my_rule", "open", ()))
@@ -50,8 +52,9 @@ def test_the_text(rule):
     record = Record("my_rule", "refuted", (Counterexample(CASE, 0, 1, minimal=True),))
     text = write_record(rule, record).read_text(encoding="utf-8")
     assert text == (
-        '{\n  "format": "conjcheck-record",\n  "version": 1,\n  "conjecture": "my_rule",\n  "status": "refuted",\n  "counterexamples": [\n'
-        '    {\n      "where": "Gr(2,4): (2,1) * (2,1) -> (2), q^(1)",\n      "rule": 0,\n      "oracle": 1,\n      "minimal": true\n    }\n  ]\n}\n'
+        '{\n  "format": "conjcheck-record",\n  "version": 1,\n  "conjecture": "my_rule",\n  "status": "refuted",\n'
+        '  "counterexamples": [\n    {\n      "where": "Gr(2,4): (2,1) * (2,1) -> (2), q^(1)",\n'
+        '      "rule": 0,\n      "oracle": 1,\n      "minimal": true\n    }\n  ]\n}\n'
     )
     assert write_record(rule, record).read_text(encoding="utf-8") == text
 
@@ -110,7 +113,7 @@ def entry(**changes):
         (GOOD | {"status": ["open"]}, 'expected "status" to be "open" or "refuted"'),
         (GOOD | {"counterexamples": {}}, 'expected a list under "counterexamples", got {}'),
         (GOOD | {"counterexamples": []}, "expected a counterexample, since the status is refuted, got none"),
-        (GOOD | {"counterexamples": ["text"]}, 'expected an object with a text under "where" as counterexample 1, got \'text\''),
+        (GOOD | {"counterexamples": ["text"]}, "expected an object with a text under \"where\" as counterexample 1, got 'text'"),
         (entry(where=5), 'under "where" as counterexample 2'),
         (entry(where="Gr(2,4): (9) * (1)"), "counterexample 2: "),
         (entry(where="nonsense"), "counterexample 2: expected a row"),

@@ -140,6 +140,9 @@ def test_texts_are_read_back(X):
         assert parse_class(X, f"<{'.'.join(map(str, u.word))}>") is u
         if X.kind.letter in "BCD":
             assert parse_class(X, f"[{text_of_signed(u.signed)}]") is u
+            assert str(u) == (
+                f"[{text_of_signed(u.signed)}]" if not X.is_maximal_isotropic else f"({','.join(map(str, u.partition))})"
+            )
         row = Row(X, u, u.dual)
         assert Row.parse(str(row)) == row
         case = Case(X, u, u.dual, u, tuple(range(len(X.marked))))

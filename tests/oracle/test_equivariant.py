@@ -4,7 +4,7 @@ from itertools import combinations
 
 import pytest
 
-from conjcheck import Case, FlagVariety, Fl, Gr, product, simple_roots
+from conjcheck import Case, Fl, FlagVariety, Gr, product, simple_roots
 from conjcheck.errors import OutOfReach
 from conjcheck.geometry.cartan import cartan_matrix
 from conjcheck.geometry.case import outcomes

@@ -93,6 +93,7 @@ def test_what_is_out_of_reach():
     """The engine names the reason: not a Grassmannian, or too many classes."""
     assert VafaIntriligatorEngine().refuses(Gr(3, 6)) is None
     assert VafaIntriligatorEngine().refuses(Fl(3)) == "Fl(3) is not a Grassmannian"
-    assert VafaIntriligatorEngine().refuses(FlagVariety("C3/P3")) == "C3/P3 is not a Grassmannian"
+    X = FlagVariety("C3/P3")
+    assert VafaIntriligatorEngine().refuses(X) == f"{X} is not a Grassmannian"
     assert comb(14, 7) > MOST_CLASSES
     assert VafaIntriligatorEngine().refuses(Gr(7, 14)) == "Gr(7,14) has 3,432 classes, the table of residues stops at 1,000"

@@ -1,6 +1,7 @@
 """Localisation against the other engines, and against published values of spaces that they do not reach."""
 
 import random
+from collections import Counter
 
 import numpy as np
 import pytest
@@ -10,7 +11,8 @@ from conjcheck.errors import OutOfReach
 from conjcheck.geometry.case import rows
 from conjcheck.geometry.families import PartialFlags
 from conjcheck.oracle import ENGINES, witnesses
-from conjcheck.oracle.localisation import _inverses, primes, _vandermonde, localisation
+from conjcheck.oracle.chevalley import chevalley
+from conjcheck.oracle.localisation import _inverses, _vandermonde, localisation, primes
 
 
 def word(X, *letters):
@@ -178,3 +180,19 @@ def test_arithmetic_modulo_a_prime():
         [[sum(x * pow(node, k, p) for node, x in zip(nodes, solution, strict=True)) % p] for k in range(3)], dtype=np.int64
     )
     assert _vandermonde(nodes, sums, p)[:, 0].tolist() == solution
+
+
+@pytest.mark.parametrize("name", ["Fl(4)", "B4/P2,3", "D6/P3", "E8/P8"])
+def test_bounds_are_those_of_unlimited_integers(name):
+    """``D^l(u) * sigma_v`` at q = 1 in Python integers, by the Chevalley terms of the recursion; on E8/P8 it outgrows 62 bits."""
+    X = FlagVariety(name)
+    for u, v in ((X.point, X.point), (X.classes[len(X.classes) // 2], X.point), (X.classes[3], X.classes[7])):
+        exact = {v.index: 1}
+        for _ in range(u.length):
+            following = Counter()
+            for z, count in exact.items():
+                for w, _, coefficients in chevalley(X).terms(z):
+                    following[w] += count * sum(coefficients)
+            exact = following
+        most = max(exact.values())
+        assert most <= localisation(X).bound(u.index, v.index) <= most + most // 1000

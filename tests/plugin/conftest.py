@@ -5,7 +5,7 @@ import re
 import sys
 from pathlib import Path
 from textwrap import dedent
-from xml.etree import ElementTree
+from xml.etree import ElementTree as ET
 
 import pytest
 
@@ -74,7 +74,7 @@ class Project:
     def properties(self, file="out.xml"):
         """What junit holds about each item: ``{item: [JSON of the property conjcheck]}``."""
         found = {}
-        for case in ElementTree.parse(self.path / file).iter("testcase"):
+        for case in ET.parse(self.path / file).iter("testcase"):
             values = [json.loads(p.get("value")) for p in case.iter("property") if p.get("name") == "conjcheck"]
             found[f"{case.get('classname')}.{case.get('name')}"] = values
         return found

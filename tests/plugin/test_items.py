@@ -37,14 +37,15 @@ def test_a_green_run(project):
     survey = outcomes["powers", "survey"]
     assert (survey["status"], survey["rows"], survey["cases"], survey["nonzero"]) == ("agrees", 25, 25, 25)
     assert survey["verdict"] == (
-        "agrees: powers as far as checked: all 2 spaces from Gr(1,3) to Gr(1,4); 25 rows, 25 cases, 25 of them nonzero; this is the whole family"
+        "agrees: powers as far as checked: all 2 spaces from Gr(1,3) to Gr(1,4); "
+        "25 rows, 25 cases, 25 of them nonzero; this is the whole family"
     )
     assert "seed" not in survey
     assert outcomes["unit", "probe[n=4]"]["seed"] == outcomes["powers", "laws"]["seed"]
 
 
 def test_a_refutation(project):
-    """A wrong rule fails once, with the verdict as first line and the report below; its other parts are skipped; replaying works."""
+    """A wrong rule fails once, with the verdict as first line and the report below; its other parts are skipped; replay works."""
     project.write("conjectures/twice.py", WRONG.format(name="twice"))
     project.write("conjectures/powers.py", PROJECTIVE.format(name="powers"))
     result = project.run("--junitxml=out.xml", "--hypothesis-seed=1")
@@ -108,12 +109,15 @@ def test_rules_in_trouble(project):
         "outside": "raise OutsideDomain('nowhere')",
     }
     for name, body in bodies.items():
-        project.write(f"conjectures/{name}.py", f'{header}\n@candidate(on=Varieties("Gr(1,3)"))\ndef {name}(X, u, v):\n    {body}\n')
+        project.write(
+            f"conjectures/{name}.py", f'{header}\n@candidate(on=Varieties("Gr(1,3)"))\ndef {name}(X, u, v):\n    {body}\n'
+        )
     premises = {"premise_loops": "while True: pass", "premise_exits": "sys.exit(3)", "premise_skips": "pytest.skip('no')"}
     for name, body in premises.items():
         project.write(
             f"conjectures/{name}.py",
-            f'{header}\ndef premise(X, u, v):\n    {body}\n\n@candidate(on=Varieties("Gr(1,3)"), premise=premise)\ndef {name}(X, u, v):\n    return {{}}\n',
+            f"{header}\ndef premise(X, u, v):\n    {body}\n\n"
+            f'@candidate(on=Varieties("Gr(1,3)"), premise=premise)\ndef {name}(X, u, v):\n    return {{}}\n',
         )
     result = project.run("--conjcheck-call-limit=0.3")
     assert result.ret == 1
@@ -161,7 +165,7 @@ def test_nothing_compared(project):
 
 
 def test_names(project):
-    """Every conjecture of a file is collected under the name it has there: from a factory, from a lambda, bound twice, in a class of its own file."""
+    """Every conjecture of a file is collected under the name it has there: from a factory, from a lambda, bound twice."""
     project.write(
         "conjectures/many.py",
         """

@@ -36,8 +36,13 @@ def test_written_verified_stale(project):
     repaired = project.run()
     assert repaired.ret == 1
     lines = project.summary(repaired)
-    assert len([line for line in lines if "::recorded - stale record: expected twice to be refuted at Gr(1,4): (2) * (3)" in line]) == 1
-    repaired.stdout.fnmatch_lines(["*the rule and the oracle agree there now; if the rule was repaired, remove the counterexample*"])
+    assert (
+        len([line for line in lines if "::recorded - stale record: expected twice to be refuted at Gr(1,4): (2) * (3)" in line])
+        == 1
+    )
+    repaired.stdout.fnmatch_lines(
+        ["*the rule and the oracle agree there now; if the rule was repaired, remove the counterexample*"]
+    )
     assert "Traceback" not in repaired.text
 
 

@@ -49,14 +49,18 @@ def test_refuted(refuted):
     case = as_case(FAULT)
     found = entries(text)
     assert text.splitlines()[0] == refuted.verdict
-    assert found["case"].startswith(f"{case} u = {describe_class(case.u)} v = {describe_class(case.v)} w = {describe_class(case.w)}")
+    assert found["case"].startswith(
+        f"{case} u = {describe_class(case.u)} v = {describe_class(case.v)} w = {describe_class(case.w)}"
+    )
     assert found["rule"] == "2"
     assert found["oracle"] == f"1, confirmed by {refuted.confirmed_by}"
     assert found["kind"] == "overcount, not symmetric"
     assert found["product"].startswith("by the rule: ")
     assert "by the oracle: " in found["product"]
     assert found["minimal"] == f"yes: all {refuted.minimum.below:,} smaller cases were compared and agree"
-    assert found["layer"].startswith("1 failing ordered pair (u, v) among the 36 of Fl(3): 1 failing case in 1 orbit under the symmetries of")
+    assert found["layer"].startswith(
+        "1 failing ordered pair (u, v) among the 36 of Fl(3): 1 failing case in 1 orbit under the symmetries of"
+    )
     assert found["replay"] == f"pytest 'a.py::rule' --conjcheck-case '{case}'"
     assert list(found)[-1] == "environment"
 
@@ -126,7 +130,9 @@ def test_law_and_note(refuted):
 
 def test_never_minimal_without_a_certificate(refuted):
     """Without a certificate the report does not say that the case is minimal."""
-    text = text_report(replace(refuted, minimum=replace(refuted.minimum, certified=False, reach="no smaller one among the first 5 cases")))
+    text = text_report(
+        replace(refuted, minimum=replace(refuted.minimum, certified=False, reach="no smaller one among the first 5 cases"))
+    )
     assert entries(text)["minimal"] == "not certain: no smaller one among the first 5 cases"
     assert "not known to be minimal" in text.splitlines()[0]
 
@@ -146,19 +152,23 @@ def _nothing(X, u, v):
 
 
 def _everything(X, u, v):
-    return {(w, (a, b)): 1 for w in X.classes for a in range(3) for b in range(3) if a + b < 4 and w.length < 3 or a == b == 0}
+    return {(w, (a, b)): 1 for w in X.classes for a in range(3) for b in range(3) if (a + b < 4 and w.length < 3) or a == b == 0}
 
 
 def test_width():
     """Lines are wrapped, but for those that are to be copied."""
-    for line in text_report(Examination(candidate(on=Varieties("Fl(3)"))(_everything)).case(Row(F, F.point, F.point))).splitlines()[1:]:
+    for line in text_report(Examination(candidate(on=Varieties("Fl(3)"))(_everything)).case(Row(F, F.point, F.point))).splitlines()[
+        1:
+    ]:
         assert len(line) <= 110 or line.startswith(("replay", "case", "    "))
 
 
 def test_an_incomplete_layer():
     """A layer that the time did not suffice for says "at least" and how far it got."""
     outcome = Examination(rule_by_cases([FAULT], on=(F,)), replace(EFFORTS["quick"], layer=0.0)).survey()
-    assert entries(text_report(outcome))["layer"].startswith("at least 1 failing ordered pair (u, v) of Fl(3): 1 failing case in 1 orbit")
+    assert entries(text_report(outcome))["layer"].startswith(
+        "at least 1 failing ordered pair (u, v) of Fl(3): 1 failing case in 1 orbit"
+    )
 
 
 @pytest.mark.parametrize(
@@ -167,7 +177,10 @@ def test_an_incomplete_layer():
         (lambda: Gr(2, 4).schubert(partition=(2,)), "(2)  permutation 1423, string 0110, word 3.2, length 2"),
         (lambda: Gr(2, 4).identity, "()  permutation 1234, string 0011, word empty, length 0"),
         (lambda: Fl(1, 3, n=4).point, "[4231]  string 2110, word 1.2.3.2.1, length 5"),
-        (lambda: Gr(1, 11).point, "(10)  permutation 11.1.2.3.4.5.6.7.8.9.10, string 11111111110, word 10.9.8.7.6.5.4.3.2.1, length 10"),
+        (
+            lambda: Gr(1, 11).point,
+            "(10)  permutation 11.1.2.3.4.5.6.7.8.9.10, string 11111111110, word 10.9.8.7.6.5.4.3.2.1, length 10",
+        ),
         (lambda: FlagVariety("G2/B").classes[3], "<1.2>  length 2"),
     ],
     ids=range(5),
@@ -179,7 +192,17 @@ def test_classes(text, expected):
 
 def line_of(name, part, status, **more):
     """The JSON form of an outcome."""
-    plain = {"conjecture": name, "part": part, "status": status, "rows": 0, "cases": 0, "nonzero": 0, "seconds": 0.25, "where": "", "file": "a.py"}
+    plain = {
+        "conjecture": name,
+        "part": part,
+        "status": status,
+        "rows": 0,
+        "cases": 0,
+        "nonzero": 0,
+        "seconds": 0.25,
+        "where": "",
+        "file": "a.py",
+    }
     return plain | ({"minimal": False, "rule": 1} if status != "agrees" else {}) | more
 
 

@@ -111,7 +111,9 @@ def test_shown_objects():
 
 
 @pytest.mark.parametrize(
-    ("answer", "expected"), [(True, True), (False, False), (np.bool_(True), True), (sympy.true, True), (sympy.false, False)], ids=str
+    ("answer", "expected"),
+    [(True, True), (False, False), (np.bool_(True), True), (sympy.true, True), (sympy.false, False)],
+    ids=str,
 )
 def test_truths(answer, expected):
     """A claim may return the truth values of Python, numpy and sympy."""

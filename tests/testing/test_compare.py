@@ -60,7 +60,7 @@ OUTCOMES = outcomes_of(F, 4)
 truth(G), truth(F)  # filled before any rule runs
 
 
-# -- what is compared ---------------------------------------------------------------------------------------------------------
+# -- what is compared --------------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize("X", [Gr(1, 2), G, F], ids=str)
@@ -132,7 +132,12 @@ def test_one_case(kind):
 def test_values_outside_the_degree_axiom():
     """A value that a whole product holds where lengths and degrees do not add up is a difference from 0."""
     finding = judged(by_rows(lambda true: true | {(F.point, (3, 0)): 1})).finding
-    assert (finding.status, finding.where, finding.rule, finding.oracle) == ("refuted", Case(F, ROW.u, ROW.v, F.point, (3, 0)), 1, 0)
+    assert (finding.status, finding.where, finding.rule, finding.oracle) == (
+        "refuted",
+        Case(F, ROW.u, ROW.v, F.point, (3, 0)),
+        1,
+        0,
+    )
     assert not finding.where.obeys_degree_axiom
 
 
@@ -236,7 +241,7 @@ def test_the_deadline_ends_a_row():
     assert 1 <= len(calls) == result.cases < 7
 
 
-# -- every status -------------------------------------------------------------------------------------------------------------
+# -- every status ------------------------------------------------------------------------------------------------------
 
 
 class LooksRight(Mapping):
@@ -364,7 +369,20 @@ def recursion(true, w, d):
         (lambda true, w, d: setattr(w.variety, "dim", 0), "AttributeError: a flag variety is immutable"),
         (lambda true, w, d: w.variety.classes.clear(), "AttributeError: 'tuple' object has no attribute 'clear'"),
     ],
-    ids=["error", "recursion", "exit", "skip", "fail", "warning", "stop", "generator exit", "in a generator", "class", "variety", "classes"],
+    ids=[
+        "error",
+        "recursion",
+        "exit",
+        "skip",
+        "fail",
+        "warning",
+        "stop",
+        "generator exit",
+        "in a generator",
+        "class",
+        "variety",
+        "classes",
+    ],
 )
 def test_crashes(body, words):
     """Whatever a rule raises is ``crashed`` at its case, with the traceback from the rule's file on."""
@@ -465,7 +483,7 @@ def test_the_limit_is_per_call():
     assert time.perf_counter() - began > 0.2
 
 
-# -- one answer -----------------------------------------------------------------------------------------------------------------
+# -- one answer --------------------------------------------------------------------------------------------------------
 
 
 def test_two_answers():
@@ -515,7 +533,7 @@ def test_a_product_changed_by_its_rule_afterwards():
     assert judged(rule).finding is None
 
 
-# -- independence ------------------------------------------------------------------------------------------------------------------
+# -- independence ------------------------------------------------------------------------------------------------------
 
 
 def _engine(name):
@@ -618,7 +636,7 @@ def test_the_oracle_is_free_again():
     assert product(ROW.u, ROW.v) == truth(F)[ROW.u, ROW.v]
 
 
-# -- premises that fail ----------------------------------------------------------------------------------------------------------
+# -- premises that fail ------------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize("by_row", [True, False], ids=["on rows", "on cases"])
@@ -653,7 +671,7 @@ def test_inside():
             assert comparer.inside(ROW) is expected
 
 
-# -- claims ----------------------------------------------------------------------------------------------------------------------------
+# -- claims ------------------------------------------------------------------------------------------------------------
 
 
 def test_claims_about_cases():

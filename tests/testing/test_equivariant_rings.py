@@ -93,7 +93,17 @@ def test_expressions_of_sympy():
 
 @pytest.mark.parametrize(
     "answer",
-    [0.5, None, "alpha1", [1], sympy.Symbol("t"), sympy.Symbol("alpha1") / 2, sympy.Symbol("alpha1") * 1.0, simple_roots(Gr(1, 5))[0], {}],
+    [
+        0.5,
+        None,
+        "alpha1",
+        [1],
+        sympy.Symbol("t"),
+        sympy.Symbol("alpha1") / 2,
+        sympy.Symbol("alpha1") * 1.0,
+        simple_roots(Gr(1, 5))[0],
+        {},
+    ],
     ids=range(9),
 )
 def test_no_polynomials(answer):
@@ -107,5 +117,7 @@ def test_a_small_difference_in_a_large_coefficient():
     """Coefficients are compared exactly, however large: a wrong one is wrong by the primes themselves, too."""
     fault = CASES[False][-1]
     for extra in (2**30, 2**31 - 1, 2**61 - 1, 10**40):
-        rule = rule_with(lambda case, true, extra=extra: true + extra * simple_roots(case[0])[0] if case == fault else true, quantum=False)
+        rule = rule_with(
+            lambda case, true, extra=extra: true + extra * simple_roots(case[0])[0] if case == fault else true, quantum=False
+        )
         assert survey(Comparer(rule), budget=60.0).finding.where == Case(*fault)

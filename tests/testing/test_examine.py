@@ -52,7 +52,9 @@ def test_a_true_rule():
     assert [outcome.part for outcome in outcomes] == ["survey", "laws", "probe[n=4]"]
     assert {outcome.status for outcome in outcomes} == {"agrees"}
     survey, laws, probe = outcomes
-    assert survey.verdict.startswith("agrees: by_rows as far as checked: all 11 spaces from Gr(1,2) to Fl(4); 1,134 rows, 40,091 cases, ")
+    assert survey.verdict.startswith(
+        "agrees: by_rows as far as checked: all 11 spaces from Gr(1,2) to Fl(4); 1,134 rows, 40,091 cases, "
+    )
     assert laws.verdict.startswith("agrees: by_rows as far as checked: the laws hold around ")
     assert " rows drawn at random on Fl(4), " in probe.verdict
     assert "at 95 % at most " in probe.verdict
@@ -96,7 +98,7 @@ def test_unknown_effort():
         examine(rule_by_rows(), effort="lazy")
 
 
-# -- every status, by every part ----------------------------------------------------------------------------------------------------
+# -- every status, by every part ---------------------------------------------------------------------------------------
 
 TABLES = {X: truth(X) for X in SMALL}
 ANSWERS = itertools.count(5)
@@ -172,7 +174,7 @@ def test_a_rule_with_a_poor_memory():
     assert outcome.broken_law
 
 
-# -- nothing compared is no agreement -----------------------------------------------------------------------------------------------
+# -- nothing compared is no agreement ----------------------------------------------------------------------------------
 
 NOTHING = {
     "premise on rows": candidate(on=Grassmannians(), premise=lambda X, u, v: False),
@@ -263,7 +265,7 @@ def test_the_numbers_of_one_row():
     assert "7 cases" in outcome.scope
 
 
-# -- the parts together -------------------------------------------------------------------------------------------------------------------
+# -- the parts together ------------------------------------------------------------------------------------------------
 
 
 def test_a_fault_beyond_the_survey():

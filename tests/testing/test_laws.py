@@ -257,7 +257,8 @@ def test_a_wrong_rule_that_obeys_every_law():
     """
     seidel_classes = {Fl(3).schubert(permutation=w) for w in ((1, 2, 3), (2, 3, 1), (3, 1, 2))}
     table = {
-        (u, v): {key: 2 * n if not {u, v} & seidel_classes else n for key, n in terms.items()} for (u, v), terms in truth(Fl(3)).items()
+        (u, v): {key: 2 * n if not {u, v} & seidel_classes else n for key, n in terms.items()}
+        for (u, v), terms in truth(Fl(3)).items()
     }
 
     @candidate(on=Varieties("Fl(3)"))
@@ -277,7 +278,11 @@ def test_true_plugins_break_none():
             for value in vars(module).values():
                 if getattr(value, "role", None) == "candidate" and value.rule.__module__ == path.stem:
                     rows = [Row(Y, u, v) for Y in value.on.up_to(4) for u in Y.classes for v in Y.classes]
-                    inside = [row for row in rows if value.premise is None or not value.premise_by_rows or value.premise(row.X, row.u, row.v)]
+                    inside = [
+                        row
+                        for row in rows
+                        if value.premise is None or not value.premise_by_rows or value.premise(row.X, row.u, row.v)
+                    ]
                     chosen = random.Random(path.stem).sample(inside, min(len(inside), 60))
                     assert broken_on(value, chosen, [0, 5]) == set(), value
                     tried += 1

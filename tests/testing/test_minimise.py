@@ -87,10 +87,7 @@ def test_the_same_on_complete_flags(faults):
 def test_worked_out(faults, kind, part):
     """Whichever part meets a fault first, the outcome reports the smallest one as minimal, confirmed, with the whole layer."""
     examination = Examination(kind(faults, on=SPACES))
-    if part == "survey":
-        outcome = examination.survey()
-    else:
-        outcome = examination.work_out(reported(max(faults, key=key_of)), part, 0.0)
+    outcome = examination.survey() if part == "survey" else examination.work_out(reported(max(faults, key=key_of)), part, 0.0)
     smallest = min(faults, key=key_of)
     assert outcome is examination.failure
     assert (outcome.status, outcome.finding.where) == ("refuted", as_case(smallest))
@@ -109,7 +106,9 @@ def test_worked_out(faults, kind, part):
 
 @settings(max_examples=80, deadline=None)
 @given(faults=FAULTS, kind=KINDS, budget=st.sampled_from([0.0, 1e-9, 1e-5, 1e-4, 1e-3, 4e-3]), known=st.booleans())
-@example(faults=[(Fl(3), Fl(3).point, Fl(3).point, w, d) for w, d in outcomes_of(Fl(3), 6)], kind=rule_by_cases, budget=0.0, known=True)
+@example(
+    faults=[(Fl(3), Fl(3).point, Fl(3).point, w, d) for w, d in outcomes_of(Fl(3), 6)], kind=rule_by_cases, budget=0.0, known=True
+)
 def test_without_time_nothing_is_called_minimal(faults, kind, budget, known):
     """With a budget too small nothing is called minimal, unless it is; and what is counted below a fault was compared."""
     start, smallest = max(faults, key=key_of), min(faults, key=key_of)
@@ -131,7 +130,9 @@ def test_without_time_nothing_is_called_minimal(faults, kind, budget, known):
 def test_reports_without_time(faults, kind, budget):
     """The report after a budget too small says that the failure is not known to be minimal, and nowhere that it is."""
     effort = EFFORTS["quick"]
-    starved = type(effort)(**{name: getattr(effort, name) for name in type(effort).__slots__} | {"minimise": budget, "layer": budget})
+    starved = type(effort)(
+        **{name: getattr(effort, name) for name in type(effort).__slots__} | {"minimise": budget, "layer": budget}
+    )
     last = (Fl(2, 3, n=4), *cases_of(Fl(2, 3, n=4))[-1][1:])
     outcome = Examination(kind([*faults, last], on=SPACES), starved).work_out(reported(last), "probe[n=4]", 0.0)
     text = text_report(outcome)
@@ -253,7 +254,7 @@ def test_descend():
     assert descend(Comparer(lonely), finding, budget=60.0) == finding
 
 
-# -- layers -----------------------------------------------------------------------------------------------------------------------
+# -- layers ------------------------------------------------------------------------------------------------------------
 
 
 def test_layer_of_a_rule_that_is_always_zero():
@@ -299,7 +300,7 @@ def test_layer_without_time():
     assert layer.rows < 36
 
 
-# -- confirmation ------------------------------------------------------------------------------------------------------------------
+# -- confirmation ------------------------------------------------------------------------------------------------------
 
 
 @settings(max_examples=60, deadline=None)
@@ -314,7 +315,11 @@ def test_confirmed(case):
 
 def test_confirmation_outside_the_degree_axiom():
     """The 0 of a case where lengths and degrees do not add up is confirmed too."""
-    for text in ("Gr(2,4): (2,1) * (2,1) -> (2,2), q^(3)", "Fl(3): [321] * [321] -> [321], q^(2,0)", "Fl(1,2;4): [2134] * [1234] -> [1234], q^(0,0)"):
+    for text in (
+        "Gr(2,4): (2,1) * (2,1) -> (2,2), q^(3)",
+        "Fl(3): [321] * [321] -> [321], q^(2,0)",
+        "Fl(1,2;4): [2134] * [1234] -> [1234], q^(0,0)",
+    ):
         case = Case.parse(text)
         assert confirm(Finding("refuted", case, 1, 0))[0].oracle == 0
 
@@ -336,7 +341,7 @@ def test_confirmed_rows():
     assert confirm(finding) == (finding, "the product was computed on two routes")
 
 
-# -- two rules that are right for a long way -----------------------------------------------------------------------------------------
+# -- two rules that are right for a long way ---------------------------------------------------------------------------
 
 
 def row_rule(X, v, w, d, p):
@@ -388,9 +393,7 @@ def test_at_most_one():
         classes = {w.permutation: w for w in X.classes}
         for (u, v), terms in plain_rows(n).items():
             capped[classes[u], classes[v]] = {(classes[w], d): min(N, 1) for (w, d), N in terms.items()}
-    twos = [
-        (u, v, w, d) for (u, v), terms in plain_rows(5).items() for (w, d), N in terms.items() if N > 1
-    ]
+    twos = [(u, v, w, d) for (u, v), terms in plain_rows(5).items() for (w, d), N in terms.items() if N > 1]
 
     @candidate(on=CompleteFlags())
     def at_most_one(X, u, v):
@@ -416,9 +419,11 @@ def _below_on_complete_flags(case, lengths):
     X, u, v, w, d = case
 
     def size(total):
-        return sum(len(_compositions((total - length) // 2, len(d))) * count for length, count in lengths.items() if _fits(total, length))
+        return sum(
+            len(_compositions((total - length) // 2, len(d))) * count for length, count in lengths.items() if _fits(total, length)
+        )
 
-    rows = sorted(((a.length + b.length, a.length, a.index, b.index) for a in X.classes for b in X.classes))
+    rows = sorted((a.length + b.length, a.length, a.index, b.index) for a in X.classes for b in X.classes)
     here = rows.index((u.length + v.length, u.length, u.index, v.index))
     total = u.length + v.length
     inside = sum(

@@ -34,7 +34,9 @@ def test_refuted():
     assert open_.verdict.endswith("(not known to be minimal: no smaller one among the first 3 cases)")
 
 
-@pytest.mark.parametrize(("where", "oracle", "words"), [(CASE, 1, "the claim is false, the constant is 1"), (CASE.row, None, "the claim is false")])
+@pytest.mark.parametrize(
+    ("where", "oracle", "words"), [(CASE, 1, "the claim is false, the constant is 1"), (CASE.row, None, "the claim is false")]
+)
 def test_claims(where, oracle, words):
     """A false claim has no value of its own."""
 
@@ -50,7 +52,10 @@ def test_claims(where, oracle, words):
 def test_other_trouble(status):
     """Any other verdict gives status, place and detail."""
     finding = Finding(status, CASE.row, detail="what was expected")
-    assert Outcome(RULE, "laws", status, "nothing smaller", finding=finding).verdict == f"{status}: by_rows at {CASE.row}: what was expected"
+    assert (
+        Outcome(RULE, "laws", status, "nothing smaller", finding=finding).verdict
+        == f"{status}: by_rows at {CASE.row}: what was expected"
+    )
 
 
 @pytest.mark.parametrize("status", STATUSES[1:])

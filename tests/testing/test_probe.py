@@ -165,6 +165,32 @@ def test_the_deadline():
         examination.probe_check(count)(Row(Fl(3), Fl(3).point, Fl(3).point), 0)
 
 
+class EndsAt(ProbeCount):
+    """A count whose time is up at a given question."""
+
+    left = 0
+
+    def time_is_up(self):
+        self.left -= 1
+        return not self.failed and self.left < 0
+
+
+@pytest.mark.parametrize("seed", [0, 1])
+def test_time_may_be_up_at_any_moment(seed):
+    """Wherever in the search the time ends, between rows or while a row is being drawn, the search ends quietly."""
+
+    @candidate(on=Varieties("Fl(4)"), premise=lambda X, u, v: u is X.identity)
+    def unit(X, u, v):
+        return {(v, (0, 0, 0)): 1}
+
+    examination = Examination(unit)
+    for questions in range(0, 400, 20):
+        count = EndsAt()
+        count.left = questions
+        run_probe(examination.probe_check(count), [Fl(4)], examination.comparer, count, seed=seed)
+        assert not count.failed
+
+
 def test_a_slow_call_is_made_once():
     """A rule that never ends costs one call limit in the search, not one per example."""
     calls = []

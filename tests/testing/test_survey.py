@@ -158,7 +158,7 @@ def test_premise_counts():
 
 def test_spaces_out_of_reach():
     """Spaces that no engine covers are named as skipped, and then the family is not called complete."""
-    found = survey(Comparer(rule_by_rows(on=(Gr(1, 2),) )), budget=60.0)
+    found = survey(Comparer(rule_by_rows(on=(Gr(1, 2),))), budget=60.0)
     assert found.coverage.whole_family
     tables = truth(Gr(1, 2))
 
