@@ -2,7 +2,7 @@
 
 from conjcheck.cli import main
 
-__all__: list[str] = []
+__all__ = ["main"]
 
 if __name__ == "__main__":
     main(prog_name="conjcheck")

@@ -255,7 +255,7 @@ def recorded(examination: Examination, record: Record) -> Outcome:
             )
         values = plain_value(found.rule), plain_value(found.oracle)
         recorded_values = known.rule, known.oracle
-        if values != recorded_values and recorded_values != (None, None):
+        if recorded_values not in (values, (None, None)):
             raise RecordError(
                 f"stale record: expected rule {known.rule} and oracle {known.oracle} at {known.where}, "
                 f"got rule {values[0]} and oracle {values[1]}; record it anew with --conjcheck-record"

@@ -1,4 +1,4 @@
-"""The audit: the oracle held against itself, against the laws, against closed formulas, published values and the mirror side, on one space.
+"""The audit of one space: the oracle against itself, laws, closed formulas, published values and the mirror side, within a budget.
 
 Every check goes through its units in order, smallest first; what is not through when half of the budget is spent goes on at
 random. It does not stop at a difference, and keeps the smallest one. What was compared is counted, and nothing compared is never called

@@ -12,14 +12,14 @@ are pointwise in these coordinates. Coefficients of degree 0 in the simple roots
 the constants.
 
 Exactness. Coinciding eigenvalues are detected and other numbers are chosen. Residues stay below ``2^31`` and their products
-below ``2^62``; sums of products are reduced term by term, or one factor is cut in two so that the sum stays below ``2^63``. A constant is at most the corresponding entry of ``D^{l(u)} *
-sigma_v`` for D the sum of all divisors, because ``sigma_u`` is a summand of ``D^{l(u)}``; that bound is computed in integers,
-rounded upwards, and so many primes are used that their product exceeds it. Which powers of several q's a coefficient of z
-collects is resolved by evaluating at the powers of one point g and solving the Vandermonde system, whose nodes are checked to
-be distinct.
+below ``2^62``; sums of products are reduced term by term, or one factor is cut in two so that the sum stays below ``2^63``. A
+constant is at most the corresponding entry of ``D^{l(u)} * sigma_v`` for D the sum of all divisors, because ``sigma_u`` is a
+summand of ``D^{l(u)}``; that bound is computed in integers, rounded upwards, and so many primes are used that their product
+exceeds it. Which powers of several q's a coefficient of z collects is resolved by evaluating at the powers of one point g and
+solving the Vandermonde system, whose nodes are checked to be distinct.
 
 Source: Mihalcea, On equivariant quantum cohomology of homogeneous spaces: Chevalley formulae and algorithms, Duke Math. J. 140
-(2007), Theorem 1 and Section 7; the use of eigenvectors is common practice.
+(2007), for the formula and for its determining the ring; the use of eigenvectors is common practice.
 """
 
 from collections.abc import Iterator
