@@ -79,7 +79,7 @@ def audit(
     seed: int,
     as_json: bool,
 ) -> None:
-    r"""Hold the oracle against itself on spaces you name.
+    """Hold the oracle against itself on spaces you name.
 
     A verdict on a conjecture is worth as much as the oracle behind it. On each SPACE, written "Gr(2,5)", "Fl(4)", "Fl(1,3;4)", "LG(3,6)",
     "G2/B" or "E6/P1", this compares
@@ -96,7 +96,7 @@ def audit(
 
     Rows (u, v) are compared in order, smallest first; what the budget does not reach is drawn at random. The table says how many of
     how many, and how many from the smallest on without a gap. Every check goes on after a difference; the smallest case is named with
-    both values.
+    both values. The budget may be overrun a little: the set-up of an engine and a product that has begun are finished.
 
     \b
     Examples:
@@ -106,7 +106,7 @@ def audit(
       conjcheck audit "Fl(6)" --seconds 120 --seed 7 --json
 
     Exit status: 0 nothing differs; 1 a difference; 2 wrong usage, or a space out of reach; 130 interrupted.
-    """
+    """  # noqa: D301  # click knows the character, not the two letters
     chosen = _spaces(spaces, rank, most_classes)
     from conjcheck.oracle import audit as room
 
@@ -147,13 +147,14 @@ def _spaces(names: tuple[str, ...], rank: int | None, most_classes: int | None) 
             raise click.UsageError(str(error)) from error
         except OutOfReach as error:
             raise _OutOfReach(str(error)) from error
+    named = set(chosen)
     if rank is not None:
         most = min(most_classes or _MOST_CLASSES, MOST_CLASSES)
         chosen |= dict.fromkeys(HomogeneousSpaces(most_classes=most).up_to(rank + 1))
     for X in chosen:
         if not engines_for(X):
             reasons = "; ".join(f"{engine.name}: {engine.refuses(X)}" for engine in ENGINES.values())
-            remedy = "leave it out" if X.name in names or rank is None else "lower --most-classes"
+            remedy = "leave it out" if X in named else "lower --most-classes"
             raise _OutOfReach(f"expected spaces in reach of some engine, got {X} ({reasons}); {remedy}")
     return list(chosen)
 

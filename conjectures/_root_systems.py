@@ -6,6 +6,7 @@ stabiliser of ``R+ - R_P+``; the length of its minimal representative is the num
 representative leaves ``R_P+`` positive. So ``u s_alpha W_P`` and its length are read from ``u s_alpha (R+ - R_P+)`` alone.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
@@ -50,7 +51,7 @@ def positive_roots(letter: str, rank: int) -> dict[Root, Root]:
     """The positive roots, each with its coroot in simple coroots: ``alpha^vee = 2 alpha / (alpha, alpha)``."""
     matrix, norms = cartan(letter, rank), _norms(letter, rank)
     found = [tuple(int(i == j) for j in range(rank)) for i in range(rank)]
-    for root in found:  # grows meanwhile
+    for root in found:  # it grows meanwhile
         for j in range(rank):
             image = _reflect(root, j, matrix)
             if image[j] > root[j] and image not in found:
@@ -62,7 +63,7 @@ def positive_roots(letter: str, rank: int) -> dict[Root, Root]:
     return result
 
 
-def _reflect(root: Root, j: int, matrix: list[list[int]]) -> Root:
+def _reflect(root: Root, j: int, matrix: Sequence[Sequence[int]]) -> Root:
     """``s_j root``, j 0-based."""
     return (*root[:j], root[j] - sum(a * row[j] for a, row in zip(root, matrix, strict=True)), *root[j + 1 :])
 
@@ -84,53 +85,67 @@ class _Step:
     images: tuple[int, ...]
 
 
-@lru_cache(maxsize=64)
-def _cosets(X: FlagVariety) -> tuple[int, list[_Step], dict[SchubertClass, list[int]], dict[int, SchubertClass]]:
-    """What a product on X needs; sets of roots are integers, bit k for the root of number k, negative roots last.
+@dataclass(frozen=True, eq=False)
+class _Cosets:
+    """The cosets of a variety, each a set of roots, each set an integer: bit k stands for root number k, the positive ones first.
 
-    Returns the number of positive roots; the steps; for each class u and each root beta the bit of ``u(beta)``; the class of each coset.
+    Attributes:
+        positive: the number of positive roots.
+        steps: the roots outside the Levi.
+        images: for each class u and each number k the bit of ``u(root k)``.
+        classes: the class of each coset.
     """
-    letter, rank = X.kind.letter, X.rank
-    matrix, coroots = cartan(letter, rank), positive_roots(letter, rank)
+
+    positive: int
+    steps: list[_Step]
+    images: dict[SchubertClass, list[int]]
+    classes: dict[int, SchubertClass]
+
+
+@lru_cache(maxsize=64)
+def _cosets(X: FlagVariety) -> _Cosets:
+    """The cosets of X, at the cost of applying one word per class to all roots."""
+    matrix, coroots = cartan(X.kind.letter, X.rank), positive_roots(X.kind.letter, X.rank)
     roots = [*coroots, *(tuple(-a for a in root) for root in coroots)]
     number = {root: k for k, root in enumerate(roots)}
     outside = [root for root in coroots if any(root[i - 1] for i in X.marked)]
-
-    def pair(root: Root, coroot: Root) -> int:
-        return sum(a * matrix[i][j] * c for i, a in enumerate(root) if a for j, c in enumerate(coroot) if c)
-
     steps = []
     for alpha in outside:
         coroot = coroots[alpha]
-        shifts = [pair(gamma, coroot) for gamma in outside]
+        shifts = [_pairing(gamma, coroot, matrix) for gamma in outside]
         moved = [
             tuple(a - shift * b for a, b in zip(gamma, alpha, strict=True)) for gamma, shift in zip(outside, shifts, strict=True)
         ]
-        degree = tuple(coroot[i - 1] for i in X.marked)
-        steps.append(_Step(coroot, degree, sum(shifts), tuple(number[root] for root in moved)))
-
-    simple = [[number[_reflect(root, j, matrix)] for root in roots] for j in range(rank)]
+        steps.append(_Step(coroot, tuple(coroot[i - 1] for i in X.marked), sum(shifts), tuple(number[root] for root in moved)))
+    simple = [[number[_reflect(root, j, matrix)] for root in roots] for j in range(X.rank)]
     images, classes = {}, {}
     for u in X.classes:
         image = list(range(len(roots)))
-        for letter_ in reversed(u.word):
-            image = [simple[letter_ - 1][k] for k in image]
+        for j in reversed(u.word):
+            image = [simple[j - 1][k] for k in image]
         images[u] = [1 << k for k in image]
         classes[sum(images[u][number[root]] for root in outside)] = u
-    return len(coroots), steps, images, classes
+    return _Cosets(len(coroots), steps, images, classes)
+
+
+def _pairing(root: Root, coroot: Root, matrix: Sequence[Sequence[int]]) -> int:
+    """``<root, coroot>``."""
+    return sum(a * c * matrix[i][j] for i, a in enumerate(root) if a for j, c in enumerate(coroot) if c)
 
 
 def chevalley_terms(X: FlagVariety, i: int, u: SchubertClass) -> Terms:
-    """``sigma_{s_i} * sigma_u`` in the quantum ring, i a marked node: Fulton and Woodward's formula, term by term."""
-    positive, steps, images, classes = _cosets(X)
-    bits, none = images[u], (0,) * len(X.marked)
-    found = {}
-    for step in steps:
+    """``sigma_{s_i} * sigma_u`` without equivariance, i a marked node: the formula of Fulton and Woodward, root by root.
+
+    Each alpha leads to a class of its own, so no two terms have to be added.
+    """
+    cosets = _cosets(X)
+    bits, found = cosets.images[u], {}
+    for step in cosets.steps:
         if step.coroot[i - 1]:
             coset = sum(bits[k] for k in step.images)
-            rise = (coset >> positive).bit_count() - u.length
+            rise = (coset >> cosets.positive).bit_count() - u.length
             if rise == 1:
-                found[classes[coset], none] = step.coroot[i - 1]
+                found[cosets.classes[coset], (0,) * len(X.marked)] = step.coroot[i - 1]
             elif rise == 1 - step.cost:
-                found[classes[coset], step.degree] = step.coroot[i - 1]
+                found[cosets.classes[coset], step.degree] = step.coroot[i - 1]
     return found

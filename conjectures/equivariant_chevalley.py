@@ -19,7 +19,7 @@ __all__ = ["equivariant_chevalley"]
 
 
 @candidate(
-    on=HomogeneousSpaces(most_classes=130),
+    on=HomogeneousSpaces(most_classes=56),
     ring="equivariant quantum",
     premise=lambda X, u, v: u.length == 1,
     statement=r"\sigma_{s_i} * \sigma_u = (\omega_i - u\omega_i)\, \sigma_u"

@@ -15,7 +15,7 @@ from conjcheck.errors import OutOfReach
 from conjcheck.geometry.case import Row
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.oracle import engines_for
-from conjcheck.oracle.check import Check, Difference, Reader, RowList, compare
+from conjcheck.oracle.check import Check, Difference, Reader, RowList, at_row, compare
 from conjcheck.oracle.comparison import RecursionEngine
 from conjcheck.oracle.engine import Engine, RowTerms
 from conjcheck.oracle.formulas import formulas
@@ -140,7 +140,7 @@ class _Run:
         self.seconds += perf_counter() - begun
 
     def _ask(self, place: int) -> None:
-        """Compare one unit. An engine that stops at an inner contradiction differs, too."""
+        """Compare one unit. An engine that stops, by an inner contradiction or another error, differs, too."""
         unit = self.check.units[place]
         try:
             found = list(self.check.ask(unit))
@@ -149,11 +149,15 @@ class _Run:
                 self.first_gap, self.why = place, str(reason)
             self.left_out += 1
             return
-        except AssertionError as error:
-            where = (
-                str(unit) if isinstance(unit, Row) else f"{self.X}: {self.check.name}, number {place + 1} of the {self.check.unit}"
+        except Exception as error:
+            values = (
+                ("it stopped", f"{type(error).__name__}: {str(error).splitlines()[0] if str(error) else ''}"),
+                ("expected", "a value"),
             )
-            found = [Difference(where, ("an engine stopped", str(error)), ("it should give", "a product"))]
+            parts = unit if isinstance(unit, tuple) else (unit,)
+            row = next((part for part in parts if isinstance(part, Row)), None)
+            place_in_words = f"{self.X}: {self.check.name}, number {place + 1} of the {self.check.unit}"
+            found = [at_row(row, *values) if row else Difference(place_in_words, *values)]
         self.compared += 1
         if found:
             self.differing += 1

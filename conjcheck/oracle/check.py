@@ -13,7 +13,7 @@ from conjcheck.oracle import engines_for, row_terms
 from conjcheck.oracle.engine import Engine, RowTerms
 from conjcheck.oracle.localisation import LocalisationEngine
 
-__all__ = ["Check", "Difference", "Reader", "RowList", "TripleList", "at_two_places", "compare", "sum_degrees", "times"]
+__all__ = ["Check", "Difference", "Reader", "RowList", "TripleList", "at_row", "at_two_places", "compare", "sum_degrees", "times"]
 
 Value = int | str
 T_co = TypeVar("T_co", covariant=True)
@@ -27,18 +27,22 @@ class Difference:
     """Two values that should be equal and are not.
 
     Attributes:
-        where: the case; words where no single case is meant, as in a degree or in a relation.
+        where: the case; words where no single constant is meant, as in a degree, a relation or a product of three classes.
         one, other: pairs (how it was found, value).
+        near: a case that gives words their place in the order.
     """
 
     where: Case | str
     one: tuple[str, Value]
     other: tuple[str, Value]
+    near: Case | None = None
 
     @property
     def sort_key(self) -> tuple[Any, ...]:
-        """The order "smaller": cases in their own order, then the others."""
-        return (0, *self.where.sort_key) if isinstance(self.where, Case) else (1, self.where)
+        """The order "smaller": cases in their own order, then the others in the order of what they are near to."""
+        if isinstance(self.where, Case):
+            return (0, *self.where.sort_key)
+        return (1, *self.near.sort_key) if self.near else (2, self.where)
 
 
 class Units(Protocol[T_co]):
@@ -172,13 +176,27 @@ def times(read: Reader, x: RowTerms, y: RowTerms) -> RowTerms:
     return {key: count for key, count in total.items() if count}
 
 
-def compare(row: Row, one: tuple[str, RowTerms], other: tuple[str, RowTerms]) -> Iterator[Difference]:
-    """The smallest case of a row where two products differ, if there is one."""
+def compare(
+    row: Row, one: tuple[str, RowTerms], other: tuple[str, RowTerms], *, third: SchubertClass | None = None
+) -> Iterator[Difference]:
+    """The smallest case of a row where two products differ, if there is one; with a third class they are products of three."""
     a, b = one[1], other[1]
     keys = [key for key in {*a, *b} if a.get(key, 0) != b.get(key, 0)]
-    if keys:
-        w, d = min(keys, key=place_in_row)
-        yield Difference(Case(row.X, row.u, row.v, w, d), (one[0], a.get((w, d), 0)), (other[0], b.get((w, d), 0)))
+    if not keys:
+        return
+    w, d = min(keys, key=place_in_row)
+    case = Case(row.X, row.u, row.v, w, d)
+    values = (one[0], a.get((w, d), 0)), (other[0], b.get((w, d), 0))
+    if third is None:
+        yield Difference(case, *values)
+    else:
+        words = f"{row.X}: ({row.u} * {row.v}) * {third} -> {w}, q^({','.join(map(str, d))})"
+        yield Difference(words, *values, near=case)
+
+
+def at_row(row: Row, one: tuple[str, Value], other: tuple[str, Value]) -> Difference:
+    """A difference of a row as a whole."""
+    return Difference(str(row), one, other, near=Case(row.X, row.u, row.v, row.X.identity, (0,) * len(row.X.marked)))
 
 
 def at_two_places(law: str, pairs: Iterable[tuple[Case, int, Case, int]]) -> Iterator[Difference]:

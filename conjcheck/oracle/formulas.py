@@ -183,4 +183,4 @@ def _point_and_transposition(read: Reader, unit: tuple[FlagVariety, int, int, in
     whole = times(read, read(factor, other), {(X.point, zero): 1})
     found = {(w, d): count for (w, d), count in whole.items() if w is X.point}
     expected = {(X.point, tuple(int(i <= r < j) for r in range(1, X.n))): 1} if i <= k < j else {}
-    yield from compare(Row(X, factor, other), ("coefficient in (u * v) * [pt]", found), ("Kirillov-Maeno, Remark 12", expected))
+    yield from compare(Row(X, factor, other), ("products", found), ("Kirillov-Maeno, Remark 12", expected), third=X.point)

@@ -21,7 +21,18 @@ from conjcheck.geometry.case import Case, Row, place_in_row
 from conjcheck.geometry.flag_variety import FlagVariety, SchubertClass
 from conjcheck.geometry.symmetries import diagram_images, seidel
 from conjcheck.geometry.weyl import number_of_cosets
-from conjcheck.oracle.check import Check, Difference, Reader, RowList, TripleList, at_two_places, compare, sum_degrees, times
+from conjcheck.oracle.check import (
+    Check,
+    Difference,
+    Reader,
+    RowList,
+    TripleList,
+    at_row,
+    at_two_places,
+    compare,
+    sum_degrees,
+    times,
+)
 from conjcheck.oracle.engine import RowTerms
 
 __all__ = ["ROUNDING_MARGIN", "laws"]
@@ -76,7 +87,7 @@ def _degree_axiom(read: Reader, row: Row) -> Iterator[Difference]:
     """Every term is an integer above 0 at a degree that the axiom allows, and there is a term."""
     terms = read(row.u, row.v)
     if not terms:
-        yield Difference(str(row), ("product", 0), ("no product of Schubert classes vanishes", "not 0"))
+        yield at_row(row, ("product", 0), ("no product of Schubert classes vanishes", "not 0"))
     for w, d in sorted(terms, key=place_in_row):
         case, count = Case(row.X, row.u, row.v, w, d), terms[w, d]
         if not case.obeys_degree_axiom:
@@ -86,12 +97,11 @@ def _degree_axiom(read: Reader, row: Row) -> Iterator[Difference]:
 
 
 def _associativity(read: Reader, triple: tuple[Row, SchubertClass]) -> Iterator[Difference]:
-    """The case named is that of u, v and the term where the two triple products differ."""
     row, z = triple
     zero = (0,) * len(row.X.marked)
     left = times(read, read(row.u, row.v), {(z, zero): 1})
     right = times(read, {(row.u, zero): 1}, read(row.v, z))
-    yield from compare(row, (f"coefficient in (u * v) * {z!r}", left), (f"coefficient in u * (v * {z!r})", right))
+    yield from compare(row, ("(u * v) * z", left), ("u * (v * z)", right), third=z)
 
 
 def _s3(read: Reader, row: Row) -> Iterator[Difference]:
@@ -219,7 +229,7 @@ def _floats(read: Reader, row: Row) -> Iterator[Difference]:
     for w in X.classes:
         d, rest = divmod(total - w.length, X.n)
         if rounded[w.index] and (rest or d < 0):
-            yield Difference(str(row), (f"floating point at {w!r}", int(rounded[w.index])), ("degree axiom", 0))
+            yield at_row(row, (f"floating point at {w!r}", int(rounded[w.index])), ("degree axiom", 0))
         elif rounded[w.index]:
             found[w, (d,)] = int(rounded[w.index])
     yield from compare(row, ("product", read(row.u, row.v)), ("Vafa-Intriligator in floats", found))
@@ -233,7 +243,7 @@ def _powers(read: Reader, row: Row) -> Iterator[Difference]:
     """
     X, k, terms = row.X, row.X.marked[0], read(row.u, row.v)
     if not terms:
-        yield Difference(str(row), ("product", 0), ("no product of Schubert classes vanishes", "not 0"))
+        yield at_row(row, ("product", 0), ("no product of Schubert classes vanishes", "not 0"))
         return
     lam, inside = ((*shape, *[0] * k)[:k] for shape in (row.u.partition, row.v.dual.partition))
     least = next(d for d in range(k + 1) if all(max(a - d, 0) <= b for a, b in zip((*lam[d:], *[0] * d), inside, strict=True)))

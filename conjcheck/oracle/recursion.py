@@ -25,7 +25,7 @@ from conjcheck.oracle.engine import Block, RowTerms
 from conjcheck.oracle.guard import note_question
 from conjcheck.oracle.relations import Relation, relation
 
-__all__ = ["CompleteFlagRing", "complete_flag_ring"]
+__all__ = ["CompleteFlagRing", "Packed", "complete_flag_ring"]
 
 Packed = dict[int, int]
 """Sum of terms ``c q^d sigma_w``, keyed by ``w.index + (packed d << shift)``."""

@@ -28,7 +28,7 @@ SPACES = [
     *["B2/P1", "B2/B", "B3/P1", "B3/P2", "B3/P3", "B3/P1,3", "B4/P2"],
     *["C2/P1", "C2/B", "C3/P1", "C3/P2", "C3/P3", "C3/P1,2", "C4/P4"],
     *["D4/P1", "D4/P2", "D4/P1,3", "D5/P5"],
-    *["E6/P1", "E7/P7", "F4/P1", "F4/P4", "G2/P1", "G2/P2", "G2/B"],
+    *["E6/P1", "E7/P7", "F4/P4", "G2/P1", "G2/P2", "G2/B"],
 ]
 
 DIRECT = "recursion, direct route"
@@ -421,12 +421,11 @@ FURTHER_OUT = ["A7/P4", "C5/P5", "B5/P5", "D5/P5", "D5/P4", "D5/P2", "B5/P1", "C
 @pytest.mark.slow
 @pytest.mark.parametrize("name", FURTHER_OUT)
 def test_engines_agree_in_rank_5_and_7(name):
-    """Products at random, up to 2,000 a space where they are quick, all where there are fewer: Gr(4,8), LG(5,10), OG(5,11), OG(5,10)..."""
+    """2,000 products at random, all where there are fewer: Gr(4,8), LG(5,10), OG(5,11), OG(5,10), quadrics, isotropic lines, D5/P3."""
     X = FlagVariety(name)
     pairs = unordered(X)
-    most = 300 if len(X.classes) > 32 and X.kind.letter != "A" else 2000
-    if len(pairs) > most:
-        pairs = sorted(random.Random(name).sample(pairs, most), key=lambda pair: pair[1].index)
+    if len(pairs) > 2000:
+        pairs = sorted(random.Random(name).sample(pairs, 2000), key=lambda pair: pair[1].index)
     assert_all_agree(X, pairs)
 
 
@@ -553,9 +552,9 @@ def test_a_wrong_term_shows_at_random_values(monkeypatch):
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("name", [*quotients("A4"), *quotients("A5"), *quotients("D4"), "A6/P2,4"])
+@pytest.mark.parametrize("name", [*quotients("A4", "A5", "D4"), *quotients("B4", "C4", most=2), "A6/P2,4"])
 def test_all_degrees_agree_further_out(name):
-    """A4, A5 and D4 with every marked set, Fl(6) with its 518,400 products included, and Fl(2,4;7)."""
+    """A4, A5 and D4 with every marked set, Fl(6) with its 518,400 products included; B4 and C4 with up to two; Fl(2,4;7)."""
     assert_all_degrees_agree(FlagVariety(name))
 
 

@@ -12,7 +12,7 @@ from conjcheck.geometry.case import rows
 from conjcheck.geometry.families import PartialFlags
 from conjcheck.oracle import ENGINES, witnesses
 from conjcheck.oracle.chevalley import chevalley
-from conjcheck.oracle.localisation import _inverses, _vandermonde, localisation, primes
+from conjcheck.oracle.localisation import _inverses, _Numbers, _vandermonde, localisation, primes
 
 
 def word(X, *letters):
@@ -196,3 +196,34 @@ def test_bounds_are_those_of_unlimited_integers(name):
             exact = following
         most = max(exact.values())
         assert most <= localisation(X).bound(u.index, v.index) <= most + most // 1000
+
+
+def test_residues_are_put_together_beyond_one_prime(monkeypatch):
+    """A constant of 100 bits, handed in as its residues, comes out whole: as many primes are used as the bound asks for."""
+    X = Gr(2, 4)
+    engine, huge = localisation(X), 3**64 + 5
+    asked = set()
+
+    def residues(p, *rest, **choices):
+        asked.add(p)
+        return {(X.point, (0,)): huge % p}
+
+    monkeypatch.setattr(engine, "bound", lambda u, v: huge)
+    monkeypatch.setattr(engine, "_residues", residues)
+    assert engine.row(X.identity, X.point) == {(X.point, (0,)): huge}
+    assert len(asked) == 4
+
+
+def test_eigenvalues_are_kept_apart():
+    """In a small field numbers often coincide; those that are chosen never let two eigenvalues do so."""
+    for seed in range(60):
+        values = _Numbers(Gr(2, 4), 97, seed).values
+        assert len(set(values.tolist())) == 6
+    with pytest.raises(AssertionError, match="no numbers that separate"):
+        _Numbers(Gr(2, 4), 5, 0)
+
+
+def test_work_is_what_the_loops_do():
+    """Points times pairs of powers of z times the square table of classes: on ``Gr(2,4)`` up to ``q^2`` once 3 * 4 * 6 * 6."""
+    assert localisation(Gr(2, 4)).work(8) == 3 * 4 * 6 * 6
+    assert localisation(Fl(3)).work(4) == 3 * (3 * 4 * 6 * 6)

@@ -59,6 +59,24 @@ def test_other_values(project):
     assert all(" - stale record: expected rule " in line for line in project.summary(result))
 
 
+def test_a_false_certificate(project):
+    """A record that calls its counterexample minimal is stale when a smaller one turns up."""
+    project.write(
+        "conjectures/twice.py", WRONG.format(name="twice").replace("(2, 3))", "(2, 3)) + (X.n == 3 and u is v is X.point)")
+    )
+    for minimal in (True, False):
+        entry = {"where": FAULT, "rule": 2, "oracle": 1, "minimal": minimal}
+        data = {"format": "conjcheck-record", "version": 1, "conjecture": "twice", "status": "refuted", "counterexamples": [entry]}
+        project.write(RECORD, json.dumps(data))
+        result = project.run()
+        if minimal:
+            (line,) = project.summary(result)
+            assert "::survey - stale record: " in line
+            assert "Gr(1,3): (2) * (2)" in line
+        else:
+            result.assert_outcomes(passed=2)
+
+
 def test_damaged(project):
     """A damaged record is one failing item of its conjecture with a clear line; other conjectures are examined."""
     damaged = {

@@ -46,7 +46,7 @@ def outcomes_of(X, total, *, classical=False):
 def key_of(case):
     """The one order of cases, written down from its definition."""
     X, u, v, w, d = case
-    space = (X.n - 1, len(X.steps), X.dim, X.steps)
+    space = (X.rank, len(X.marked), X.dim, X.kind.letter, X.marked)
     return (*space, u.length + v.length, u.length, u.index, v.index, sum(d), d, w.index)
 
 

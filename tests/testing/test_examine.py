@@ -142,7 +142,7 @@ def test_every_status_by_every_part(status):
     for outcome in outcomes:
         assert outcome.status == status
         assert outcome.finding.row == Row.parse("Gr(1,2): (1) * ()")
-        assert outcome.minimum.certified == (status != "too-slow" or outcome.minimum.certified)
+        assert outcome.minimum.certified or status == "too-slow"
         assert text_report(outcome).startswith(f"{status}: rule at Gr(1,2): (1) * ()")
     assert time.perf_counter() - began < 30
 

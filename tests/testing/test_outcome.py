@@ -81,7 +81,9 @@ def test_json():
 
 def test_json_of_a_refutation():
     """A refutation adds case, values, kinds, minimality, confirmation and the numbers of the layer."""
-    layer = Layer((FINDING, Finding("refuted", Row.parse("Fl(3): [132] * [132]"))), 30, complete=False, orbits=2, size=36)
+    layer = Layer(
+        (FINDING, Finding("refuted", Row.parse("Fl(3): [132] * [132]"))), 30, complete=False, orbits=2, all_orbits=True, size=36
+    )
     outcome = replace(
         REFUTED,
         minimum=Minimum(FINDING, certified=True, below=5),

@@ -172,7 +172,9 @@ class EndsAt(ProbeCount):
 
     def time_is_up(self):
         self.left -= 1
-        return not self.failed and self.left < 0
+        if self.left < 0:
+            self.deadline = 0.0
+        return super().time_is_up()
 
 
 @pytest.mark.parametrize("seed", [0, 1])
@@ -217,9 +219,7 @@ def levels_of(family, most_classes=5_040):
 
 def test_levels():
     """At most three n, rising, with spaces of 20 classes or more and not too many: the smallest, the middle, the largest."""
-    assert levels_of(CompleteFlags()) == [(4, ["Fl(4)"]), (5, ["Fl(5)"]), (7, ["Fl(7)"])] or (
-        levels_of(CompleteFlags()) == [(4, ["Fl(4)"]), (6, ["Fl(6)"]), (7, ["Fl(7)"])]
-    )
+    assert levels_of(CompleteFlags()) == [(4, ["Fl(4)"]), (6, ["Fl(6)"]), (7, ["Fl(7)"])]
     assert levels_of(CompleteFlags(), 800) == [(4, ["Fl(4)"]), (5, ["Fl(5)"]), (6, ["Fl(6)"])]
     assert levels_of(Varieties("Gr(1,3)", "Fl(3)")) == []
     for family in (Grassmannians(), PartialFlags(), ProjectiveSpaces()):

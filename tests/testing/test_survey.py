@@ -8,8 +8,9 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from planted import SMALL, as_case, cases_of, key_of, rule_by_cases, rule_by_rows, smaller_than, truth
 
-from conjcheck import CompleteFlags, Fl, Gr, Grassmannians, PartialFlags, ProjectiveSpaces, Row, Varieties, candidate
+from conjcheck import CompleteFlags, Fl, FlagVariety, Gr, Grassmannians, PartialFlags, ProjectiveSpaces, Row, Varieties, candidate
 from conjcheck.testing.compare import Comparer
+from conjcheck.testing.examine import Examination
 from conjcheck.testing.survey import Coverage, in_reach, survey
 
 SPACES = [X for X in SMALL if X is not Fl(4)]
@@ -73,6 +74,21 @@ def test_planted_faults(faults, more, kind):
 def test_planted_fault_on_complete_flags(fault, kind):
     """The same on Fl(4), 35,855 cases."""
     assert survey(Comparer(kind([fault])), budget=60.0).finding.where == as_case(fault)
+
+
+OTHER_TYPES = tuple(map(FlagVariety, ["Gr(1,2)", "B2/P1", "C2/P1", "G2/P2", "B2/B", "A3/P2", "B3/P3"]))
+
+
+@settings(max_examples=40, deadline=None)
+@given(
+    fault=st.sampled_from([case for X in OTHER_TYPES for case in cases_of(X)]), kind=st.sampled_from([rule_by_cases, rule_by_rows])
+)
+def test_planted_fault_in_other_types(fault, kind):
+    """The same on flag varieties of other types, mixed: found at exactly that case, minimal, with the true number of smaller cases."""
+    outcome = Examination(kind([fault], on=OTHER_TYPES)).survey()
+    assert (outcome.status, outcome.finding.where) == ("refuted", as_case(fault))
+    assert outcome.minimum.certified
+    assert outcome.minimum.below == smaller_than(fault, OTHER_TYPES)
 
 
 @settings(max_examples=25, deadline=None)
