@@ -70,8 +70,12 @@ def pytest_configure(config: pytest.Config) -> None:
         seconds(config, key)
     if config.getoption("--conjcheck-installed"):
         from conjcheck.conjecture.discover import installed_files
+        from conjcheck.errors import DeclarationError
 
-        config.args.extend(str(path) for path in installed_files())
+        try:
+            config.args.extend(str(path) for path in installed_files())
+        except DeclarationError as error:
+            raise pytest.UsageError(str(error)) from None
 
 
 @pytest.hookimpl(optionalhook=True)
@@ -87,8 +91,12 @@ def pytest_report_collectionfinish(config: pytest.Config, items: list[pytest.Ite
         return None
     from importlib.metadata import version
 
+    name = f"conjcheck {version('conjcheck')}"
+    hypothesis = sys.modules.get("hypothesis")
+    if hypothesis is not None and hypothesis.settings().derandomize and config.getoption("--hypothesis-seed", None) is None:
+        return f"{name}: derandomized by the Hypothesis profile"
     seed = config.stash[STATE]["seed"]
-    return f"conjcheck {version('conjcheck')}: seed {seed} (repeat with --hypothesis-seed={seed})"
+    return f"{name}: seed {seed} (repeat with --hypothesis-seed={seed})"
 
 
 # -- collection ----------------------------------------------------------------------------------------------------------

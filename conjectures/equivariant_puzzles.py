@@ -25,7 +25,7 @@ __all__ = ["equivariant_puzzles"]
 
 
 @candidate(
-    on=Grassmannians(),
+    on=Grassmannians().where(lambda X: X.n <= 8, words="n <= 8"),
     ring="equivariant",
     statement=r"c_{u,v}^{w} = \sum_{P} \prod_{\text{rhombi of } P} (y_{n-i+j} - y_{j+1}),"
     r" \quad P \text{ the equivariant puzzles with boundary } u, v, w",

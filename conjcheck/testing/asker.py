@@ -8,6 +8,7 @@ from conjcheck.geometry.case import Case, Row, read_degree
 from conjcheck.geometry.flag_variety import SchubertClass
 from conjcheck.oracle import row_terms
 from conjcheck.oracle.engine import RowTerms
+from conjcheck.oracle.guard import note_question
 
 __all__ = ["Asker"]
 
@@ -36,6 +37,7 @@ class Asker:
         Raises:
             NotationError, DifferentVarieties: an argument that denotes nothing on the variety of u.
         """
+        note_question()
         terms = self._row(u, v)
         key = w, (0,) * len(u.variety.marked) if d is None else d
         try:
@@ -50,5 +52,6 @@ class Asker:
 
     def product(self, u: SchubertClass, v: SchubertClass) -> dict[Any, int]:
         """The product ``{(w, d): N}``, or ``{w: N}`` in the classical ring; nonzero terms only."""
+        note_question()
         terms = self._row(u, v)
         return {w: n for (w, _), n in terms.items()} if self._classical else dict(terms)
