@@ -8,13 +8,13 @@ and w along the bottom from left to right. They are laid with the one-step piece
 weights; without a rhombus it is the classical puzzle rule.
 
 Here the rhombus is a piece like any other: its upper triangle ``(0, 1, e)``, e a label that occurs nowhere else, and the half turn of
-that below. See ``_puzzles.py``.
+that below. See ``_puzzles.py``. The rule is held to n up to 8: the numbers of puzzles and of monomials explode after that.
 
 Source: A. Knutson and T. Tao, Puzzles and (equivariant) cohomology of Grassmannians, Duke Math. J. 119 (2003), 221-260.
 """
 
-from collections import Counter
-from collections.abc import Iterable
+from collections import defaultdict
+from collections.abc import Iterable, Sequence
 from functools import cache, lru_cache
 
 from _puzzles import Pieces, Puzzle, classes_by_string
@@ -22,6 +22,8 @@ from _puzzles import Pieces, Puzzle, classes_by_string
 from conjcheck import FlagVariety, Grassmannians, RootPolynomial, SchubertClass, candidate, simple_roots
 
 __all__ = ["equivariant_puzzles"]
+
+Place = tuple[int, int]
 
 
 @candidate(
@@ -37,7 +39,7 @@ def equivariant_puzzles(X: FlagVariety, u: SchubertClass, v: SchubertClass) -> d
     """For each class the sum of the weights of its puzzles."""
     classes = classes_by_string(X)
     return {
-        classes[bottom]: total(weight(X, rhombi(puzzle)) for puzzle in puzzles)
+        classes[bottom]: sum_of_weights(X, map(rhombi, puzzles))
         for bottom, puzzles in equivariant_pieces().fill(u.string, v.string).items()
     }
 
@@ -50,26 +52,30 @@ def equivariant_pieces() -> Pieces:
     )
 
 
-def rhombi(puzzle: Puzzle) -> tuple[tuple[int, int], ...]:
-    """The places ``(i, j)`` of the rhombi of a puzzle."""
+def rhombi(puzzle: Puzzle) -> tuple[Place, ...]:
+    """The places ``(i, j)`` of the rhombi of a puzzle, row by row."""
     return tuple((i, j) for i, floor in enumerate(puzzle) for j, label in enumerate(floor) if label == "e")
 
 
-@lru_cache(maxsize=65536)
-def weight(X: FlagVariety, places: tuple[tuple[int, int], ...]) -> RootPolynomial:
-    """The product of the weights of rhombi."""
-    alpha = simple_roots(X)
-    if not places:
-        return alpha[0] ** 0
-    *others, (i, j) = places
-    return weight(X, tuple(others)) * sum(alpha[j : X.n - i + j - 1])
+@lru_cache(maxsize=1024)
+def weight(X: FlagVariety, place: Place) -> RootPolynomial:
+    """The weight of a rhombus."""
+    i, j = place
+    return sum(simple_roots(X)[j : X.n - i + j - 1], start=constant(X, 0))
 
 
-def total(polynomials: Iterable[RootPolynomial]) -> RootPolynomial:
-    """The sum of one polynomial or more, term by term."""
-    first, *others = polynomials
-    terms = Counter(dict(first.terms))
-    for other in others:
-        for exponents, coefficient in other.terms:
-            terms[exponents] += coefficient
-    return RootPolynomial.of(first.rank, terms)
+def sum_of_weights(X: FlagVariety, puzzles: Iterable[Sequence[Place]]) -> RootPolynomial:
+    """The sum over puzzles of the products of the weights of their rhombi; those with the same first rhombus are added first."""
+    groups: dict[Place, list[Sequence[Place]]] = defaultdict(list)
+    plain = 0
+    for places in puzzles:
+        if places:
+            groups[places[0]].append(places[1:])
+        else:
+            plain += 1
+    return sum((weight(X, first) * sum_of_weights(X, rest) for first, rest in groups.items()), start=constant(X, plain))
+
+
+def constant(X: FlagVariety, value: int) -> RootPolynomial:
+    """An integer as a polynomial in the simple roots."""
+    return RootPolynomial.of(X.rank, {(0,) * X.rank: value})

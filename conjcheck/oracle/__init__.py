@@ -167,5 +167,6 @@ def witnesses(case: Case) -> list[tuple[str, int]]:
     ]
     if _RECURSION.refuses(X) is None:
         found.append(("the recursion without symmetries", _RECURSION.direct_row(case.u, case.v).get((case.w, d), 0)))
-    found.append(("S3-symmetry", chosen.constant(case.u, case.w.dual, case.v.dual, d)))
+    if case.w.dual is not case.v:  # otherwise it would be the same question
+        found.append(("S3-symmetry", chosen.constant(case.u, case.w.dual, case.v.dual, d)))
     return found

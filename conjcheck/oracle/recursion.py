@@ -30,7 +30,7 @@ __all__ = ["CompleteFlagRing", "Packed", "complete_flag_ring"]
 Packed = dict[int, int]
 """Sum of terms ``c q^d sigma_w``, keyed by ``w.index + (packed d << shift)``."""
 
-_MOST_PRODUCTS = 1_000_000
+_MOST_PRODUCTS = 150_000
 
 
 class CompleteFlagRing:
@@ -47,7 +47,7 @@ class CompleteFlagRing:
         self._moves: dict[tuple[tuple[int, ...], int], list[tuple[int, int]]] = {}
         self._relations: dict[int, tuple[Relation, Packed]] = {}
         self._sweeps: dict[int, dict[int, Packed]] = {}
-        self._most_sweeps = max(_MOST_PRODUCTS // len(X.classes), 4)
+        self._most_sweeps = max(_MOST_PRODUCTS // len(X.classes), 2)
         self._degrees: dict[int, Degree] = {}
         self._prepare_symmetry()
 
@@ -195,29 +195,24 @@ class CompleteFlagRing:
         places = self.bits * np.arange(len(X.marked), dtype=np.int64) + shift
         field = (1 << self.bits) - 1
         for a in self.representatives.tolist():
-            known: dict[int, Packed] = {0: {a: 1}}
+            known = self._sweep(a)
+            for b, other in self._sweeps.items():
+                if a in other:
+                    known.setdefault(b, other[a])
             rows = [self._times(b, known) for b in self.representatives.tolist()]
             sizes = [len(row) for row in rows]
             keys = np.fromiter((key for row in rows for key in row), dtype=np.int64, count=sum(sizes))
             counts = np.fromiter((c for row in rows for c in row.values()), dtype=np.int64, count=sum(sizes))
             partner = np.repeat(self.representatives, sizes)
             terms, powers = keys & mask, (keys >> shift) << shift
-            moved = [powers + self.packed_shifts[f, terms] + group.images[f, terms] for f in range(len(group.units))]
-            partner_shifts = [self.packed_shifts[h, partner] for h in range(len(group.units))]
-            partner_images = np.concatenate([images[partner] for images in group.images])
+            moved = powers + self.packed_shifts[:, terms] + group.images[:, terms]
+            from_partner = self.packed_shifts[:, partner]
+            partner_images = group.images[:, partner].ravel()
             all_counts = np.tile(counts, len(group.units))
             for g in range(len(group.units)):
-                full = np.concatenate(
-                    [
-                        moved[group.table[g, h]]
-                        - partner_shifts[h]
-                        + (self.packed_shifts[g, group.units[h]] - self.packed_shifts[g, a])
-                        for h in range(len(group.units))
-                    ]
-                )
-                degrees = np.empty((len(full), len(places)), dtype=np.int64)
-                for k, place in enumerate(places):
-                    degrees[:, k] = (full >> place) & field
+                offsets = self.packed_shifts[g, group.units] - self.packed_shifts[g, a]
+                full = (moved[group.table[g]] - from_partner + offsets[:, None]).ravel()
+                degrees = ((full >> places[:, None]) & field).T
                 yield Block(X.classes[group.images[g, a]], partner_images, full & mask, degrees, all_counts)
 
 

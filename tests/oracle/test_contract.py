@@ -551,10 +551,13 @@ def test_a_wrong_term_shows_at_random_values(monkeypatch):
             assert_all_degrees_agree(X)
 
 
+WIDER = ["A6/P2,4", "C5/P1,5", "D5/P1,5", "D5/P4,5", "F4/P1,4"]
+
+
 @pytest.mark.slow
-@pytest.mark.parametrize("name", [*quotients("A4", "A5", "D4"), *quotients("B4", "C4", most=2), "A6/P2,4"])
+@pytest.mark.parametrize("name", [*quotients("A4", "A5", "B4", "C4", "D4"), *WIDER])
 def test_all_degrees_agree_further_out(name):
-    """A4, A5 and D4 with every marked set, Fl(6) with its 518,400 products included; B4 and C4 with up to two; Fl(2,4;7)."""
+    """A4, A5, B4, C4 and D4 with every marked set, Fl(6) with its 518,400 products included; Fl(2,4;7) and others with two q's."""
     assert_all_degrees_agree(FlagVariety(name))
 
 

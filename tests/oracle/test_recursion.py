@@ -68,11 +68,13 @@ def test_forgetting_changes_nothing(monkeypatch):
 
 
 def test_what_is_not_kept_takes_no_room():
-    """The direct route and the streamed table remember no products."""
+    """The direct route remembers no products, and the streamed table no more sweeps than are kept anyhow."""
     ring = CompleteFlagRing(Fl(4))
     ring.direct_row(5, 7)
-    list(ring.blocks())
     assert not ring._sweeps
+    ring._most_sweeps = 3
+    assert sum(len(block) for block in ring.blocks()) == 1168
+    assert len(ring._sweeps) <= 3
 
 
 def test_the_direct_route_does_not_lean_on_the_symmetries():

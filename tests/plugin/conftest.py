@@ -29,8 +29,8 @@ class Project:
         self.write("conftest.py", PROFILE)
 
     def ini(self, *lines):
-        """The ini file: quick, and more lines."""
-        text = "\n".join(["[pytest]", "conjcheck_effort = quick", "conjcheck_budget = 1", *lines])
+        """The ini file: one second for a survey, and more lines."""
+        text = "\n".join(["[pytest]", "conjcheck_budget = 1", *lines])
         (self.path / "pytest.ini").write_text(text + "\n")
 
     def write(self, name, source):

@@ -155,7 +155,7 @@ def test_nothing_compared(project):
             return {}
         """,
     )
-    result = project.run("--conjcheck-budget=0.3")
+    result = project.run("--conjcheck-effort=quick", "--conjcheck-budget=0.3")
     assert result.ret == 1
     assert project.table(result) == {"never": "undefined"}
     assert "agrees" not in result.text
