@@ -88,7 +88,11 @@ __version__ = "0.1.0"
 def __getattr__(name: str) -> Any:
     """Import a public name when it is first used."""
     if name not in _ROOMS:
-        raise AttributeError(f"module 'conjcheck' has no attribute {name!r}")
+        from difflib import get_close_matches
+
+        close = get_close_matches(name, _ROOMS, n=1)
+        hint = f"; did you mean {close[0]!r}?" if close else ""
+        raise AttributeError(f"module 'conjcheck' has no attribute {name!r}{hint}", name=name)
     value = getattr(import_module(f"conjcheck.{_ROOMS[name]}"), name)
     globals()[name] = value
     return value

@@ -24,7 +24,7 @@ from conjcheck.pytest_state import STATE, seconds
 from conjcheck.report.text import text_report
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.limits import CallInterrupted, CallLimit
-from conjcheck.testing.outcome import Outcome, plain_value
+from conjcheck.testing.outcome import Outcome, no_verdict, plain_value
 from conjcheck.testing.probe import Check, ProbeCount, gravest, level_name, probe_test
 
 __all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
@@ -292,6 +292,19 @@ class PartItem(pytest.Function):
         return self.parent
 
     def runtest(self) -> None:
+        """Run the part; whatever stops it without a verdict leaves a line in the summary, so that nobody takes it for agreement."""
+        try:
+            self._run_part()
+        except (Verdict, pytest.skip.Exception, KeyboardInterrupt):
+            raise
+        except BaseException as error:
+            line = no_verdict(
+                self.node.conjecture, self.name, f"{type(error).__name__}: {str(error).strip().splitlines()[0][:200]}"
+            )
+            self.user_properties.append(("conjcheck", json.dumps(line)))
+            raise
+
+    def _run_part(self) -> None:
         """Run the part, work out what it finds, keep the outcome, and fail unless the status is as expected."""
         examination = self.node.examination
         if examination.failure and self.name != "case":

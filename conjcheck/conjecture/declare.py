@@ -81,8 +81,8 @@ class Conjecture:
 
 
 def candidate(
-    *,
-    on: Family,
+    *misplaced: Any,
+    on: Family | None = None,
     premise: Rule | None = None,
     statement: str = "",
     references: Sequence[str] = (),
@@ -112,12 +112,16 @@ def candidate(
     Raises:
         DeclarationError: the message names file, line, argument and remedy.
     """
+    if misplaced:
+        raise DeclarationError(
+            f"expected @candidate(on=...) with named arguments, got {misplaced[0]!r}; write @candidate(on=Grassmannians())"
+        )
     return functools.partial(_declare, "candidate", on, premise, statement, references, contributors, ring)
 
 
 def claim(
-    *,
-    on: Family,
+    *misplaced: Any,
+    on: Family | None = None,
     premise: Rule | None = None,
     statement: str = "",
     references: Sequence[str] = (),
@@ -134,12 +138,16 @@ def claim(
 
     The other arguments are those of :func:`candidate`.
     """
+    if misplaced:
+        raise DeclarationError(
+            f"expected @claim(on=...) with named arguments, got {misplaced[0]!r}; write @claim(on=Grassmannians())"
+        )
     return functools.partial(_declare, "claim", on, premise, statement, references, contributors, ring)
 
 
 def _declare(
     role: str,
-    on: Family,
+    on: Family | None,
     premise: Rule | None,
     statement: str,
     references: Sequence[str],
@@ -207,7 +215,13 @@ def _signature(place: str, what: str, function: Rule, single: tuple[str, ...], w
         ) from None
     names = tuple(f"*{name}" if p.kind in _ODD_KINDS else name for name, p in parameters.items())
     if names not in (single, whole):
+        hint = ""
+        if set(names) - set(single) == {"d"}:
+            hint = "; in the classical rings there is no d"
+        elif set(single) - set(names) == {"d"}:
+            hint = "; for a rule without d declare ring='classical'"
         raise DeclarationError(
-            f"{place}: expected the arguments ({', '.join(single)}) or ({', '.join(whole)}) for {what}, got ({', '.join(names)})"
+            f"{place}: expected the arguments ({', '.join(single)}) or ({', '.join(whole)}), by these names, for {what}, "
+            f"got ({', '.join(names)}){hint}"
         )
     return names == whole

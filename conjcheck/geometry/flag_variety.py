@@ -132,7 +132,7 @@ class FlagVariety:
 
     def schubert(
         self,
-        *,
+        *misplaced: Any,
         permutation: Iterable[int] | None = None,
         partition: Iterable[int] | None = None,
         string: str | None = None,
@@ -152,6 +152,8 @@ class FlagVariety:
         given = {"permutation": permutation, "partition": partition, "string": string, "word": word, "signed": signed}
         given = {key: value for key, value in given.items() if value is not None}
         ways = [f"{way}=" for way in self.notations]
+        if misplaced:
+            raise NotationError(f"expected {' or '.join(ways)} with the notation named, got {misplaced[0]!r} without a name")
         if len(given) != 1:
             one_of = "one of " if len(ways) > 1 else ""
             raise NotationError(f"expected {one_of}{', '.join(ways)}, got {sorted(given) or 'none'}")

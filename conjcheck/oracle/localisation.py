@@ -277,6 +277,8 @@ class Localisation:
 
     def work(self, total: int) -> int:
         """About how many modular multiplications a row up to the degree ``total`` takes."""
+        if total < 0:
+            return 0
         depth = total // self.step
         points = 1 if len(self.X.marked) == 1 else max(len(degrees_of_total(self.X, e * self.step)) for e in range(depth + 1))
         return points * (depth + 1) * (depth + 2) * self.X.number_of_classes**2

@@ -52,7 +52,8 @@ def text_report(outcome: Outcome, *, replay: str = "") -> str:
         if replay:
             lines += _entry("replay", f"{replay} --conjcheck-case {shlex.quote(str(finding.where))}", wrap=False)
         if outcome.cases or outcome.minimum:
-            lines += _entry("compared", outcome.scope)
+            extra = outcome.minimum.below - outcome.cases if outcome.minimum else 0
+            lines += _entry("compared", outcome.scope + (f"; and {extra:,} more in the failing row" if extra > 0 else ""))
     lines += _entry("environment", environment() + (f"; seed {outcome.seed}" if outcome.seed else ""))
     return "\n".join(lines)
 
@@ -67,7 +68,7 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
         lines += _entry("law", f"broken without any oracle: {outcome.broken_law}")
     if finding.status != "refuted":
         lines += _entry("problem", finding.detail)
-        lines += _entry("remedy", _REMEDIES[finding.status])
+        lines += _entry("remedy", _remedy(outcome, finding))
         if finding.trace:
             lines += ["", *("    " + line for line in finding.trace.rstrip().splitlines()), ""]
         return lines + _entry("minimal", _minimality(outcome))
@@ -90,6 +91,18 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
     if outcome.layer:
         lines += _layer(outcome.layer, finding.row)
     return lines
+
+
+def _remedy(outcome: Outcome, finding: Finding) -> str:
+    """What to do about a finding that is no refutation."""
+    if finding.status == "not-a-count":
+        if "keys" in finding.detail:
+            return "key a whole product by (w, d), w a class of X and d a tuple; or by w alone, with ring='classical'"
+        if outcome.conjecture.role == "claim":
+            return "return True or False on every path"
+        if outcome.conjecture.is_equivariant:
+            return "return a polynomial built from simple_roots(X)"
+    return _REMEDIES[finding.status]
 
 
 def _minimality(outcome: Outcome) -> str:

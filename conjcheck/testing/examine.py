@@ -4,10 +4,9 @@ from collections.abc import Callable
 from dataclasses import dataclass, field, replace
 from itertools import islice
 from time import perf_counter
-from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.errors import NotationError
+from conjcheck.errors import DeclarationError, NotationError
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.compare import Comparer
@@ -277,19 +276,34 @@ class Examination:
         return replace(outcome, seconds=perf_counter() - started)
 
 
-def examine(conjecture: Conjecture, *, effort: str = "normal", seed: int | None = None, **options: Any) -> list[Outcome]:
+def examine(
+    conjecture: Conjecture,
+    *,
+    effort: str = "normal",
+    budget: float | None = None,
+    seed: int | None = None,
+    call_limit: float = 10.0,
+    cross_check: bool = False,
+) -> list[Outcome]:
     """Examine one conjecture from Python: survey, laws, probes; ends after the first part that finds something wrong.
 
     Args:
         conjecture: a decorated function.
         effort: ``"quick"``, ``"normal"`` or ``"thorough"``.
         seed: makes the random parts reproducible.
-        options: ``call_limit=`` seconds, ``cross_check=`` bool.
+        budget: seconds for the survey, if not those of the effort.
+        call_limit: seconds one call of the rule may take.
+        cross_check: compute every product of the oracle in two ways.
 
     Returns:
         The outcomes in the order in which the parts ran; ``print(outcome.verdict)`` says the most important thing of each.
     """
-    examination = Examination(conjecture, EFFORTS[effort], **options)
+    if not isinstance(conjecture, Conjecture):
+        raise DeclarationError(f"expected a function under @candidate or @claim, got {conjecture!r}")
+    if effort not in EFFORTS:
+        raise DeclarationError(f"expected effort to be one of {', '.join(map(repr, EFFORTS))}, got effort={effort!r}")
+    work = replace(EFFORTS[effort], survey=budget) if budget else EFFORTS[effort]
+    examination = Examination(conjecture, work, call_limit=call_limit, cross_check=cross_check)
     outcomes: list[Outcome | None] = [examination.survey()]
     if conjecture.role == "candidate" and not examination.failure:
         outcomes.append(examination.laws(seed=seed))

@@ -14,7 +14,7 @@ from conjcheck.testing.explain import Explanation
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer, Minimum
 
-__all__ = ["Outcome", "environment", "plain_value", "smaller_agree"]
+__all__ = ["Outcome", "environment", "no_verdict", "plain_value", "smaller_agree"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,6 +111,12 @@ class Outcome:
                 "complete": self.layer.complete,
             }
         return found
+
+
+def no_verdict(conjecture: Conjecture, part: str, why: str) -> dict[str, Any]:
+    """The JSON form for a part that ended without a verdict, through an error that is not the rule's."""
+    line = Outcome(conjecture, part, "no verdict", why, why).as_json()
+    return line | {"status": "no verdict", "verdict": f"no verdict: {conjecture.name}: {why}"}
 
 
 def plain_value(value: object) -> int | str | None:

@@ -8,6 +8,9 @@ from conjcheck.testing.survey import Coverage
 __all__ = ["probe_scope", "survey_scope", "survey_spaces"]
 
 
+_FEWEST_ROWS = 20
+
+
 def survey_spaces(coverage: Coverage) -> str:
     """The spaces a survey has compared: the complete ones, and how far into the last."""
     spaces, parts = coverage.complete, []
@@ -42,7 +45,7 @@ def probe_scope(spaces: list[FlagVariety], count: ProbeCount) -> str:
     """What a probe has compared, and the largest share of failing rows that is still compatible with it at 95 %."""
     where = spaces[0].name if len(spaces) == 1 else f"{len(spaces)} spaces with {level_name(spaces)}"
     sampled = f" ({count.sampled:,} rows with all nonzero cases and a sample of the zeros)" if count.sampled else ""
-    return (
-        f"{count.rows:,} rows drawn at random on {where}, {count.distinct:,} of them distinct, {count.cases:,} cases{sampled}; "
-        f"at 95 % at most {100 * count.bound:.2g} % of rows, weighted as they are drawn, can fail"
-    )
+    bound = "too few rows for a bound on the failures"
+    if count.rows >= _FEWEST_ROWS:
+        bound = f"taking the draws as independent, at 95 % at most {100 * count.bound:.2g} % of rows, weighted as they are drawn, can fail"
+    return f"{count.rows:,} rows drawn at random on {where}, {count.distinct:,} of them distinct, {count.cases:,} cases{sampled}; {bound}"
