@@ -221,7 +221,7 @@ def _signature(place: str, what: str, function: Rule, single: tuple[str, ...], w
         elif set(single) - set(names) == {"d"}:
             hint = "; for a rule without d declare ring='classical'"
         raise DeclarationError(
-            f"{place}: expected the arguments ({', '.join(single)}) or ({', '.join(whole)}), by these names, for {what}, "
+            f"{place}: expected the arguments ({', '.join(single)}) or ({', '.join(whole)}) for {what}, "
             f"got ({', '.join(names)}){hint}"
         )
     return names == whole

@@ -66,12 +66,16 @@ def test_probes():
     count = ProbeCount()
     for row in [Row(X, X.identity, X.point)] * 2 + [Row(X, X.point, X.point)]:
         count.add(row, 10, 1)
+    head = "3 rows drawn at random on Fl(4), 2 of them distinct, 30 cases; "
+    assert probe_scope([X], count) == head + "too few rows for a bound on the failures"
+    for _ in range(21):
+        count.add(Row(X, X.point, X.point), 10, 1)
     assert probe_scope([X], count) == (
-        "3 rows drawn at random on Fl(4), 2 of them distinct, 30 cases; "
-        "at 95 % at most 63 % of rows, weighted as they are drawn, can fail"
+        "24 rows drawn at random on Fl(4), 2 of them distinct, 240 cases; "
+        "taking the draws as independent, at 95 % at most 12 % of rows, weighted as they are drawn, can fail"
     )
     count.add(Row(X, X.point, X.identity), 5, 1, sampled=True)
     text = probe_scope([X, Gr(2, 4)], count)
     assert text.startswith(
-        "4 rows drawn at random on 2 spaces with n=4, 3 of them distinct, 35 cases (1 rows with all nonzero cases and"
+        "25 rows drawn at random on 2 spaces with n=4, 3 of them distinct, 245 cases (1 rows with all nonzero cases and"
     )
