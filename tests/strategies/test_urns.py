@@ -33,10 +33,10 @@ def test_balls_are_proportions(drawn, X):
 
 
 def test_every_length_is_seen(drawn):
-    """On ``Fl(6)`` the identity and the point, 2 classes of 720, are among 500 examples: each length has a ticket."""
+    """On ``Fl(6)`` the identity and the point, 2 classes of 720, are among 4,000 examples: each length has a ticket."""
     X = Fl(6)
     urn = urn_of(X.classes, [1] * len(X.classes))
-    assert {u.length for u in drawn(drawing(urn), 500)} == set(range(X.dim + 1))
+    assert {u.length for u in drawn(drawing(urn), 4000)} == set(range(X.dim + 1))
 
 
 @pytest.mark.parametrize("X", [Gr(2, 4), Fl(5), Fl(6)], ids=str)
