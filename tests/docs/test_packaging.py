@@ -22,9 +22,7 @@ def test_one_version():
 
 def test_every_package_is_listed():
     """The project file lists every package folder, so that the wheel holds them all."""
-    folders = {"conjcheck"} | {
-        f"conjcheck.{path.parent.name}" for path in (ROOT / "conjcheck").glob("*/__init__.py")
-    }
+    folders = {"conjcheck"} | {f"conjcheck.{path.parent.name}" for path in (ROOT / "conjcheck").glob("*/__init__.py")}
     assert set(PROJECT["tool"]["setuptools"]["packages"]) == folders
 
 
@@ -40,7 +38,9 @@ def test_public_names_exist_and_are_typed():
 
 def test_import_is_cheap():
     """``import conjcheck`` and its pytest plug-in load neither numpy nor hypothesis nor sympy."""
-    code = "import sys, conjcheck, conjcheck.pytest_plugin; print([m for m in ('numpy', 'hypothesis', 'sympy') if m in sys.modules])"
+    code = (
+        "import sys, conjcheck, conjcheck.pytest_plugin; print([m for m in ('numpy', 'hypothesis', 'sympy') if m in sys.modules])"
+    )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     assert done.stdout.strip() == "[]"
 
@@ -54,5 +54,6 @@ def test_top_level_holds_what_it_should():
     """Nothing but the agreed files and folders stands at the top level of the repository."""
     listed = subprocess.run(["git", "ls-files"], cwd=ROOT, capture_output=True, text=True, check=False).stdout.split("\n")
     top = {line.split("/")[0] for line in listed if line and not line.startswith(".")}
-    expected = {"README.md", "DEVELOPERS.md", "LICENSE", "CITATION.cff", "pyproject.toml", "conjcheck", "strategies", "tests", "conjectures"}
+    files = {"README.md", "DEVELOPERS.md", "LICENSE", "CITATION.cff", "pyproject.toml"}
+    expected = files | {"conjcheck", "strategies", "tests", "conjectures"}
     assert not top or top == expected
