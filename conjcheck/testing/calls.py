@@ -79,8 +79,9 @@ class RuleCalls:
         if premise is None or not self.conjecture.premise_by_rows or self._premise_hangs:
             return True
         try:
-            self.limit.started = perf_counter()
-            return bool(premise(row.X, row.u, row.v))
+            with nullcontext() if self.is_claim else watched(Watch()):
+                self.limit.started = perf_counter()
+                return bool(premise(row.X, row.u, row.v))
         except KeyboardInterrupt:
             raise
         except CallInterrupted:

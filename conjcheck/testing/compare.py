@@ -71,7 +71,12 @@ class Comparer(RuleCalls):
             deadline: stop at this ``perf_counter()`` time, between two calls.
             most_cases: for a rule that answers case by case, compare at most about this many: all nonzero constants, and a sample
                 of the zeros that is the same every time.
+
+        Raises:
+            OutOfReach: no engine serves this row.
         """
+        if not self.inside(row):  # the oracle is not asked in vain
+            return RowResult(0, 0, None, True)
         return self._compare(row, self.truth(row), deadline=deadline, most_cases=most_cases)
 
     def findings(self, row: Row, *, deadline: float = float("inf")) -> tuple[list[Finding], bool]:
@@ -79,6 +84,8 @@ class Comparer(RuleCalls):
 
         A failure of the whole row is a single finding.
         """
+        if not self.inside(row):
+            return [], True
         truth, found = self.truth(row), list[Finding]()
         skipped: set[Key] = set()
         while True:

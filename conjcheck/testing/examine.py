@@ -6,7 +6,7 @@ from itertools import islice
 from time import perf_counter
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.errors import DeclarationError, NotationError
+from conjcheck.errors import DeclarationError, NotationError, OutOfReach
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.compare import Comparer
@@ -189,8 +189,11 @@ class Examination:
         def check(row: Row, choice: int) -> None:
             if count.is_over(row):
                 return
-            with self.comparer.limit:
-                result = self.comparer.row(row, most_cases=self.effort.most_cases)
+            try:
+                with self.comparer.limit:
+                    result = self.comparer.row(row, most_cases=self.effort.most_cases)
+            except OutOfReach:
+                return
             if result.finding:
                 count.fail(result.finding)
             if result.cases:

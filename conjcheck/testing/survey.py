@@ -5,6 +5,7 @@ from dataclasses import dataclass, field
 from time import perf_counter
 
 from conjcheck.conjecture.declare import Conjecture
+from conjcheck.errors import OutOfReach
 from conjcheck.geometry.cartan import LARGEST_RANK
 from conjcheck.geometry.case import Row, rows
 from conjcheck.geometry.flag_variety import FlagVariety
@@ -175,7 +176,10 @@ def _space(comparer: Comparer, space: SpaceCoverage, deadline: float, stop_befor
                 continue
             if perf_counter() > deadline:
                 return None, True
-            result = comparer.row(row, deadline=deadline)
+            try:
+                result = comparer.row(row, deadline=deadline)
+            except OutOfReach:
+                return None, True  # as far as the oracle reaches in this space
             if result.finding:
                 return result, False
             if not result.complete:
