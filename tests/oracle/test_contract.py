@@ -429,6 +429,14 @@ def test_engines_agree_in_rank_5_and_7(name):
     assert_all_agree(X, pairs)
 
 
+@pytest.mark.slow
+@pytest.mark.parametrize("name", ["D6/P2", "D6/P3", "D6/P6"])
+def test_engines_agree_at_the_edge_of_the_recursion(name):
+    """Twenty products at random on D6, whose 23,040 classes of D6/B are the most that the recursion takes outside type A."""
+    X = FlagVariety(name)
+    assert assert_all_agree(X, random.Random(name).sample(unordered(X), 20)) == 20
+
+
 # All degrees at once: at random values of the q's, modulo primes
 
 

@@ -117,7 +117,10 @@ def test_the_group_of_this_file_is_the_weyl_group(name, order, positive):
     assert [group.length(w) for w in group.elements] == [u.length for u in X.classes]
 
 
-@pytest.mark.parametrize("name", TYPES)
+LARGER = [pytest.param(name, marks=pytest.mark.slow) for name in ("A5", "B4", "C4", "B5", "C5", "D5", "D6")]
+
+
+@pytest.mark.parametrize("name", [*TYPES, *LARGER])
 def test_every_class_has_a_relation_that_holds(name):
     """``sum of L * sigma_z = den * sigma_w + others``: every z is one letter shorter, w occurs just ``den`` times with d = 0, and the
     others are shorter than w, or have its length and a relation that never comes back to w.
