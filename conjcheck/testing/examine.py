@@ -51,7 +51,7 @@ class Effort:
 
 EFFORTS = {
     "quick": Effort(2.0, 0.5, 1.0, 1, 5.0, 5.0, 500, 800),
-    "normal": Effort(10.0, 1.0, 4.0, 1, 20.0, 40.0, 2_000, 5_040),
+    "normal": Effort(10.0, 1.0, 4.0, 1, 20.0, 60.0, 2_000, 5_040),
     "thorough": Effort(120.0, 10.0, 60.0, 50, 240.0, 120.0, 20_000, 40_320),
 }
 """The levels of effort by name."""
