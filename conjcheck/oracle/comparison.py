@@ -126,7 +126,7 @@ class RecursionEngine:
     name = "recursion"
 
     def refuses(self, X: FlagVariety) -> str | None:
-        """Where G/B has at most ``MOST_CLASSES`` classes: type A up to n = 8, the others up to rank 4, and B5, C5, D5."""
+        """Where G/B has at most ``MOST_CLASSES`` classes: type A up to n = 8, the others up to rank 4, B5, C5, D5, D6."""
         count = number_of_cosets(X.kind, tuple(range(1, X.rank + 1)))
         if count > MOST_CLASSES:
             return f"{X} needs the {count:,} classes of {X.kind}/B, the recursion stops at {MOST_CLASSES:,}"

@@ -52,6 +52,8 @@ def _power(shape: str, d: Degree) -> str:
 class Block:
     """All nonzero constants ``N_{u,v}^{w,d}`` with one u; row k of each array is one constant.
 
+    Blocks may share arrays: read them, do not write to them.
+
     Attributes:
         u: the class.
         v, w: ``(K,)``, 0-based indices into ``u.variety.classes``.
