@@ -141,7 +141,7 @@ def monomial(engine, X, *factors):
 def test_which_engines_are_asked():
     """Every value below is asked of the recursion and of localisation; on E6, E7, E8 and from B6 on only the latter reaches."""
     small = [*PRINTED, "C5/P5", "B5/P5", "D5/P5", "F4/P1", "G2/P2", "B3/B", "C3/B"]
-    assert asked(small) == [(engine, name) for name in small for engine in ("recursion", "localisation")]
+    assert sorted(asked(small)) == sorted((engine, name) for name in small for engine in ("recursion", "localisation"))
     assert {engine for engine, _ in asked(["A3/B"])} >= {"recursion", "localisation"}
     assert {engine for engine, _ in asked(["E6/P1", "E7/P7", "E8/P8", "B8/P8"])} >= {"localisation"}
 
