@@ -23,6 +23,7 @@ from conjcheck.oracle.guard import Watch, watched
 from conjcheck.pytest_state import STATE, seconds
 from conjcheck.report.text import text_report
 from conjcheck.testing.examine import EFFORTS, Examination
+from conjcheck.testing.finding import Finding
 from conjcheck.testing.limits import CallInterrupted, CallLimit
 from conjcheck.testing.outcome import Outcome, no_verdict, plain_value
 from conjcheck.testing.probe import Check, ProbeCount, gravest, level_name, probe_test
@@ -344,6 +345,9 @@ class PartItem(pytest.Function):
         """Run the Hypothesis test of this item."""
         started = perf_counter()
         self.draws = draws
+        if finding := self._failed_before(examination):
+            self.outcome = examination.work_out(finding, self.name, started)
+            return
         try:
             if draws.spaces:
                 super().runtest()
@@ -355,11 +359,28 @@ class PartItem(pytest.Function):
                 self._keep(draws)
                 return
             self.outcome = examination.work_out(found.finding, self.name, started, draws.count.broken_law)
+            if self.outcome.finding:
+                self._remember(str(self.outcome.finding.where))
             return
         self._keep(draws)
 
+    def _remember(self, where: str | None) -> None:
+        """Keep the place of a failure in pytest's cache: other draws may miss it, the next run (``--lf``, say) must not."""
+        if (cache := getattr(self.config, "cache", None)) is not None:
+            cache.set(f"conjcheck/{self.nodeid}", where)
+
+    def _failed_before(self, examination: Examination) -> Finding | None:
+        """What is wrong where this part failed in an earlier run, if anything still is."""
+        cache = getattr(self.config, "cache", None)
+        where = cache.get(f"conjcheck/{self.nodeid}", None) if cache is not None else None
+        try:
+            return examination.case(parse_place(where)).finding if isinstance(where, str) else None
+        except ConjcheckError:
+            return None  # the place is none of this conjecture's any more
+
     def _keep(self, draws: Draws) -> None:
         """Keep the outcome of a search that found nothing wrong."""
+        self._remember(None)
         self.outcome = draws.agrees()
         if self.outcome is None:
             pytest.skip("no row inside the premise was drawn: nothing compared")
