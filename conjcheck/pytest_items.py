@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import json
-import sys
 import traceback
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
@@ -15,6 +14,7 @@ import pytest
 from hypothesis import settings
 
 from conjcheck.conjecture.declare import Conjecture
+from conjcheck.conjecture.discover import prefer_helpers_of
 from conjcheck.errors import ConjcheckError, RecordError
 from conjcheck.evidence.record import Counterexample, Record, parse_place, read_record, write_record
 from conjcheck.geometry.case import Row
@@ -57,7 +57,7 @@ class PluginFile(pytest.Module):
 
     def _import_problem(self) -> str:
         """Import the file under a time limit; the text of what went wrong. Helpers beside the file can be imported by their name."""
-        _prefer_helpers_of(self.path.parent)
+        prefer_helpers_of(self.path.parent)
         watch = Watch(forbidding=False)
         with CallLimit(_IMPORT_LIMIT) as limit, watched(watch):
             limit.started = perf_counter()
@@ -74,17 +74,6 @@ class PluginFile(pytest.Module):
                 return "".join(lines).rstrip()
         self.asked_oracle = watch.asked
         return ""
-
-
-def _prefer_helpers_of(folder: Path) -> None:
-    """Let plug-ins import the files beside them, and not files of the same name beside other plug-ins."""
-    if str(folder) in sys.path:
-        sys.path.remove(str(folder))
-    sys.path.insert(0, str(folder))
-    for helper in folder.glob("*.py"):
-        loaded = sys.modules.get(helper.stem)
-        if loaded is not None and helper.name.startswith("_") and Path(loaded.__file__ or "") != helper:
-            del sys.modules[helper.stem]
 
 
 class BrokenFile(pytest.Item):

@@ -2,9 +2,10 @@
 
 import functools
 import inspect
-from collections.abc import Callable, Sequence
-from dataclasses import dataclass, replace
-from types import CodeType
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, field, replace
+from itertools import product
+from types import CodeType, MappingProxyType
 from typing import Any
 
 from conjcheck.errors import DeclarationError
@@ -33,6 +34,9 @@ class Conjecture:
         premise: the hypothesis, ``None`` for none; ``premise_by_rows`` tells which signature it has.
         statement: in LaTeX.
         references, contributors: for the report and for the citation.
+        features: the user's own features of cases, by their names in reports, for the diagnosis of failures.
+        variants: open choices of the rule: for each keyword argument its values, the first being the rule as it stands.
+        choice: the values chosen, one per keyword argument.
     """
 
     name: str
@@ -46,10 +50,32 @@ class Conjecture:
     statement: str
     references: tuple[str, ...]
     contributors: tuple[str, ...]
+    features: Mapping[str, Rule] = field(default_factory=dict)
+    variants: Mapping[str, tuple[Any, ...]] = field(default_factory=dict)
+    choice: Mapping[str, Any] = field(default_factory=dict)
 
     def __call__(self, *args: Any, **kwargs: Any) -> Any:
         """The rule itself."""
         return self.rule(*args, **kwargs)
+
+    def variant(self, **choice: Any) -> "Conjecture":
+        """The same conjecture with some of its open choices made otherwise.
+
+        Raises:
+            DeclarationError: an argument that is no open choice, or a value that is not among its values.
+        """
+        for name, value in choice.items():
+            if name not in self.variants or value not in self.variants[name]:
+                offered = ", ".join(f"{key}={values!r}" for key, values in self.variants.items()) or "no open choices"
+                raise DeclarationError(f"expected a choice among those of {self.name} ({offered}), got {name}={value!r}")
+        chosen = {**self.choice, **choice}
+        rule = functools.wraps(self.rule)(functools.partial(inspect.unwrap(self.rule), **chosen))
+        return _with_page(replace(self, rule=rule, choice=MappingProxyType(chosen)))
+
+    def all_variants(self) -> Iterator["Conjecture"]:
+        """Every combination of the open choices, in the order of the declaration, the rule as it stands first."""
+        for values in product(*self.variants.values()):
+            yield self.variant(**dict(zip(self.variants, values, strict=True)))
 
     @property
     def file(self) -> str:
@@ -88,6 +114,8 @@ def candidate(
     references: Sequence[str] = (),
     contributors: Sequence[str] = (),
     ring: str = "quantum",
+    features: Mapping[str, Rule] | None = None,
+    variants: Mapping[str, Sequence[Any]] | None = None,
 ) -> Callable[[Rule], Conjecture]:
     """Declare a candidate formula for the structure constants ``N_{u,v}^{w,d}``.
 
@@ -108,6 +136,10 @@ def candidate(
         contributors: who proposes it.
         ring: ``"quantum"``, ``"classical"``, ``"equivariant quantum"`` or ``"equivariant"``. In the equivariant rings a value is a
             polynomial in the simple roots: one made from ``simple_roots(X)``, an ``int``, or a sympy expression in ``alpha1, ...``.
+        features: your own features of cases, ``{"in words": function of (X, u, v, w, d)}``, each giving a ``bool``, an ``int`` or a
+            ``str``: what the diagnosis of failures looks at besides its own.
+        variants: open choices, ``{"argument": (values, ...)}``: the function takes them as keyword-only arguments. pytest examines the
+            rule with the first values; ``conjcheck sift`` compares all combinations.
 
     Raises:
         DeclarationError: the message names file, line, argument and remedy.
@@ -116,7 +148,9 @@ def candidate(
         raise DeclarationError(
             f"expected @candidate(on=...) with named arguments, got {misplaced[0]!r}; write @candidate(on=Grassmannians())"
         )
-    return functools.partial(_declare, "candidate", on, premise, statement, references, contributors, ring)
+    return functools.partial(
+        _declare, "candidate", on, premise, statement, references, contributors, ring, features or {}, variants or {}
+    )
 
 
 def claim(
@@ -127,6 +161,7 @@ def claim(
     references: Sequence[str] = (),
     contributors: Sequence[str] = (),
     ring: str = "quantum",
+    features: Mapping[str, Rule] | None = None,
 ) -> Callable[[Rule], Conjecture]:
     """Declare a statement about constants, with the oracle at hand.
 
@@ -142,7 +177,7 @@ def claim(
         raise DeclarationError(
             f"expected @claim(on=...) with named arguments, got {misplaced[0]!r}; write @claim(on=Grassmannians())"
         )
-    return functools.partial(_declare, "claim", on, premise, statement, references, contributors, ring)
+    return functools.partial(_declare, "claim", on, premise, statement, references, contributors, ring, features or {}, {})
 
 
 def _declare(
@@ -153,6 +188,8 @@ def _declare(
     references: Sequence[str],
     contributors: Sequence[str],
     ring: str,
+    features: Mapping[str, Rule],
+    variants: Mapping[str, Sequence[Any]],
     rule: Rule,
 ) -> Conjecture:
     """Validate and build."""
@@ -171,10 +208,12 @@ def _declare(
             raise DeclarationError(f"{place}: expected a list of strings for {name}, got {name}={value!r}; write {name}=[...]")
     if inspect.isgeneratorfunction(premise) or (premise is not None and not callable(premise)):
         raise DeclarationError(f"{place}: expected a function that returns a bool for premise, got premise={premise!r}")
+    _check_features(place, features)
+    _check_variants(place, rule, variants)
     tail = () if ring in ("classical", "equivariant") else ("d",)
     whole, single = ("X", "u", "v"), ("X", "u", "v", "w", *tail)
     oracle = ("N",) if role == "claim" else ()
-    by_rows = _signature(place, "the rule", rule, (*single, *oracle), (*whole, *oracle))
+    by_rows = _signature(place, "the rule", rule, (*single, *oracle), (*whole, *oracle), tuple(variants))
     premise_by_rows = premise is None or _signature(place, "the premise", premise, single, whole)
     if role == "claim" and ring.startswith("equivariant"):
         raise DeclarationError(f"{place}: expected ring='quantum' or 'classical' for a claim, got ring={ring!r}")
@@ -182,7 +221,7 @@ def _declare(
         raise DeclarationError(
             f"{place}: expected a premise on rows, with the arguments ({', '.join(whole)}), since the claim is about rows, got one on cases"
         )
-    return _with_page(
+    made = _with_page(
         Conjecture(
             rule.__name__,
             rule,
@@ -195,8 +234,28 @@ def _declare(
             statement,
             tuple(references),
             tuple(contributors),
+            MappingProxyType(dict(features)),
+            MappingProxyType({name: tuple(values) for name, values in variants.items()}),
         )
     )
+    return next(made.all_variants()) if variants else made
+
+
+def _check_features(place: str, features: Mapping[str, Rule]) -> None:
+    if not isinstance(features, Mapping) or not all(isinstance(name, str) and callable(f) for name, f in features.items()):
+        raise DeclarationError(f'{place}: expected features={{"in words": function of (X, u, v, w, d)}}, got features={features!r}')
+
+
+def _check_variants(place: str, rule: Rule, variants: Mapping[str, Sequence[Any]]) -> None:
+    """Every open choice is a keyword-only argument of the rule, with at least one value."""
+    if not isinstance(variants, Mapping) or not all(isinstance(values, (list, tuple)) and values for values in variants.values()):
+        raise DeclarationError(f'{place}: expected variants={{"argument": (values, ...)}}, got variants={variants!r}')
+    missing = [n for n in variants if n not in (p := inspect.signature(rule).parameters) or p[n].kind is not p[n].KEYWORD_ONLY]
+    if missing:
+        raise DeclarationError(
+            f"{place}: expected a keyword-only argument for each of the variants, got none for {', '.join(map(str, missing))}; "
+            f"write def {rule.__name__}(..., *, {', '.join(map(str, missing))})"
+        )
 
 
 def _with_page(made: Conjecture) -> Conjecture:
@@ -205,7 +264,9 @@ def _with_page(made: Conjecture) -> Conjecture:
     return made
 
 
-def _signature(place: str, what: str, function: Rule, single: tuple[str, ...], whole: tuple[str, ...]) -> bool:
+def _signature(
+    place: str, what: str, function: Rule, single: tuple[str, ...], whole: tuple[str, ...], choices: tuple[str, ...] = ()
+) -> bool:
     """Whether the function has the row signature; an error unless it has one of the two."""
     try:
         parameters = inspect.signature(function).parameters
@@ -213,7 +274,7 @@ def _signature(place: str, what: str, function: Rule, single: tuple[str, ...], w
         raise DeclarationError(
             f"{place}: expected a Python function for {what}, got {function!r}; write a def or a lambda"
         ) from None
-    names = tuple(f"*{name}" if p.kind in _ODD_KINDS else name for name, p in parameters.items())
+    names = tuple(f"*{name}" if p.kind in _ODD_KINDS else name for name, p in parameters.items() if name not in choices)
     if names not in (single, whole):
         hint = ""
         if set(names) - set(single) == {"d"}:

@@ -1,14 +1,15 @@
-"""Where conjectures are found: in a module that was imported, and in installed packages that offer some."""
+"""Where conjectures are found: in a module that was imported, in a file, and in installed packages that offer some."""
 
+import sys
 from importlib.metadata import EntryPoint, entry_points
-from importlib.util import find_spec
+from importlib.util import find_spec, module_from_spec, spec_from_file_location
 from pathlib import Path
 from types import ModuleType
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import DeclarationError
 
-__all__ = ["GROUP", "conjectures_in", "installed_files"]
+__all__ = ["GROUP", "conjectures_in", "conjectures_in_file", "installed_files", "prefer_helpers_of"]
 
 GROUP = "conjcheck.conjectures"
 """The entry-point group: ``[project.entry-points."conjcheck.conjectures"]`` with ``any_name = "package.module"``."""
@@ -18,6 +19,49 @@ def conjectures_in(module: ModuleType) -> list[Conjecture]:
     """The conjectures written in a module, in the order of the file; those it imported from elsewhere are not its own."""
     own = [value for value in vars(module).values() if isinstance(value, Conjecture) and value.rule.__module__ == module.__name__]
     return sorted(set(own), key=lambda conjecture: conjecture.line)
+
+
+def conjectures_in_file(path: Path) -> list[Conjecture]:
+    """The conjectures written in a file, imported anew, in the order of the file; helpers beside it can be imported by their name.
+
+    Raises:
+        DeclarationError: no such file, a file that cannot be imported, or one without a conjecture.
+    """
+    if not path.is_file() or path.suffix != ".py":
+        raise DeclarationError(f"expected a plug-in file such as conjectures/my_rule.py, got {path}")
+    prefer_helpers_of(path.parent.resolve())
+    name = f"conjcheck_file_{path.stem}"  # a name that hides no other module
+    spec = spec_from_file_location(name, path.resolve())
+    assert spec is not None, "a .py file has a spec"
+    assert spec.loader is not None, "and a loader"
+    module = sys.modules[name] = module_from_spec(spec)
+    try:
+        spec.loader.exec_module(module)
+    except (Exception, SystemExit) as error:
+        del sys.modules[name]
+        raise DeclarationError(f"{path}: cannot be imported: {type(error).__name__}: {error}") from error
+    found = [conjecture.called(_name_in(module, conjecture)) for conjecture in conjectures_in(module)]
+    if not found:
+        raise DeclarationError(f"{path}: expected at least one @candidate or @claim, got none; decorate a function")
+    return found
+
+
+def _name_in(module: ModuleType, conjecture: Conjecture) -> str:
+    """The name of the variable that holds a conjecture: its own, if that holds it."""
+    if getattr(module, conjecture.name, None) is conjecture:
+        return conjecture.name
+    return next((name for name, value in vars(module).items() if value is conjecture), conjecture.name)
+
+
+def prefer_helpers_of(folder: Path) -> None:
+    """Let plug-ins import the files beside them, and not files of the same name beside other plug-ins."""
+    if str(folder) in sys.path:
+        sys.path.remove(str(folder))
+    sys.path.insert(0, str(folder))
+    for helper in folder.glob("*.py"):
+        loaded = sys.modules.get(helper.stem)
+        if loaded is not None and helper.name.startswith("_") and Path(loaded.__file__ or "") != helper:
+            del sys.modules[helper.stem]
 
 
 def installed_files() -> list[Path]:

@@ -1,9 +1,7 @@
-"""The command ``conjcheck``: what is not a test run. Light to import: what computes is imported when it is needed."""
+"""``conjcheck audit``: the oracle held against itself on spaces that the user names."""
 
 from __future__ import annotations
 
-import json
-import os
 import sys
 from contextlib import contextmanager
 from typing import TYPE_CHECKING, Any
@@ -11,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from conjcheck import __version__
-from conjcheck.errors import NotationError, OutOfReach
+from conjcheck.cli.common import Stop, echo_json, spaces_named
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
@@ -20,7 +18,7 @@ if TYPE_CHECKING:
     from conjcheck.oracle.audit import Result
     from conjcheck.oracle.check import Difference
 
-__all__ = ["main"]
+__all__ = ["command"]
 
 _MOST_CLASSES = 100
 _COLOURS = {"agree": "green", "differ": "red", "not run": "yellow"}
@@ -30,25 +28,7 @@ _REMEDY = (
 )
 
 
-class _OutOfReach(click.ClickException):
-    """Status 2, as for wrong usage: 1 is kept for a difference."""
-
-    exit_code = 2
-
-
-@click.group(context_settings={"help_option_names": ["-h", "--help"]})
-@click.version_option(__version__, prog_name="conjcheck")
-@click.pass_context
-def main(context: click.Context) -> None:
-    """Tools around the oracle for quantum Schubert calculus.
-
-    Conjectures are examined by pytest (pytest conjectures/my_rule.py); this command holds what is not a test run.
-    """
-    if os.environ.get("NO_COLOR"):
-        context.color = False
-
-
-@main.command()
+@click.command("audit")
 @click.argument("spaces", nargs=-1, metavar="[SPACE]...")
 @click.option("--rank", type=click.IntRange(1, 8), metavar="N", help="Also all G/P of types A to G of rank at most N (1 to 8).")
 @click.option(
@@ -70,7 +50,7 @@ def main(context: click.Context) -> None:
 )
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON document instead of the table.")
 @click.pass_context
-def audit(
+def command(
     context: click.Context,
     spaces: tuple[str, ...],
     rank: int | None,
@@ -120,7 +100,7 @@ def audit(
         interrupted = True
     differ = any(result.smallest for result in results)
     if as_json:
-        click.echo(json.dumps(_document(results, seconds, seed, interrupted=interrupted), indent=2))
+        echo_json(_document(results, seconds, seed, interrupted=interrupted))
     else:
         for line in _report(results, seconds, seed, interrupted=interrupted):
             click.echo(line, color=context.color)
@@ -136,17 +116,10 @@ def _spaces(names: tuple[str, ...], rank: int | None, most_classes: int | None) 
             f"expected --rank together with --most-classes, got --most-classes {most_classes} alone; add --rank N"
         )
     from conjcheck.geometry.families import HomogeneousSpaces
-    from conjcheck.geometry.flag_variety import MOST_CLASSES, FlagVariety
+    from conjcheck.geometry.flag_variety import MOST_CLASSES
     from conjcheck.oracle import ENGINES, engines_for
 
-    chosen: dict[FlagVariety, None] = {}
-    for name in names:
-        try:
-            chosen[FlagVariety(name)] = None
-        except NotationError as error:
-            raise click.UsageError(str(error)) from error
-        except OutOfReach as error:
-            raise _OutOfReach(str(error)) from error
+    chosen = dict.fromkeys(spaces_named(names))
     named = set(chosen)
     if rank is not None:
         most = min(most_classes or _MOST_CLASSES, MOST_CLASSES)
@@ -155,7 +128,7 @@ def _spaces(names: tuple[str, ...], rank: int | None, most_classes: int | None) 
         if not engines_for(X):
             reasons = "; ".join(f"{engine.name}: {engine.refuses(X)}" for engine in ENGINES.values())
             remedy = "leave it out" if X in named else "lower --most-classes"
-            raise _OutOfReach(f"expected spaces in reach of some engine, got {X} ({reasons}); {remedy}")
+            raise Stop(f"expected spaces in reach of some engine, got {X} ({reasons}); {remedy}")
     return list(chosen)
 
 

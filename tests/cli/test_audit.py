@@ -12,8 +12,8 @@ import pytest
 from click.testing import CliRunner
 
 from conjcheck import Case, Gr
-from conjcheck.cli import audit as command
 from conjcheck.cli import main
+from conjcheck.cli.audit import command
 from conjcheck.geometry.symmetries import orbit_of_case
 from conjcheck.oracle import audit as room
 from conjcheck.oracle import engines_for

@@ -1,0 +1,75 @@
+"""What the commands share: exit statuses, spaces and conjectures named on the command line, JSON."""
+
+from __future__ import annotations
+
+import json
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from conjcheck.errors import ConjcheckError, DeclarationError, NotationError, OutOfReach
+
+if TYPE_CHECKING:
+    from collections.abc import Iterable
+
+    from conjcheck.conjecture.declare import Conjecture
+    from conjcheck.geometry.flag_variety import FlagVariety
+
+__all__ = ["FAILED", "USAGE", "Stop", "conjecture_named", "echo_json", "space_named", "spaces_named"]
+
+FAILED = 1
+"""Exit status: everything ran, and something is not as hoped: refuted, a difference, a certificate that is rejected."""
+
+USAGE = 2
+"""Exit status: wrong usage, a file that cannot be used, a space out of reach: nothing was found out."""
+
+
+class Stop(click.ClickException):
+    """Ends a command with status 2 and a message that says what was expected, what came, and what to do."""
+
+    exit_code = USAGE
+
+
+def space_named(name: str) -> FlagVariety:
+    """The flag variety of a name on the command line."""
+    from conjcheck.geometry.flag_variety import FlagVariety
+
+    try:
+        return FlagVariety(name)
+    except NotationError as error:
+        raise click.UsageError(str(error)) from error
+    except OutOfReach as error:
+        raise Stop(str(error)) from error
+
+
+def spaces_named(names: Iterable[str]) -> list[FlagVariety]:
+    """The flag varieties of several names, each once, in the order given."""
+    return list(dict.fromkeys(space_named(name) for name in names))
+
+
+def conjecture_named(target: str) -> Conjecture:
+    """The conjecture at ``FILE``, or ``FILE::NAME`` where a file holds several."""
+    from conjcheck.conjecture.discover import conjectures_in_file
+
+    file, _, name = target.partition("::")
+    try:
+        found = conjectures_in_file(Path(file))
+    except (DeclarationError, ConjcheckError) as error:
+        raise Stop(str(error)) from error
+    if name:
+        named = [conjecture for conjecture in found if conjecture.name == name]
+        if not named:
+            raise Stop(f"expected one of {', '.join(c.name for c in found)} in {file}, got {name!r}")
+        return named[0]
+    if len(found) != 1:
+        raise Stop(
+            f"expected one conjecture in {file}, got {len(found)}: {', '.join(c.name for c in found)}; "
+            f"choose one: {file}::{found[0].name}"
+        )
+    return found[0]
+
+
+def echo_json(document: Any) -> None:
+    """One JSON document on standard output."""
+    click.echo(json.dumps(document, indent=2, ensure_ascii=False))
