@@ -6,7 +6,6 @@ import json
 import traceback
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
-from pathlib import Path
 from time import perf_counter
 from typing import Any
 
