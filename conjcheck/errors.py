@@ -5,6 +5,7 @@ __all__ = [
     "DeclarationError",
     "DifferentVarieties",
     "EnginesDisagree",
+    "LedgerError",
     "NotIndependent",
     "NotationError",
     "OutOfReach",
@@ -47,3 +48,7 @@ class NotIndependent(ConjcheckError, RuntimeError):
 
 class RecordError(ConjcheckError, ValueError):
     """A record file that cannot be read, or says something it cannot know."""
+
+
+class LedgerError(ConjcheckError, ValueError):
+    """A ledger file that is foreign, damaged or from a later version; it is left untouched."""

@@ -258,10 +258,22 @@ def count_below(
     return smaller
 
 
-def rows(X: FlagVariety) -> Iterator[Row]:
-    """All rows of a variety in order."""
+def rows(X: FlagVariety, first: int = 0, last: int | None = None) -> Iterator[Row]:
+    """The rows of a variety in order, all of them or those at the 0-based places ``first <= k < last``.
+
+    Places before ``first`` are skipped block by block, not one by one.
+
+    >>> [str(row) for row in rows(FlagVariety("Gr(1,3)"), 2, 4)]
+    ['Gr(1,3): (1) * ()', 'Gr(1,3): () * (2)']
+    """
+    end = X.number_of_classes**2 if last is None else last
+    place = 0
     for total in range(2 * X.dim + 1):
         for length in range(max(0, total - X.dim), min(total, X.dim) + 1):
-            for u in X.of_length(length):
-                for v in X.of_length(total - length):
-                    yield Row(X, u, v)
+            left, right = X.of_length(length), X.of_length(total - length)
+            size = len(left) * len(right)
+            for k in range(max(first - place, 0), min(end - place, size)):
+                yield Row(X, left[k // len(right)], right[k % len(right)])
+            place += size
+            if place >= end:
+                return

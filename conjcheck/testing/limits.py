@@ -9,6 +9,7 @@ import ctypes
 import signal
 import threading
 import time
+from collections.abc import Callable
 from types import FrameType, TracebackType
 
 __all__ = ["CallInterrupted", "CallLimit"]
@@ -25,12 +26,14 @@ class CallLimit:
 
     Args:
         seconds: how long one call may take.
+        on_tick: called a few times a second by the alarm, only while no call is inside C code (with the signal, not with the thread).
     """
 
-    __slots__ = ("_before", "_depth", "_done", "_target", "_thread", "seconds", "started")
+    __slots__ = ("_before", "_depth", "_done", "_target", "_thread", "on_tick", "seconds", "started")
 
-    def __init__(self, seconds: float) -> None:
+    def __init__(self, seconds: float, on_tick: Callable[[], None] | None = None) -> None:
         self.seconds = seconds
+        self.on_tick = on_tick
         self.started = 0.0
         self._depth = 0
 
@@ -68,6 +71,8 @@ class CallLimit:
         return bool(self.started) and time.perf_counter() - self.started > self.seconds
 
     def _alarm(self, signum: int, frame: FrameType | None) -> None:
+        if self.on_tick is not None:
+            self.on_tick()
         if self._expired():
             raise CallInterrupted
 

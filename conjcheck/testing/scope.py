@@ -9,18 +9,23 @@ __all__ = ["probe_scope", "survey_scope", "survey_spaces"]
 
 
 _FEWEST_ROWS = 20
+_MOST_NAMED = 12
 
 
 def survey_spaces(coverage: Coverage) -> str:
     """The spaces a survey has compared: the complete ones, and how far into the last."""
     spaces, parts = coverage.complete, []
-    if len(spaces) == 1:
+    if coverage.named and len(spaces) > 1:
+        names = [str(space.X) for space in spaces]
+        if len(names) > _MOST_NAMED:
+            names[_MOST_NAMED // 2 : -1] = [f"... ({len(names)} spaces)"]
+        parts.append(f"all of {', '.join(names)}")
+    elif len(spaces) == 1:
         parts.append(f"all of {spaces[0].X}")
     elif spaces:
         parts.append(f"all {len(spaces)} spaces from {spaces[0].X} to {spaces[-1].X}")
-    if len(coverage.spaces) > len(spaces):
-        last = coverage.spaces[-1]
-        if last.rows_seen:
+    for last in coverage.spaces:
+        if last.rows_seen and not last.complete:
             parts.append(f"the first {last.rows_seen:,} of {len(last.X.classes) ** 2:,} rows of {last.X}")
     return " and ".join(parts)
 

@@ -3,6 +3,7 @@
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 from time import perf_counter
+from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import OutOfReach
@@ -37,6 +38,18 @@ class SpaceCoverage:
     complete: bool = False
     seconds: float = 0.0
 
+    def as_json(self) -> dict[str, Any]:
+        """The same in JSON types; ``of`` is the number of rows of the space."""
+        return {
+            "space": self.X.name,
+            "seen": self.rows_seen,
+            "of": self.X.number_of_classes**2,
+            "rows": self.rows,
+            "cases": self.cases,
+            "nonzero": self.nonzero,
+            "complete": self.complete,
+        }
+
 
 @dataclass(slots=True)
 class Coverage:
@@ -47,12 +60,14 @@ class Coverage:
         skipped: spaces of the family that came before the end but are out of reach of every engine.
         whole_family: whether a finite family was compared completely.
         budget: the seconds it was given.
+        named: whether the spaces were named by the user, so that others may be missing between them.
     """
 
     spaces: list[SpaceCoverage] = field(default_factory=list)
     skipped: list[FlagVariety] = field(default_factory=list)
     whole_family: bool = False
     budget: float = 0.0
+    named: bool = False
 
     @property
     def rows(self) -> int:
@@ -166,14 +181,10 @@ def survey(
 def _space(comparer: Comparer, space: SpaceCoverage, deadline: float, stop_before: Row | None) -> tuple[RowResult | None, bool]:
     """Compare one space from where its coverage ends: (the row with a finding, whether the time ran out)."""
     started = perf_counter()
-    seen = 0
     try:
-        for row in rows(space.X):
+        for row in rows(space.X, space.rows_seen):
             if stop_before is not None and not row < stop_before:
                 return None, False
-            seen += 1
-            if seen <= space.rows_seen:
-                continue
             if perf_counter() > deadline:
                 return None, True
             try:
@@ -184,7 +195,7 @@ def _space(comparer: Comparer, space: SpaceCoverage, deadline: float, stop_befor
                 return result, False
             if not result.complete:
                 return None, True
-            space.rows_seen = seen
+            space.rows_seen += 1
             space.rows += result.cases > 0
             space.cases += result.cases
             space.nonzero += result.nonzero
