@@ -43,6 +43,8 @@ if TYPE_CHECKING:
     from conjcheck.oracle import product as product
     from conjcheck.oracle import table as table
     from conjcheck.testing.examine import examine as examine
+    from conjcheck.testing.sift import sift as sift
+    from conjcheck.testing.verdict import survey as survey
 
 _ROOMS = {
     "Adjoint": "geometry.families",
@@ -77,7 +79,9 @@ _ROOMS = {
     "constant": "oracle",
     "examine": "testing.examine",
     "product": "oracle",
+    "sift": "testing.sift",
     "simple_roots": "geometry.polynomial",
+    "survey": "testing.verdict",
     "table": "oracle",
 }
 

@@ -15,17 +15,21 @@ from hypothesis import settings
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.conjecture.discover import prefer_helpers_of
 from conjcheck.errors import ConjcheckError, RecordError
-from conjcheck.evidence.record import Counterexample, Record, parse_place, read_record, write_record
+from conjcheck.evidence.record import Record, current_record, parse_place, read_record, stale_words, write_record
+from conjcheck.evidence.source import rule_hash
 from conjcheck.geometry.case import Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.oracle.guard import Watch, watched
 from conjcheck.pytest_state import STATE, seconds
-from conjcheck.report.text import text_report
+from conjcheck.report.text import replay_line, text_report
+from conjcheck.testing.answer import plain_value
+from conjcheck.testing.covered import covered
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.limits import CallInterrupted, CallLimit
-from conjcheck.testing.outcome import Outcome, no_verdict, plain_value
+from conjcheck.testing.outcome import Outcome, no_verdict
 from conjcheck.testing.probe import Check, ProbeCount, gravest, level_name, probe_test
+from conjcheck.testing.recording import counterexample
 
 __all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
 
@@ -84,6 +88,7 @@ class BrokenFile(pytest.Item):
 
     def runtest(self) -> None:
         """Fail."""
+        self.user_properties.append(("conjcheck broken", json.dumps({"file": str(self.path), "problem": self.problem})))
         last = self.problem.rstrip().splitlines()[-1].strip()
         what = {"import": "cannot be imported", "record": "record cannot be used"}.get(self.name, "family cannot be listed")
         raise Verdict(f"{what}: {self.path.name}: {last}\n\n{self.problem}")
@@ -307,7 +312,8 @@ class PartItem(pytest.Function):
         if self._make_draws is not None:
             outcome = replace(outcome, seed=str(self.config.stash[STATE]["seed"]))
         expected = self.expected is not None and outcome.status == "refuted" and self.expected.status == "refuted"
-        if expected and self.name == "survey":
+        recording = bool(self.config.getoption("--conjcheck-record"))
+        if expected and self.name == "survey" and not recording:
             _hold_to_minimal(self.expected, outcome)
         if expected:
             outcome = replace(outcome, note="on record as refuted: this is the expected verdict")
@@ -319,12 +325,16 @@ class PartItem(pytest.Function):
                 "the file asked the oracle while it was imported: the verdict is no more independent than the use made of that"
             )
             outcome = replace(outcome, note=f"{outcome.note}; {warning}" if outcome.note else warning)
+        if self.name == "survey" and not recording and (stale := self._stale()):
+            outcome = replace(outcome, note=f"{outcome.note}; {stale}" if outcome.note else stale)
         self.outcome = outcome
-        self.user_properties.append(("conjcheck", json.dumps(outcome.as_json())))
-        text = text_report(outcome, replay=f"pytest '{self.node.nodeid}'")
+        replay = f"pytest '{self.node.nodeid}'"
+        whole = replay_line(replay, outcome.finding) if outcome.finding else replay
+        self.user_properties.append(("conjcheck", json.dumps(outcome.as_json() | {"replay": whole})))
+        text = text_report(outcome, replay=replay)
         if outcome.status == "agrees" or expected:
             self.add_report_section("call", "conjcheck", text)
-        if outcome.minimum and outcome.status == "refuted" and self.config.getoption("--conjcheck-record"):
+        if recording and (self.name == "survey" or outcome.minimum) and outcome.status in ("agrees", "refuted"):
             self._record(outcome)
         if outcome.status != "agrees" and not expected:
             raise Verdict(text)
@@ -374,11 +384,20 @@ class PartItem(pytest.Function):
             pytest.skip("no row inside the premise was drawn: nothing compared")
 
     def _record(self, outcome: Outcome) -> None:
-        finding, conjecture = outcome.finding, self.node.conjecture
-        assert finding is not None, "a refutation has a finding"
-        minimal = outcome.minimum is not None and outcome.minimum.certified
-        new = Counterexample(finding.where, plain_value(finding.rule), plain_value(finding.oracle), minimal)
-        write_record(conjecture, read_record(conjecture).with_counterexample(new))
+        """Put on record how far the survey got, and the counterexample if there is one."""
+        finding, examination = outcome.finding, self.node.examination
+        entries = covered(examination.coverage, examination.conjecture, cross_check=examination.cross_check)
+        record = current_record(examination.conjecture).with_coverage(entries)
+        if finding is not None:
+            minimal = outcome.minimum is not None and outcome.minimum.certified
+            found = counterexample(finding, examination.conjecture, minimal=minimal, confirmed_by=outcome.confirmed_by)
+            record = record.with_counterexample(found)
+        write_record(examination.conjecture, record)
+
+    def _stale(self) -> str:
+        """What on record was computed for another version of the rule."""
+        conjecture = self.node.conjecture
+        return stale_words(read_record(conjecture), rule_hash(conjecture.file))
 
     def repr_failure(self, excinfo: pytest.ExceptionInfo[BaseException], style: Any = None) -> Any:
         """A verdict is its own report; anything else is shown as usual."""

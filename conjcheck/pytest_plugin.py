@@ -45,6 +45,7 @@ def pytest_addoption(parser: pytest.Parser) -> None:
     group.addoption("--conjcheck-case", metavar="CASE", help="compare only this case (or row), written as in a report")
     group.addoption("--conjcheck-cross-check", action="store_true", help="compute every product of the oracle in two ways")
     group.addoption("--conjcheck-record", action="store_true", help="write refutations to records/<name>.json beside the plug-in")
+    group.addoption("--conjcheck-report", metavar="DIR", help="write a page (HTML) per conjecture to this folder, and an index")
     group.addoption("--conjcheck-installed", action="store_true", help="also collect the conjectures offered by installed packages")
     parser.addini(
         _FOLDERS, "folders whose .py files are plug-ins, relative to the root directory", type="args", default=["conjectures"]
@@ -68,6 +69,13 @@ def pytest_configure(config: pytest.Config) -> None:
         raise pytest.UsageError(f"expected conjcheck_effort to be one of {', '.join(EFFORTS)}, got {effort!r}")
     for key in ("conjcheck_budget", "conjcheck_call_limit"):
         seconds(config, key)
+    if (folder := config.getoption("--conjcheck-report")) and not worker:
+        try:
+            (config.invocation_params.dir / folder).mkdir(parents=True, exist_ok=True)
+        except OSError as error:
+            raise pytest.UsageError(
+                f"expected a folder that can be written for --conjcheck-report, got {folder!r}: {error}"
+            ) from None
     if config.getoption("--conjcheck-installed"):
         from conjcheck.conjecture.discover import installed_files
         from conjcheck.errors import DeclarationError
@@ -152,6 +160,8 @@ def pytest_runtest_logreport(report: pytest.TestReport) -> None:
         for key, value in report.user_properties:
             if key == "conjcheck":
                 _config.stash[LINES].append(json.loads(str(value)))
+            elif key == "conjcheck broken":
+                _config.stash[STATE].setdefault("broken", []).append(json.loads(str(value)))
 
 
 _config: pytest.Config | None = None
@@ -161,6 +171,23 @@ def pytest_sessionstart(session: pytest.Session) -> None:
     """Remember whose session this is: ``pytest_runtest_logreport`` is not told."""
     global _config  # noqa: PLW0603
     _config = session.config
+
+
+def pytest_sessionfinish(session: pytest.Session) -> None:
+    """Write the pages that were asked for; under xdist only the controller does, which has all outcomes."""
+    config = session.config
+    folder, lines, broken = config.getoption("--conjcheck-report"), config.stash[LINES], config.stash[STATE].get("broken", [])
+    if not folder or not (lines or broken) or hasattr(config, "workerinput"):
+        return
+    from conjcheck.report.board import write_run
+
+    try:
+        write_run(config.invocation_params.dir / folder, lines, broken)
+    except OSError as error:
+        config.stash[STATE]["pages"] = f"the pages could not be written: {error}"
+        session.exitstatus = session.exitstatus or pytest.ExitCode.INTERNAL_ERROR
+    else:
+        config.stash[STATE]["pages"] = f"pages: {folder}/index.html"
 
 
 def pytest_terminal_summary(terminalreporter: Any, config: pytest.Config) -> None:
@@ -173,6 +200,8 @@ def pytest_terminal_summary(terminalreporter: Any, config: pytest.Config) -> Non
     terminalreporter.section("conjectures")
     for line in summary_table(lines):
         terminalreporter.write_line(line)
+    if pages := config.stash[STATE].get("pages"):
+        terminalreporter.write_line(pages)
     texts = [text for report in terminalreporter.stats.get("passed", []) for title, text in report.sections if "conjcheck" in title]
     refuted = [text for text in texts if text.startswith("refuted: ")]
     if config.getoption("--conjcheck-case"):

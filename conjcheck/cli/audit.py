@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from conjcheck import __version__
-from conjcheck.cli.common import Stop, echo_json, spaces_named
+from conjcheck.cli.common import Stop, complete_space, echo_json, spaces_named
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
@@ -29,7 +29,7 @@ _REMEDY = (
 
 
 @click.command("audit")
-@click.argument("spaces", nargs=-1, metavar="[SPACE]...")
+@click.argument("spaces", nargs=-1, metavar="[SPACE]...", shell_complete=complete_space)
 @click.option("--rank", type=click.IntRange(1, 8), metavar="N", help="Also all G/P of types A to G of rank at most N (1 to 8).")
 @click.option(
     "--most-classes",

@@ -7,6 +7,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import click
+from click.shell_completion import CompletionItem
 
 from conjcheck.errors import ConjcheckError, DeclarationError, NotationError, OutOfReach
 
@@ -16,7 +17,18 @@ if TYPE_CHECKING:
     from conjcheck.conjecture.declare import Conjecture
     from conjcheck.geometry.flag_variety import FlagVariety
 
-__all__ = ["FAILED", "USAGE", "Stop", "conjecture_named", "echo_json", "space_named", "spaces_named"]
+__all__ = [
+    "FAILED",
+    "USAGE",
+    "Stop",
+    "complete_conjecture",
+    "complete_file",
+    "complete_space",
+    "conjecture_named",
+    "echo_json",
+    "space_named",
+    "spaces_named",
+]
 
 FAILED = 1
 """Exit status: everything ran, and something is not as hoped: refuted, a difference, a certificate that is rejected."""
@@ -73,3 +85,41 @@ def conjecture_named(target: str) -> Conjecture:
 def echo_json(document: Any) -> None:
     """One JSON document on standard output."""
     click.echo(json.dumps(document, indent=2, ensure_ascii=False))
+
+
+_MOST_COMPLETED = 6
+
+
+def complete_space(_context: click.Context, _parameter: click.Parameter, incomplete: str) -> list[str]:
+    """Names of spaces that begin like this, for the completion of a shell: A4/P2 needs no quotes, Gr(2,5) does in some shells."""
+    from conjcheck.geometry.families import HomogeneousSpaces
+
+    spaces = list(HomogeneousSpaces(most_classes=1_000).up_to(_MOST_COMPLETED))
+    plain = [f"{X.kind}/{'B' if len(X.marked) == X.rank else 'P' + ','.join(map(str, X.marked))}" for X in spaces]
+    return [name for name in dict.fromkeys([*plain, *(X.name for X in spaces)]) if name.startswith(incomplete)]
+
+
+def complete_conjecture(_context: click.Context, _parameter: click.Parameter, incomplete: str) -> list[str]:
+    """Plug-in files, and folders on the way to them, for the completion of a shell; after ``FILE::`` the names in the file."""
+    file, colons, name = incomplete.partition("::")
+    if colons:
+        from conjcheck.conjecture.discover import conjectures_in_file
+
+        try:
+            return [f"{file}::{c.name}" for c in conjectures_in_file(Path(file)) if c.name.startswith(name)]
+        except ConjcheckError:
+            return []
+    folder = Path(file) if file.endswith("/") else Path(file).parent
+    head = file[: file.rfind("/") + 1]
+    found = [
+        path
+        for path in sorted(folder.glob("*"))
+        if not path.name.startswith((".", "_")) and (path.is_dir() or path.suffix == ".py")
+    ]
+    names = [f"{head}{path.name}{'/' if path.is_dir() else ''}" for path in found]
+    return [name for name in names if name.startswith(file)]
+
+
+def complete_file(_context: click.Context, _parameter: click.Parameter, incomplete: str) -> list[CompletionItem]:
+    """Any file, for the completion of a shell: the shell looks itself."""
+    return [CompletionItem(incomplete, type="file")]

@@ -11,7 +11,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from conjcheck.cli.common import FAILED, USAGE, Stop, conjecture_named, echo_json, spaces_named
+from conjcheck.cli.common import FAILED, USAGE, Stop, complete_conjecture, complete_space, conjecture_named, echo_json, spaces_named
 from conjcheck.errors import ConjcheckError
 
 if TYPE_CHECKING:
@@ -27,8 +27,8 @@ __all__ = ["command"]
 
 
 @click.command("survey")
-@click.argument("target", metavar="FILE[::NAME]")
-@click.argument("spaces", nargs=-1, metavar="[SPACE]...")
+@click.argument("target", metavar="FILE[::NAME]", shell_complete=complete_conjecture)
+@click.argument("spaces", nargs=-1, metavar="[SPACE]...", shell_complete=complete_space)
 @click.option(
     "--up-to", type=click.IntRange(2), metavar="N", help="Also the spaces of its family of rank below N: in type A, inside C^N."
 )
@@ -170,16 +170,16 @@ def _cluster(address: str) -> Iterator[Executor]:
             "expected the library distributed for --cluster, got none; install it: pip install 'conjcheck[cluster]'"
         ) from None
     try:
-        client = Client(address, timeout="10s", set_as_default=False)
+        client = Client(address, timeout="10s", set_as_default=False)  # type: ignore[no-untyped-call]
     except (OSError, TimeoutError, ValueError) as error:
         raise Stop(f"expected a scheduler at {address}, got {type(error).__name__}: {error}; start one, or use --jobs") from None
     with client:
-        yield client.get_executor(pure=False, retries=3)
+        yield client.get_executor(pure=False, retries=3)  # type: ignore[no-untyped-call]
 
 
 def _threads(executor: Any) -> int:
     """How many chunks a cluster works on at a time."""
-    return max(sum(executor._client.nthreads().values()), 1)  # noqa: SLF001
+    return max(int(sum(executor._client.nthreads().values())), 1)  # noqa: SLF001
 
 
 @contextmanager
@@ -202,7 +202,7 @@ def _progress() -> Iterator[Callable[[Progress], None]]:
 
 def _table(done: Campaign) -> Iterator[str]:
     """One line per space."""
-    lines = [("space", "rows", "of", "cases", "nonzero", "failing", "seconds", "engine")]
+    lines: list[tuple[str, ...]] = [("space", "rows", "of", "cases", "nonzero", "failing", "seconds", "engine")]
     for space in done.spaces:
         r = space.result
         numbers = [r.seen, space.of, r.cases, r.nonzero, r.failing]

@@ -5,6 +5,7 @@ import inspect
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from itertools import product
+from math import prod
 from types import CodeType, MappingProxyType
 from typing import Any
 
@@ -69,13 +70,40 @@ class Conjecture:
                 offered = ", ".join(f"{key}={values!r}" for key, values in self.variants.items()) or "no open choices"
                 raise DeclarationError(f"expected a choice among those of {self.name} ({offered}), got {name}={value!r}")
         chosen = {**self.choice, **choice}
-        rule = functools.wraps(self.rule)(functools.partial(inspect.unwrap(self.rule), **chosen))
+        written = self.rule
+        while isinstance(written, functools.partial):  # a choice made before
+            written = written.func
+        rule = functools.wraps(written)(functools.partial(written, **chosen))
         return _with_page(replace(self, rule=rule, choice=MappingProxyType(chosen)))
 
     def all_variants(self) -> Iterator["Conjecture"]:
         """Every combination of the open choices, in the order of the declaration, the rule as it stands first."""
         for values in product(*self.variants.values()):
             yield self.variant(**dict(zip(self.variants, values, strict=True)))
+
+    def about(self) -> dict[str, Any]:
+        """What it says of itself, in JSON types, for reports."""
+        return {
+            "role": self.role,
+            "ring": self.ring,
+            "family": str(self.on),
+            "premise": self.premise is not None,
+            "statement": self.statement,
+            "description": inspect.getdoc(inspect.unwrap(self.rule)) or "",
+            "references": list(self.references),
+            "contributors": list(self.contributors),
+            "choice": {name: repr(value) for name, value in self.choice.items()},
+        }
+
+    @property
+    def choice_in_words(self) -> str:
+        """The choice as it would be written in a call, ``strict=True, drop=1``; empty without variants."""
+        return ", ".join(f"{name}={value!r}" for name, value in self.choice.items())
+
+    @property
+    def number_of_variants(self) -> int:
+        """How many combinations of the open choices there are; 1 without any."""
+        return prod(map(len, self.variants.values()))
 
     @property
     def file(self) -> str:
@@ -250,6 +278,9 @@ def _check_variants(place: str, rule: Rule, variants: Mapping[str, Sequence[Any]
     """Every open choice is a keyword-only argument of the rule, with at least one value."""
     if not isinstance(variants, Mapping) or not all(isinstance(values, (list, tuple)) and values for values in variants.values()):
         raise DeclarationError(f'{place}: expected variants={{"argument": (values, ...)}}, got variants={variants!r}')
+    for name, values in variants.items():
+        if any(value in values[:k] for k, value in enumerate(values)):
+            raise DeclarationError(f"{place}: expected different values for {name} in variants, got {name}={values!r}")
     missing = [n for n in variants if n not in (p := inspect.signature(rule).parameters) or p[n].kind is not p[n].KEYWORD_ONLY]
     if missing:
         raise DeclarationError(

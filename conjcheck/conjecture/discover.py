@@ -1,10 +1,11 @@
 """Where conjectures are found: in a module that was imported, in a file, and in installed packages that offer some."""
 
 import sys
+from importlib.machinery import EXTENSION_SUFFIXES, SOURCE_SUFFIXES, ExtensionFileLoader, FileFinder, SourceFileLoader
 from importlib.metadata import EntryPoint, entry_points
 from importlib.util import find_spec, module_from_spec, spec_from_file_location
 from pathlib import Path
-from types import ModuleType
+from types import CodeType, ModuleType
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import DeclarationError
@@ -31,7 +32,7 @@ def conjectures_in_file(path: Path) -> list[Conjecture]:
         raise DeclarationError(f"expected a plug-in file such as conjectures/my_rule.py, got {path}")
     prefer_helpers_of(path.parent.resolve())
     name = f"conjcheck_file_{path.stem}"  # a name that hides no other module
-    spec = spec_from_file_location(name, path.resolve())
+    spec = spec_from_file_location(name, path.resolve(), loader=_FromSource(name, str(path.resolve())))
     assert spec is not None, "a .py file has a spec"
     assert spec.loader is not None, "and a loader"
     module = sys.modules[name] = module_from_spec(spec)
@@ -48,13 +49,24 @@ def conjectures_in_file(path: Path) -> list[Conjecture]:
 
 def _name_in(module: ModuleType, conjecture: Conjecture) -> str:
     """The name of the variable that holds a conjecture: its own, if that holds it."""
-    if getattr(module, conjecture.name, None) is conjecture:
-        return conjecture.name
-    return next((name for name, value in vars(module).items() if value is conjecture), conjecture.name)
+    names = [name for name, value in vars(module).items() if value is conjecture]
+    return conjecture.name if conjecture.name in names else names[0]
+
+
+class _FromSource(SourceFileLoader):
+    """Compiles what the file says now. Cached bytecode of a version of the same second and length is taken by Python for current."""
+
+    def get_code(self, fullname: str) -> CodeType:
+        path = self.get_filename(fullname)
+        code: CodeType = self.source_to_code(self.get_data(path), path)
+        return code
 
 
 def prefer_helpers_of(folder: Path) -> None:
     """Let plug-ins import the files beside them, and not files of the same name beside other plug-ins."""
+    sys.path_importer_cache[str(folder)] = FileFinder(
+        str(folder), (ExtensionFileLoader, EXTENSION_SUFFIXES), (_FromSource, SOURCE_SUFFIXES)
+    )
     if str(folder) in sys.path:
         sys.path.remove(str(folder))
     sys.path.insert(0, str(folder))

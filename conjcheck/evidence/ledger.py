@@ -2,6 +2,7 @@
 
 A line counts only for the same rule (a hash of its source), the same conjecture, the same library (a hash of its source, the engines
 included), the same space and the same rows. Results are JSON text, read back as plain data; nothing is unpickled or evaluated.
+A digest of key and result stands in each line: a digit that flipped on the disk is noticed.
 """
 
 import hashlib
@@ -16,6 +17,7 @@ from types import TracebackType
 from typing import Any
 
 from conjcheck.errors import LedgerError
+from conjcheck.evidence.entries import own_version
 
 __all__ = ["ChunkKey", "Ledger", "library_mark"]
 
@@ -26,9 +28,13 @@ _WAIT_SECONDS = 60.0
 _TABLE = """
 CREATE TABLE IF NOT EXISTS chunks (
     rule TEXT NOT NULL, conjecture TEXT NOT NULL, library TEXT NOT NULL, space TEXT NOT NULL, part TEXT NOT NULL,
-    first INTEGER NOT NULL, last INTEGER NOT NULL, result TEXT NOT NULL,
+    first INTEGER NOT NULL, last INTEGER NOT NULL, result TEXT NOT NULL, digest TEXT NOT NULL,
     PRIMARY KEY (rule, conjecture, library, space, part, first, last)
 ) WITHOUT ROWID
+"""
+_SELECT = """
+SELECT result, digest FROM chunks
+WHERE rule = ? AND conjecture = ? AND library = ? AND space = ? AND part = ? AND first = ? AND last = ?
 """
 
 
@@ -62,13 +68,11 @@ class ChunkKey:
 @cache
 def library_mark() -> str:
     """The version of conjcheck and a hash of its source: results of another library are not inherited."""
-    from conjcheck import __version__
-
     root = Path(__file__).parents[1]
     digest = hashlib.sha256()
     for path in sorted(root.rglob("*.py")):
         digest.update(path.relative_to(root).as_posix().encode() + b"\0" + path.read_bytes() + b"\0")
-    return f"{__version__}+{digest.hexdigest()[:16]}"
+    return f"{own_version()}+{digest.hexdigest()[:16]}"
 
 
 class Ledger:
@@ -119,7 +123,7 @@ class Ledger:
         if len(head) < 100 or not head.startswith(_MAGIC):
             raise LedgerError(foreign)
         version, application = int.from_bytes(head[60:64], "big"), int.from_bytes(head[68:72], "big")
-        if application != _APPLICATION and (application or version):
+        if application != _APPLICATION:
             raise LedgerError(foreign)
         if version > _VERSION:
             raise LedgerError(
@@ -132,18 +136,12 @@ class Ledger:
             raise LedgerError(
                 f"{self.path}: damaged: {found[0]}; nothing was changed, restore the file or choose another with --ledger"
             )
-        tables = {name for (name,) in self._base.execute("SELECT name FROM sqlite_master WHERE type = 'table'")}
-        if tables == {"chunks"}:
-            self._base.execute("SELECT rule, conjecture, library, space, part, first, last, result FROM chunks LIMIT 1")
-            return
-        if tables:
-            raise LedgerError(
-                f"{self.path}: expected a ledger of conjcheck, got a database with {', '.join(sorted(tables))}; nothing was changed"
-            )
-        with self._transaction():
-            self._base.execute(_TABLE)
-            self._base.execute(f"PRAGMA application_id = {_APPLICATION}")
-            self._base.execute(f"PRAGMA user_version = {_VERSION}")
+        with self._transaction():  # also to see at once whether it can be written
+            if self._base.execute("PRAGMA application_id").fetchone() == (0,):
+                self._base.execute(_TABLE)
+                self._base.execute(f"PRAGMA application_id = {_APPLICATION}")
+                self._base.execute(f"PRAGMA user_version = {_VERSION}")
+            self._base.execute("SELECT rule, conjecture, library, space, part, first, last, result, digest FROM chunks LIMIT 1")
 
     @contextmanager
     def _trouble(self) -> Iterator[None]:
@@ -158,10 +156,11 @@ class Ledger:
         self._base.execute("BEGIN IMMEDIATE")
         try:
             yield
+            self._base.execute("COMMIT")
         except BaseException:
-            self._base.execute("ROLLBACK")
+            if self._base.in_transaction:
+                self._base.execute("ROLLBACK")
             raise
-        self._base.execute("COMMIT")
 
     def get(self, key: ChunkKey) -> dict[str, Any] | None:
         """The result of a chunk, ``None`` if it is not finished.
@@ -169,25 +168,27 @@ class Ledger:
         Raises:
             LedgerError: the line is damaged.
         """
-        where = "rule=? AND conjecture=? AND library=? AND space=? AND part=? AND first=? AND last=?"
-        with self._trouble(), closing(self._base.execute(f"SELECT result FROM chunks WHERE {where}", key.columns)) as cursor:  # noqa: S608
+        with self._trouble(), closing(self._base.execute(_SELECT, key.columns)) as cursor:
             found = cursor.fetchone()
         if found is None:
             return None
         try:
-            result = json.loads(found[0])
+            result = json.loads(found[0]) if found[1] == _digest(key, found[0]) else None
         except (TypeError, ValueError, RecursionError):
             result = None
         if not isinstance(result, dict):
             raise LedgerError(
-                f"{self.path}: damaged: expected JSON for rows {key.first} to {key.last} of {key.space}; choose another ledger"
+                f"{self.path}: damaged: expected the result of rows {key.first} to {key.last} of {key.space} as it was written; "
+                "delete the file, or choose another with --ledger"
             )
         return result
 
     def put(self, key: ChunkKey, result: dict[str, Any]) -> None:
         """Keep the result of a finished chunk, at once and durably."""
+        text = json.dumps(result)
+        line = *key.columns, text, _digest(key, text)
         with self._trouble(), self._transaction():
-            self._base.execute("INSERT OR REPLACE INTO chunks VALUES (?, ?, ?, ?, ?, ?, ?, ?)", (*key.columns, json.dumps(result)))
+            self._base.execute("INSERT OR REPLACE INTO chunks VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?)", line)
 
     def stale(self, conjecture: str, rule: str, library: str) -> list[tuple[str, int, bool]]:
         """What is kept for a conjecture of this name but counts no more: ``(space, rows, whether the rule is another one)``."""
@@ -196,3 +197,8 @@ class Ledger:
         with self._trouble():
             found = self._base.execute(text, (rule, conjecture, rule, library, rule)).fetchall()
         return [(space, rows, bool(other)) for space, rows, other in found]
+
+
+def _digest(key: ChunkKey, text: str) -> str:
+    """What stands beside a result, so that a line that is damaged is not believed."""
+    return hashlib.sha256(json.dumps([*key.columns, text]).encode()).hexdigest()

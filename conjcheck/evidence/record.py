@@ -1,57 +1,196 @@
-"""The record of a conjecture: a small, sorted JSON file beside the plug-ins, made to be committed.
+"""The record of a conjecture: a small, sorted JSON file beside the plug-ins, made to be committed, merged and cited.
 
-``conjectures/records/<name>.json`` holds the status and the known counterexamples, each as one line of text that parses back.
-Nothing in a record is believed: a recorded counterexample is computed again, by the rule and by the oracle, every time.
+``conjectures/records/<name>.json`` holds the status, what was compared (for one version of the rule, known by its hash), and the known
+counterexamples, each as one line of text that parses back. ``record.schema.json`` beside this module describes the file. Nothing in a
+record is believed: a recorded counterexample is computed again, by the rule and by the oracle, every time.
 """
 
 import json
-from dataclasses import dataclass
+import os
+import shutil
+from collections.abc import Iterable
+from dataclasses import dataclass, replace
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.errors import ConjcheckError, RecordError
-from conjcheck.geometry.case import Case, Row
+from conjcheck.errors import RecordError
+from conjcheck.evidence.entries import Counterexample, Covered, Sample
+from conjcheck.evidence.reading import FORMAT, VERSION, contents, parse_place
+from conjcheck.evidence.source import rule_hash
 
-__all__ = ["Counterexample", "Record", "parse_place", "read_record", "record_path", "write_record"]
+__all__ = [
+    "Counterexample",
+    "Covered",
+    "Record",
+    "Sample",
+    "current_record",
+    "merge",
+    "parse_place",
+    "read_record",
+    "read_record_file",
+    "record_path",
+    "record_text",
+    "stale_words",
+    "write_record",
+    "write_record_file",
+]
 
-_FORMAT = "conjcheck-record"
-_VERSION = 1
-
-
-@dataclass(frozen=True, slots=True)
-class Counterexample:
-    """One recorded counterexample.
-
-    Attributes:
-        where: the case, or the row for a claim about whole products.
-        rule, oracle: the two values, polynomials as text; ``None`` where there is none.
-        minimal: whether all smaller cases were compared when it was recorded.
-    """
-
-    where: Case | Row
-    rule: int | str | None
-    oracle: int | str | None
-    minimal: bool
-
-    def as_json(self) -> dict[str, Any]:
-        """The entry in the file."""
-        return {"where": str(self.where), "rule": self.rule, "oracle": self.oracle, "minimal": self.minimal}
+_UNKNOWN = ("", None)
+_Entry = TypeVar("_Entry", Counterexample, Covered, Sample)
 
 
 @dataclass(frozen=True, slots=True)
 class Record:
-    """What is on record about one conjecture; ``status`` is ``"open"`` or ``"refuted"``."""
+    """What is on record about one conjecture. Entries are kept in order, and those about one thing are joined, when a record is made.
+
+    Attributes:
+        conjecture: its name.
+        status: ``"open"`` or ``"refuted"``.
+        counterexamples: the known ones; they are computed again at every run, whatever the rule.
+        statement, ring: as declared, the statement in LaTeX; empty if not known.
+        premise: whether the conjecture has a premise, so that only rows and cases inside it count; ``None`` if not known.
+        rule: the hash of the rule that coverage and samples speak about, see ``evidence.source``; ``None`` if there are none.
+        coverage: how far spaces were compared in order, one entry per space.
+        samples: rows drawn at random.
+
+    Raises:
+        RecordError: entries that contradict each other; the message names them.
+    """
 
     conjecture: str
     status: str
-    counterexamples: tuple[Counterexample, ...]
+    counterexamples: tuple[Counterexample, ...] = ()
+    statement: str = ""
+    ring: str = ""
+    premise: bool | None = None
+    rule: str | None = None
+    coverage: tuple[Covered, ...] = ()
+    samples: tuple[Sample, ...] = ()
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "counterexamples", _in_order(self.counterexamples))
+        object.__setattr__(self, "coverage", _in_order(self.coverage))
+        object.__setattr__(self, "samples", _in_order(self.samples))
+        if self.rule is None and (self.coverage or self.samples):
+            raise RecordError(
+                f"expected the hash of the rule in the record of {self.conjecture}, since it has coverage or a sample, got none; "
+                "use renewed(hash) first"
+            )
+        for smaller, larger in zip(self.counterexamples, self.counterexamples[1:], strict=False):
+            if larger.minimal and larger.where.sort_key > smaller.where.sort_key:
+                raise RecordError(
+                    f"expected no counterexample smaller than {larger.where}, which is on record as minimal, got {smaller.where}; "
+                    'compute them again and put "minimal" right'
+                )
 
     def with_counterexample(self, found: Counterexample) -> "Record":
-        """The record with one more counterexample; one at the same place is replaced."""
-        others = [c for c in self.counterexamples if str(c.where) != str(found.where)]
-        kept = sorted([*others, found], key=lambda c: (c.where.sort_key, str(c.where)))
-        return Record(self.conjecture, "refuted", tuple(kept))
+        """The record with one more counterexample; one at the same place is replaced, larger ones are not minimal any more.
+
+        A certificate is kept as long as the values are the same.
+        """
+        others = []
+        for known in self.counterexamples:
+            if known.key == found.key:
+                same = (known.rule, known.oracle) == (found.rule, found.oracle)
+                if same and found.certificate is None and found.instead is None:
+                    found = replace(found, certificate=known.certificate, instead=known.instead)
+            elif known.minimal and known.where.sort_key > found.where.sort_key:
+                others.append(replace(known, minimal=False))
+            else:
+                others.append(known)
+        return replace(self, status="refuted", counterexamples=(*others, found))
+
+    def with_coverage(self, covered: Iterable[Covered]) -> "Record":
+        """The record with more coverage; of two entries for one space the one that went further is kept, or else the one on record.
+
+        Raises:
+            RecordError: the record is of no rule yet (use ``renewed``), or the numbers contradict those on record.
+        """
+        known = {entry.X: entry for entry in self.coverage}
+        joined = replace(self, coverage=(*self.coverage, *covered)).coverage
+        as_far = {entry.X: known[entry.X] for entry in joined if entry.X in known and known[entry.X].seen == entry.seen}
+        return replace(self, coverage=tuple(as_far.get(entry.X, entry) for entry in joined))
+
+    def with_sample(self, sample: Sample) -> "Record":
+        """The record with one more sample; of two with one seed the larger one is kept.
+
+        Raises:
+            RecordError: as with coverage.
+        """
+        return replace(self, samples=(*self.samples, sample))
+
+    def is_stale(self, rule: str) -> bool:
+        """Whether it holds coverage or samples of another version of the rule."""
+        return bool(self.coverage or self.samples) and self.rule != rule
+
+    def renewed(self, rule: str) -> "Record":
+        """The record of this version of the rule: coverage and samples of another one are dropped, counterexamples stay."""
+        return self if self.rule == rule else replace(self, rule=rule, coverage=(), samples=())
+
+
+def _in_order(entries: Iterable[_Entry]) -> tuple[_Entry, ...]:
+    """The entries in order, those about one thing joined."""
+    found: dict[Any, _Entry] = {}
+    for entry in entries:
+        known = found.get(entry.key)
+        found[entry.key] = entry if known is None else known.joined(entry)
+    return tuple(sorted(found.values(), key=lambda entry: entry.sort_key))
+
+
+def stale_words(record: Record, rule: str) -> str:
+    """What in a record was computed for another version of the rule, in words; empty if nothing was."""
+    if not record.is_stale(rule):
+        return ""
+    parts = []
+    if record.coverage:
+        parts.append(
+            f"coverage of {_counted(len(record.coverage), 'space')}, {_counted(sum(c.rows for c in record.coverage), 'row')}"
+        )
+    if record.samples:
+        parts.append(f"{_counted(len(record.samples), 'sample')}, {_counted(sum(s.rows for s in record.samples), 'row')}")
+    many = len(parts) > 1 or (not record.coverage and len(record.samples) > 1)
+    was, counts = ("were", "count") if many else ("was", "counts")
+    return f"{', and '.join(parts)}, {was} computed for another version of the rule and {counts} no more"
+
+
+def _counted(count: int, what: str) -> str:
+    return f"{count:,} {what}{'' if count == 1 else 's'}"
+
+
+def merge(first: Record, second: Record) -> Record:
+    """One record from two of one rule, so that two people's surveys add up. Commutative, associative, idempotent.
+
+    A record without a hash (it holds counterexamples only) goes with any. The status is refuted if one of them says so.
+
+    Raises:
+        RecordError: two conjectures, two versions of the rule, or entries that contradict each other; the message names the entry.
+    """
+    if first.conjecture != second.conjecture:
+        raise RecordError(f"expected two records of one conjecture, got {first.conjecture} and {second.conjecture}")
+
+    def one(what: str, key: str) -> Any:
+        mine, its = getattr(first, key), getattr(second, key)
+        if mine in _UNKNOWN or its in _UNKNOWN:
+            return its if mine in _UNKNOWN else mine
+        if mine != its:
+            raise RecordError(
+                f"expected one {what} in both records of {first.conjecture}, got {mine} and {its}; "
+                "survey anew with the rule as it stands, or keep one of the records"
+            )
+        return mine
+
+    return Record(
+        first.conjecture,
+        "refuted" if "refuted" in (first.status, second.status) else "open",
+        first.counterexamples + second.counterexamples,
+        statement=one("statement", "statement"),
+        ring=one("ring", "ring"),
+        premise=one("answer to whether there is a premise", "premise"),
+        rule=one("hash of the rule", "rule"),
+        coverage=first.coverage + second.coverage,
+        samples=first.samples + second.samples,
+    )
 
 
 def record_path(conjecture: Conjecture) -> Path:
@@ -59,9 +198,21 @@ def record_path(conjecture: Conjecture) -> Path:
     return Path(conjecture.file).parent / "records" / f"{conjecture.name}.json"
 
 
-def parse_place(text: str) -> Case | Row:
-    """A case, or a row when there is no arrow in the text."""
-    return Case.parse(text) if "->" in text else Row.parse(text)
+def record_text(record: Record) -> str:
+    """The text of the file: sorted, one line per space and sample, a block of lines per counterexample; the same for the same record."""
+    head: dict[str, Any] = {"format": FORMAT, "version": VERSION, "conjecture": record.conjecture, "status": record.status}
+    head |= {key: getattr(record, key) for key in ("statement", "ring", "premise", "rule")}
+    lines = [f'  "{key}": {_json(value)}' for key, value in head.items()]
+    for key, entries in (("coverage", record.coverage), ("samples", record.samples)):
+        body = ",\n".join(f"    {_json(entry.as_json())}" for entry in entries)
+        lines.append(f'  "{key}": [\n{body}\n  ]' if body else f'  "{key}": []')
+    blocks = json.dumps([c.as_json() for c in record.counterexamples], indent=2, ensure_ascii=False)
+    lines.append('  "counterexamples": ' + blocks.replace("\n", "\n  "))
+    return "{\n" + ",\n".join(lines) + "\n}\n"
+
+
+def _json(value: object) -> str:
+    return json.dumps(value, ensure_ascii=False)
 
 
 def read_record(conjecture: Conjecture) -> Record:
@@ -73,57 +224,95 @@ def read_record(conjecture: Conjecture) -> Record:
     path = record_path(conjecture)
     if not path.exists() and not path.is_symlink():
         return Record(conjecture.name, "open", ())
+    record = read_record_file(path)
+    if record.conjecture != conjecture.name:
+        raise RecordError(f"{path}: expected the record of {conjecture.name!r}, got that of {record.conjecture!r}")
+    return record
+
+
+def current_record(conjecture: Conjecture) -> Record:
+    """The record of a conjecture as it stands now: what was computed for another version of the rule is dropped.
+
+    Raises:
+        RecordError: as for :func:`read_record`; or the file of the rule cannot be read.
+    """
+    record = replace(
+        read_record(conjecture),
+        statement=conjecture.statement,
+        ring=conjecture.ring,
+        premise=conjecture.premise is not None,
+    )
+    return record.renewed(rule_hash(conjecture.file))
+
+
+def read_record_file(path: str | Path) -> Record:
+    """The record in a file, of any conjecture. Entries may stand in any order; a space that stands twice counts once.
+
+    Raises:
+        RecordError: the file is no record; the message names the file and the entry.
+    """
     try:
-        data = json.loads(path.read_text(encoding="utf-8"))
+        data = json.loads(Path(path).read_text(encoding="utf-8"), object_pairs_hook=_once, parse_constant=_no_number)
     except OSError as error:
         raise RecordError(f"{path}: expected a readable file, got {error}") from None
+    except RecordError as error:
+        raise RecordError(f"{path}: {error}") from None
     except (ValueError, RecursionError) as error:
         raise RecordError(f"{path}: expected JSON in UTF-8, got {error}; restore the file or delete it") from None
-    if not isinstance(data, dict) or data.get("format") != _FORMAT:
-        raise RecordError(f'{path}: expected an object with "format": "{_FORMAT}"; this is not a record')
-    if data.get("version") != _VERSION:
-        raise RecordError(f"{path}: expected version {_VERSION}, got {data.get('version')!r}; use the conjcheck that wrote it")
-    if data.get("conjecture") != conjecture.name:
-        raise RecordError(f"{path}: expected the record of {conjecture.name!r}, got that of {data.get('conjecture')!r}")
-    if data.get("status") not in ("open", "refuted"):
-        raise RecordError(f'{path}: expected "status" to be "open" or "refuted", got {data.get("status")!r}')
-    entries = data.get("counterexamples")
-    if not isinstance(entries, list):
-        raise RecordError(f'{path}: expected a list under "counterexamples", got {entries!r}')
-    found = tuple(_entry(path, place, entry) for place, entry in enumerate(entries, start=1))
-    if data["status"] == "refuted" and not found:
-        raise RecordError(f"{path}: expected a counterexample, since the status is refuted, got none")
-    return Record(conjecture.name, data["status"], found)
-
-
-def _entry(path: Path, place: int, entry: object) -> Counterexample:
-    """One counterexample of the file, validated."""
-    if not isinstance(entry, dict) or not isinstance(entry.get("where"), str):
-        raise RecordError(f'{path}: expected an object with a text under "where" as counterexample {place}, got {entry!r}')
-    for key in ("rule", "oracle"):
-        value = entry.get(key)
-        if value is not None and not isinstance(value, str) and (type(value) is not int or value < 0):
-            raise RecordError(
-                f'{path}: expected null, an integer of 0 or more, or a polynomial as text under "{key}" of counterexample {place}, '
-                f"got {value!r}"
-            )
     try:
-        where = parse_place(entry["where"])
-    except ConjcheckError as error:
-        raise RecordError(f"{path}: counterexample {place}: {error}") from None
-    return Counterexample(where, entry.get("rule"), entry.get("oracle"), entry.get("minimal") is True)
+        return Record(**contents(data))
+    except RecordError as error:
+        raise RecordError(f"{path}: {error}") from None
+
+
+def _once(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+    """An object of the file; a key that stands twice, as after a careless merge, is refused."""
+    found: dict[str, Any] = {}
+    for key, value in pairs:
+        if key in found:
+            raise RecordError(f"expected every key once in an object, got {key!r} twice; keep one of the two")
+        found[key] = value
+    return found
+
+
+def _no_number(text: str) -> None:
+    raise ValueError(f"{text}, which is no number")
 
 
 def write_record(conjecture: Conjecture, record: Record) -> Path:
-    """Write the record of a conjecture and return where."""
+    """Write the record of a conjecture and return where.
+
+    Raises:
+        RecordError: see :func:`write_record_file`.
+    """
     path = record_path(conjecture)
     path.parent.mkdir(exist_ok=True)
-    data = {
-        "format": _FORMAT,
-        "version": _VERSION,
-        "conjecture": record.conjecture,
-        "status": record.status,
-        "counterexamples": [c.as_json() for c in record.counterexamples],
-    }
-    path.write_text(json.dumps(data, indent=2, ensure_ascii=False) + "\n", encoding="utf-8")
+    write_record_file(path, record)
     return path
+
+
+def write_record_file(path: str | Path, record: Record) -> None:
+    """Write a record in one step: whoever reads the file meanwhile sees the old text or the new one, never a part.
+
+    Raises:
+        RecordError: what is there is no record of the same conjecture, or the record would not be read back; nothing is written.
+    """
+    place = Path(os.path.realpath(path))
+    if place.exists():
+        try:
+            known = read_record_file(place).conjecture
+        except RecordError as error:
+            raise RecordError(f"{error}; nothing was written, lest something is lost") from None
+        if known != record.conjecture:
+            raise RecordError(f"{path}: expected the record of {record.conjecture!r} to write over, got that of {known!r}")
+    text = record_text(record)
+    if (again := Record(**contents(json.loads(text)))) != record:
+        raise RecordError(f"{path}: expected a record that is read back as it is, got {record}, which becomes {again}")
+    draft = place.with_name(f".{place.name}.{os.getpid()}")
+    try:
+        draft.write_text(text, encoding="utf-8", newline="\n")
+        if place.exists():
+            shutil.copymode(place, draft)
+        draft.replace(place)
+    finally:
+        draft.unlink(missing_ok=True)

@@ -15,14 +15,15 @@ def rule_hash(file: str | Path) -> str:
     """``sha256:`` and 64 hexadecimal digits: the same on every machine, another one after any change.
 
     Hashed are the texts (line ends made equal) and the names of the plug-in file and of all files of its repository that it imports,
-    directly or not. Data files that a rule reads are not seen.
+    directly or not; also inside functions, and by ``import_module("name")``. Data files that a rule reads are not seen, nor are modules
+    whose name is made up while it runs.
 
     Raises:
         RecordError: no such file, or not UTF-8.
     """
     main = Path(file).resolve()
     digest = hashlib.sha256()
-    for path in sorted(source_files(main), key=lambda path: _label(path, main)):
+    for path in sorted(source_files(main), key=lambda path: (path == main, _label(path, main))):
         text = _text(path)
         digest.update(f"{_label(path, main)}\0{len(text)}\0{text}\0".encode())
     return f"sha256:{digest.hexdigest()}"
@@ -54,23 +55,23 @@ def _label(path: Path, main: Path) -> str:
 
 def _text(path: Path) -> str:
     try:
-        return "\n".join(path.read_text(encoding="utf-8").splitlines())
+        return path.read_text(encoding="utf-8-sig")  # which reads every line end as \n
     except (OSError, UnicodeDecodeError) as error:
         raise RecordError(f"{path}: expected a readable Python file in UTF-8, got {error}") from None
 
 
 def _places(main: Path) -> list[Path]:
-    """Where imports are looked up: beside the plug-in, then upwards to the top of its repository."""
+    """Where imports are looked up: beside the plug-in, then upwards to the top of its repository, and in the folder src there."""
     above = [main.parent, *main.parent.parents]
     top = next((k for k, folder in enumerate(above) if any((folder / mark).exists() for mark in _ROOT_MARKS)), 0)
-    return above[: top + 1]
+    return [*above[: top + 1], above[top] / "src"]
 
 
 def _imported(path: Path) -> list[tuple[str, int]]:
     """The modules that a file imports anywhere, as ``(dotted name, number of leading dots)``."""
     try:
         tree = ast.parse(_text(path))
-    except SyntaxError:
+    except (SyntaxError, ValueError):  # ValueError: a null byte
         return []
     found: list[tuple[str, int]] = []
     for node in ast.walk(tree):
@@ -79,17 +80,24 @@ def _imported(path: Path) -> list[tuple[str, int]]:
         elif isinstance(node, ast.ImportFrom):
             module = node.module or ""
             found += [(module, node.level), *((f"{module}.{alias.name}".lstrip("."), node.level) for alias in node.names)]
+        elif isinstance(node, ast.Call) and node.args and isinstance(node.args[0], ast.Constant):
+            called = node.func.attr if isinstance(node.func, ast.Attribute) else getattr(node.func, "id", "")
+            name = node.args[0].value
+            if called in ("import_module", "__import__") and isinstance(name, str):
+                found.append((name.lstrip("."), len(name) - len(name.lstrip("."))))
     return found
 
 
 def _resolved(name: str, level: int, path: Path, places: list[Path]) -> list[Path]:
     """The files that an import loads: the module, and the packages around it. conjcheck itself is known by its version instead."""
     parts = [part for part in name.split(".") if part]
-    if not parts or (parts[0] == "conjcheck" and not level):
+    if not level and (not parts or parts[0] == "conjcheck"):
         return []
     folders = [path.parents[level - 1]] if 0 < level <= len(path.parents) else places
     for folder in folders:
-        found = []
+        found = [place for place in (folder / "__init__.py",) if level and place.is_file()]
+        if parts and parts[-1] == "*":  # what a package names in its __all__ is imported, too
+            found += [place for place in folder.joinpath(*parts[:-1]).glob("*.py") if len(parts) > 1 or level]
         for k in range(1, len(parts) + 1):
             stem = folder.joinpath(*parts[:k])
             found += [place for place in (stem / "__init__.py", stem.with_name(f"{stem.name}.py")) if place.is_file()]

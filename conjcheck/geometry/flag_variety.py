@@ -15,6 +15,7 @@ from conjcheck.errors import NotationError, OutOfReach
 from conjcheck.geometry import names, notation
 from conjcheck.geometry.cartan import CartanType, cartan_matrix, positive_roots
 from conjcheck.geometry.signed import has_strict_partitions, read_signed, signed_from_partition, strict_partition_of, text_of_signed
+from conjcheck.geometry.typeset import latex_class, latex_space
 from conjcheck.geometry.weyl import Orbit, dual_indices, number_of_cosets, one_lines, orbit, signed_lines, weight_images
 
 __all__ = ["IG", "LG", "MOST_CLASSES", "OG", "Degree", "Fl", "FlagVariety", "Gr", "SchubertClass", "orbit_of"]
@@ -69,6 +70,9 @@ class FlagVariety:
 
     def __str__(self) -> str:
         return self.name
+
+    def _repr_latex_(self) -> str:
+        return f"${latex_space(self.name)}$"
 
     def __reduce__(self) -> tuple[type, tuple[str]]:
         return FlagVariety, (self.name,)
@@ -222,6 +226,9 @@ class SchubertClass:
         if X.kind.letter in "BCD":
             return f"[{text_of_signed(self.signed)}]"
         return f"<{'.'.join(map(str, self.word))}>"
+
+    def _repr_latex_(self) -> str:
+        return f"$\\sigma_{{{latex_class(str(self))}}}$"
 
     def __reduce__(self) -> tuple[Any, tuple[FlagVariety, int]]:
         return _class_at, (self.variety, self.index)

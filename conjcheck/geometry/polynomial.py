@@ -7,6 +7,7 @@ from typing import Any
 
 from conjcheck.errors import NotationError
 from conjcheck.geometry.flag_variety import FlagVariety
+from conjcheck.geometry.typeset import latex_polynomial
 
 __all__ = ["RootPolynomial", "read_polynomial", "simple_roots"]
 
@@ -123,6 +124,9 @@ class RootPolynomial:
         return " ".join(_term(e, c, first=not k) for k, (e, c) in enumerate(self.terms)) or "0"
 
     __str__ = __repr__
+
+    def _repr_latex_(self) -> str:
+        return f"${latex_polynomial(str(self))}$"
 
     def sympy(self) -> Any:
         """The same as an expression of sympy, in symbols ``alpha1, alpha2, ...`` (needs sympy)."""

@@ -8,6 +8,7 @@ import numpy as np
 
 from conjcheck.geometry.case import place_in_row
 from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
+from conjcheck.geometry.typeset import latex_class, latex_polynomial, latex_power
 from conjcheck.geometry.weyl import Ints
 
 __all__ = ["Block", "Engine", "Product", "RowTerms", "blocks_by_rows"]
@@ -34,7 +35,10 @@ class Product(dict[tuple[SchubertClass, Degree], Any]):
     __str__ = __repr__
 
     def _repr_latex_(self) -> str:
-        body = " + ".join(f"{_size(count)}{_power('q^{{({})}}', d)}\\sigma_{{{w}}}" for (w, d), count in self.items())
+        body = " + ".join(
+            f"{latex_polynomial(_size(count))}{latex_power(d)}{' ' if any(d) else ''}\\sigma_{{{latex_class(str(w))}}}"
+            for (w, d), count in self.items()
+        )
         return f"${body or '0'}$"
 
 

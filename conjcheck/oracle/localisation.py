@@ -18,6 +18,9 @@ summand of ``D^{l(u)}``; that bound is computed in integers, rounded upwards, an
 exceeds it. Which powers of several q's a coefficient of z collects is resolved by evaluating at the powers of one point g and
 solving the Vandermonde system, whose nodes are checked to be distinct.
 
+One constant is a number, not a solution: the coefficient of ``z^e sigma_w`` is a linear functional of the pointwise product, which
+depends on w alone. It is computed when w is first asked about and kept; then a constant is e + 1 dot products.
+
 Source: Mihalcea, On equivariant quantum cohomology of homogeneous spaces: Chevalley formulae and algorithms, Duke Math. J. 140
 (2007), for the formula and for its determining the ring; the use of eigenvectors is common practice.
 """
@@ -44,6 +47,9 @@ MOST_CLASSES = 1_000
 
 MOST_WORK = 400_000_000
 """Above about so many modular multiplications a row is out of reach; about ten seconds."""
+
+_MOST_POINTS = 256
+"""So many points of a variety are kept, each up to the highest power of z that was asked for."""
 
 
 @lru_cache
@@ -170,6 +176,8 @@ class _Point:
         self.values = self._solve(whole.lengths, terms.targets, coefficients, terms.weights // step, numbers.values)
         self._back = np.ascontiguousarray(self._invert(self.values[0]).T)
         self._flipped = np.ascontiguousarray(self.values.transpose(0, 2, 1))
+        self._live = [f for f in range(1, depth + 1) if self.values[f].any()]
+        self._weights: dict[int, list[Ints]] = {}
 
     def _solve(self, lengths: Ints, targets: Ints, coefficients: Ints, shifts: Ints, values: Ints) -> Ints:
         """All coordinates, ``(depth + 1, N, N)``: entry ``[e, u, w]`` is the coefficient of ``z^e`` in ``sigma_u|_w``."""
@@ -216,19 +224,43 @@ class _Point:
             inverse[w, w] = diagonal[w]
         return inverse
 
-    def product(self, u: int, v: int) -> Ints:
-        """``sigma_u * sigma_v`` in the Schubert basis: ``(depth + 1, N)``, powers of z by classes."""
-        p, values = self.p, self.values
-        found = np.zeros((self.depth + 1, len(self._back)), dtype=np.int64)
-        live = [f for f in range(1, self.depth + 1) if values[f].any()]
-        for e in range(self.depth + 1):
-            side = np.zeros(len(self._back), dtype=np.int64)
-            for f in range(e + 1):
-                side = (side + values[f, u] * values[e - f, v]) % p
-            for f in live:
+    def product(self, u: int, v: int, depth: int) -> Ints:
+        """``sigma_u * sigma_v`` in the Schubert basis: ``(depth + 1, N)``, powers of z by classes, up to the one named."""
+        p = self.p
+        found = np.zeros((depth + 1, len(self._back)), dtype=np.int64)
+        for e in range(depth + 1):
+            side = self._pointwise(u, v, e)
+            for f in self._live:
                 if f <= e and found[e - f].any():
                     side = (side - _times(self._flipped[f], found[e - f], p)) % p
             found[e] = _times(self._back, side, p)
+        return found
+
+    def coefficient(self, u: int, v: int, w: int, e: int) -> int:
+        """The coefficient of ``z^e sigma_w`` in ``sigma_u * sigma_v``, without the others."""
+        weights = self._functional(w, e)
+        return sum(int((self._pointwise(u, v, f) * weights[e - f] % self.p).sum()) for f in range(e + 1)) % self.p
+
+    def _pointwise(self, u: int, v: int, e: int) -> Ints:
+        """The coefficient of ``z^e`` in the product of coordinates, ``(N,)``."""
+        side: Ints = self.values[0, u] * self.values[e, v] % self.p
+        for f in range(1, e + 1):
+            side = (side + self.values[f, u] * self.values[e - f, v]) % self.p
+        return side
+
+    def _functional(self, w: int, depth: int) -> list[Ints]:
+        """What weighs coordinates to give the coefficient of ``sigma_w``: row w of the inverse change of basis, a series in z.
+
+        With F(z) the change of basis, row w of ``F^-1`` solves ``y F = row w of 1``, one power after the other; kept for the next
+        constant at w, and continued when a higher power is wanted.
+        """
+        found = self._weights.setdefault(w, [self._back[w]])
+        while len(found) <= depth:
+            side = np.zeros(len(self._back), dtype=np.int64)
+            for f in self._live:
+                if f <= len(found):
+                    side = (side + _times(self.values[f], found[len(found) - f], self.p)) % self.p
+            found.append(_times(self._back.T, (self.p - side) % self.p, self.p))
         return found
 
 
@@ -240,17 +272,24 @@ class Localisation:
         self.step = gcd(*X.q_degrees)
         self.seed = 0
         self._bounds: dict[tuple[int, int], int] = {}
+        self._points: dict[tuple[int, int, int], _Point] = {}
 
     @lru_cache(maxsize=64)  # noqa: B019  # lives as long as the variety
     def numbers(self, p: int, seed: int) -> _Numbers:
         """Residues for the simple roots and the divisor."""
         return _Numbers(self.X, p, seed)
 
-    @lru_cache(maxsize=256)  # noqa: B019
     def _point(self, p: int, seed: int, power: int, depth: int) -> _Point:
-        """The coordinates at the power-th power of the base point; one q needs no point but 1."""
-        base = [1] if len(self.X.marked) == 1 else [pow(x, power, p) for x in self._base(p)]
-        return _Point(self.X, p, self.numbers(p, seed), base, depth, self.step)
+        """The coordinates at the power-th power of the base point, up to ``z^depth`` or beyond; one q needs no point but 1."""
+        key = p, seed, power
+        found = self._points.get(key)
+        if found is None or found.depth < depth:
+            base = [1] if len(self.X.marked) == 1 else [pow(x, power, p) for x in self._base(p)]
+            self._points.pop(key, None)
+            if len(self._points) >= _MOST_POINTS:
+                del self._points[next(iter(self._points))]
+            found = self._points[key] = _Point(self.X, p, self.numbers(p, seed), base, depth, self.step)
+        return found
 
     def _base(self, p: int) -> list[int]:
         return [int(x) for x in np.random.default_rng(p).integers(2, p, size=len(self.X.marked))]
@@ -283,37 +322,50 @@ class Localisation:
         points = 1 if len(self.X.marked) == 1 else max(len(degrees_of_total(self.X, e * self.step)) for e in range(depth + 1))
         return points * (depth + 1) * (depth + 2) * self.X.number_of_classes**2
 
+    def constant(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree) -> int:
+        """One constant, without the other classes and without the powers of q beyond it; see the engine's for the cost."""
+        note_question()
+        weight = sum(a * b for a, b in zip(d, self.X.q_degrees, strict=True))
+        if u.length + v.length != w.length + weight or min(d) < 0:
+            return 0
+        e, points = weight // self.step, 1 if len(d) == 1 else len(degrees_of_total(self.X, weight))
+        bound = self.bound(u.index, v.index)
+        chosen, residues = self._primes_beyond(bound), []
+        for p in chosen:
+            found = [self._point(p, self.seed, k, e).coefficient(u.index, v.index, w.index, e) for k in range(points)]
+            residues.append(sum(a * b for a, b in zip(found, self._separating(p, d), strict=True)) % p)
+        return _put_together(chosen, residues, bound)
+
     def row(self, u: SchubertClass, v: SchubertClass) -> RowTerms:
         """The nonzero terms of ``sigma_u * sigma_v``."""
-        return self._extract(u, v, u.length + v.length)
-
-    def constant(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree) -> int:
-        """One constant, without the powers of q beyond it."""
-        weight = sum(a * b for a, b in zip(d, self.X.q_degrees, strict=True))
-        if u.length + v.length != w.length + weight:
-            return 0
-        return self._extract(u, v, weight).get((w, d), 0)
-
-    def _extract(self, u: SchubertClass, v: SchubertClass, most: int) -> RowTerms:
-        """The nonzero terms whose power of q has degree at most ``most``."""
         note_question()
-        X, total, depth = self.X, u.length + v.length, most // self.step
-        candidates = [degrees_of_total(X, e * self.step) if total - e * self.step >= 0 else () for e in range(depth + 1)]
+        total = u.length + v.length
+        candidates = [degrees_of_total(self.X, e * self.step) for e in range(total // self.step + 1)]
         bound = self.bound(u.index, v.index)
+        chosen = self._primes_beyond(bound)
+        residues = [self._residues(p, self.seed, u.index, v.index, candidates, total, equivariant=False) for p in chosen]
+        values = {key: _put_together(chosen, [found[key] for found in residues], bound) for key in residues[0]}
+        return {key: value for key, value in values.items() if value}
+
+    @staticmethod
+    def _primes_beyond(bound: int) -> list[int]:
+        """So many primes that their product exceeds the bound."""
         chosen = primes(1)
         while prod(chosen) <= bound:
             chosen = primes(len(chosen) + 1)
-        residues = [self._residues(p, self.seed, u.index, v.index, candidates, total, equivariant=False) for p in chosen]
-        result: RowTerms = {}
-        for key in residues[0]:
-            value, modulus = 0, 1
-            for p, found in zip(chosen, residues, strict=True):
-                value += modulus * ((found[key] - value) * pow(modulus, -1, p) % p)
-                modulus *= p
-            assert value <= bound, "a residue exceeds the bound: not a structure constant"
-            if value:
-                result[key] = value
-        return result
+        return chosen
+
+    @lru_cache(maxsize=4096)  # noqa: B019
+    def _separating(self, p: int, d: Degree) -> list[int]:
+        """The weights that take the coefficients of one power of z, at the powers of the base point, to that of ``q^d``."""
+        if len(d) == 1:
+            return [1]
+        degrees = degrees_of_total(self.X, sum(a * b for a, b in zip(d, self.X.q_degrees, strict=True)))
+        return _weights(self._nodes(p, degrees), degrees.index(d), p)
+
+    def _nodes(self, p: int, degrees: tuple[Degree, ...]) -> list[int]:
+        """The values of the monomials ``q^d`` at the base point."""
+        return [prod(pow(g, x, p) for g, x in zip(self._base(p), d, strict=True)) % p for d in degrees]
 
     def _residues(
         self, p: int, seed: int, u: int, v: int, candidates: list[tuple[Degree, ...]], total: int, *, equivariant: bool
@@ -321,7 +373,7 @@ class Localisation:
         """Residues of the constants, from the coefficients of z at all powers of the base point."""
         X, found, depth = self.X, {}, len(candidates) - 1
         count = 1 if len(X.marked) == 1 else max(map(len, candidates))
-        products = [self._point(p, seed, k, depth).product(u, v) for k in range(count)]
+        products = [self._point(p, seed, k, depth).product(u, v, depth) for k in range(count)]
         for e, degrees in enumerate(candidates):
             left = total - e * self.step
             level = tuple(w for w in X.classes if w.length <= left) if equivariant else X.of_length(left)
@@ -329,8 +381,7 @@ class Localisation:
                 continue
             values = np.stack([product[e, [w.index for w in level]] for product in products[: len(degrees)]])
             if len(X.marked) > 1:
-                nodes = [prod(pow(g, x, p) for g, x in zip(self._base(p), d, strict=True)) % p for d in degrees]
-                values = _vandermonde(nodes, values, p)
+                values = _vandermonde(self._nodes(p, degrees), values, p)
             for d, line in zip(degrees, values.tolist(), strict=True):
                 found.update({(w, d): value for w, value in zip(level, line, strict=True)})
         return found
@@ -345,24 +396,42 @@ class Localisation:
         return self._residues(primes(prime + 1)[prime], seed, u.index, v.index, candidates, total, equivariant=True)
 
 
+def _put_together(chosen: list[int], residues: list[int], bound: int) -> int:
+    """The number with these residues modulo these primes; it must not exceed the bound of the constant."""
+    value, modulus = 0, 1
+    for p, residue in zip(chosen, residues, strict=True):
+        value += modulus * ((residue - value) * pow(modulus, -1, p) % p)
+        modulus *= p
+    assert value <= bound, "a residue exceeds the bound: not a structure constant"
+    return value
+
+
+def _master(nodes: list[int], p: int) -> list[int]:
+    """The polynomial with these roots modulo p, lowest coefficient first."""
+    assert len(set(nodes)) == len(nodes), "the nodes must be distinct; another base point is needed"
+    master = [1]
+    for node in nodes:
+        master = [(a - node * b) % p for a, b in zip([0, *master], [*master, 0], strict=True)]
+    return master
+
+
+def _weights(nodes: list[int], j: int, p: int, master: list[int] | None = None) -> list[int]:
+    """The ``c_k`` with ``x_j = sum_k c_k values_k`` for the solution x of the Vandermonde system ``sum_j x_j nodes_j^k = values_k``."""
+    master, node = master or _master(nodes, p), nodes[j]
+    quotient, carry = [0] * len(nodes), 0
+    for k in range(len(nodes), 0, -1):
+        carry = (master[k] + node * carry) % p
+        quotient[k - 1] = carry
+    scale = pow(sum(c * pow(node, k, p) for k, c in enumerate(quotient)) % p, -1, p)
+    return [c * scale % p for c in quotient]
+
+
 def _vandermonde(nodes: list[int], values: Ints, p: int) -> Ints:
     """Solve ``sum_j x_j nodes_j^k = values_k`` for k = 0, 1, ... modulo p; ``(K, M) -> (K, M)``."""
-    assert len(set(nodes)) == len(nodes), "the nodes must be distinct; another base point is needed"
-    size = len(nodes)
-    master = [1]
-    for node in nodes:  # the polynomial with these roots, lowest coefficient first
-        master = [(a - node * b) % p for a, b in zip([0, *master], [*master, 0], strict=True)]
-    solution = np.zeros_like(values)
-    for j, node in enumerate(nodes):
-        quotient = [0] * size
-        carry = 0
-        for k in range(size, 0, -1):
-            carry = (master[k] + node * carry) % p
-            quotient[k - 1] = carry
-        scale = pow(sum(c * pow(node, k, p) for k, c in enumerate(quotient)) % p, -1, p)
-        weights = np.array([c * scale % p for c in quotient], dtype=np.int64)
-        for k in range(size):
-            solution[j] = (solution[j] + weights[k] * values[k]) % p
+    master, solution = _master(nodes, p), np.zeros_like(values)
+    for j in range(len(nodes)):
+        for weight, line in zip(_weights(nodes, j, p, master), values, strict=True):
+            solution[j] = (solution[j] + weight * line) % p
     return solution
 
 
@@ -402,7 +471,16 @@ class LocalisationEngine:
         return localisation(u.variety).row(u, v)
 
     def constant(self, u: SchubertClass, v: SchubertClass, w: SchubertClass, d: Degree) -> int:
-        """One constant; cheaper than its row if d is small."""
+        """One constant.
+
+        Cost: the first one at w and this power of q costs about as much as a row cut off at that power (for d = 0 nothing: a row
+        of the inverse change of basis is there); every further one at the same w, any u and v, only dot products, some
+        ``(e + 1)^2 / 2`` multiplications per class where a row takes ``e^2 / 2`` per pair of classes, for the e-th power. With
+        several q's, times the number of degrees of that power. Set-up as for a row, but up to this power only.
+
+        Raises:
+            OutOfReach: there are too many q's and d is too high.
+        """
         self.check(u.variety, max(u.length + v.length - w.length, 0))
         return localisation(u.variety).constant(u, v, w, d)
 

@@ -21,7 +21,7 @@ from typing import Any
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.oracle.chevalley import chevalley
 
-__all__ = ["Relation", "annihilator", "relation"]
+__all__ = ["Relation", "annihilator", "eliminated", "relation"]
 
 Weight = tuple[int, ...]
 
@@ -72,10 +72,10 @@ def _level(X: FlagVariety, length: int) -> dict[int, Relation]:
                     wanted.discard(w)
                     moving = True
                     break
-    return found | _eliminated(above, wanted, X.rank)
+    return found | eliminated(above, wanted, X.rank)
 
 
-def _eliminated(above: dict[int, list[tuple[int, Weight]]], wanted: set[int], rank: int) -> dict[int, Relation]:
+def eliminated(above: dict[int, list[tuple[int, Weight]]], wanted: set[int], rank: int) -> dict[int, Relation]:
     """Relations of the wanted classes from all rows ``sigma_{s_i} * sigma_z`` together, by exact row reduction."""
     rows: list[tuple[dict[int, Fraction], dict[tuple[int, int], Fraction]]] = []
     for z, covers in above.items():

@@ -11,25 +11,17 @@ from conjcheck.geometry.notation import text_of_permutation
 from conjcheck.oracle.engine import Product
 from conjcheck.oracle.equivariant import Sampled
 from conjcheck.testing.answer import shown_value
+from conjcheck.testing.diagnosis import Diagnosis
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer
 from conjcheck.testing.outcome import Outcome, environment, smaller_agree
 
-__all__ = ["describe_class", "summary_table", "text_report"]
+__all__ = ["describe_class", "replay_line", "summary_table", "text_report"]
 
 _WIDTH = 110
 _LABEL = 13
 _MOST_LINES = 8
 _MOST_TERMS = 30
-
-_REMEDIES = {
-    "crashed": "the rule raised; the end of the traceback is below",
-    "unstable": "a rule must be a function of its arguments alone: look for randomness, mutable defaults, used-up iterators",
-    "too-slow": "raise the limit with --conjcheck-call-limit, narrow the premise, or return the whole product from (X, u, v)",
-    "not-a-count": "return an int of 0 or more, or an iterable of distinct hashable objects",
-    "undefined": "state the domain as premise=, so that cases outside it are not compared",
-    "not-independent": "a rule may not use conjcheck's product, constant or table: a verdict would say nothing",
-}
 
 
 def text_report(outcome: Outcome, *, replay: str = "") -> str:
@@ -45,17 +37,27 @@ def text_report(outcome: Outcome, *, replay: str = "") -> str:
         lines += _entry("note", outcome.note)
     if outcome.conjecture.statement:
         lines += _entry("statement", outcome.conjecture.statement)
+    if outcome.conjecture.choice:
+        others = outcome.conjecture.number_of_variants - 1
+        lines += _entry(
+            "choice", f"{outcome.conjecture.choice_in_words}; {others:,} other {'variant' if others == 1 else 'variants'}"
+        )
     if finding is None:
         lines += _entry("compared", outcome.scope)
     else:
         lines += _failure(outcome, finding)
         if replay:
-            lines += _entry("replay", f"{replay} --conjcheck-case {shlex.quote(str(finding.where))}", wrap=False)
+            lines += _entry("replay", replay_line(replay, finding), wrap=False)
         if outcome.cases or outcome.minimum:
             extra = outcome.minimum.below - outcome.cases if outcome.minimum else 0
             lines += _entry("compared", outcome.scope + (f"; and {extra:,} more in the failing row" if extra > 0 else ""))
     lines += _entry("environment", environment() + (f"; seed {outcome.seed}" if outcome.seed else ""))
     return "\n".join(lines)
+
+
+def replay_line(command: str, finding: Finding) -> str:
+    """The command that repeats exactly the case of a finding."""
+    return f"{command} --conjcheck-case {shlex.quote(str(finding.where))}"
 
 
 def _failure(outcome: Outcome, finding: Finding) -> list[str]:
@@ -68,7 +70,7 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
         lines += _entry("law", f"broken without any oracle: {outcome.broken_law}")
     if finding.status != "refuted":
         lines += _entry("problem", finding.detail)
-        lines += _entry("remedy", _remedy(outcome, finding))
+        lines += _entry("remedy", outcome.remedy)
         if finding.trace:
             lines += ["", *("    " + line for line in finding.trace.rstrip().splitlines()), ""]
         return lines + _entry("minimal", _minimality(outcome))
@@ -87,22 +89,14 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
         shown = [f"{side}: {_product(product)}" for side, product in sides if product is not None]
         for label, text in zip(["product", ""], shown, strict=False):
             lines += _entry(label, text)
+    for place, text in enumerate(outcome.derivation.lines if outcome.derivation else ()):
+        lines += _entry("" if place else "why", text)
     lines += _entry("minimal", _minimality(outcome))
     if outcome.layer:
         lines += _layer(outcome.layer, finding.row)
+    if outcome.diagnosis:
+        lines += _diagnosis(outcome.diagnosis, where)
     return lines
-
-
-def _remedy(outcome: Outcome, finding: Finding) -> str:
-    """What to do about a finding that is no refutation."""
-    if finding.status == "not-a-count":
-        if "keys" in finding.detail:
-            return "key a whole product by (w, d), w a class of X and d a tuple; or by w alone, with ring='classical'"
-        if outcome.conjecture.role == "claim":
-            return "return True or False on every path"
-        if outcome.conjecture.is_equivariant:
-            return "return a polynomial built from simple_roots(X)"
-    return _REMEDIES[finding.status]
 
 
 def _minimality(outcome: Outcome) -> str:
@@ -130,6 +124,24 @@ def _layer(layer: Layer, row: Row) -> list[str]:
         lines += _entry("", str(finding.where).removeprefix(f"{row.X}: ") + values, wrap=False)
     if cases > _MOST_LINES:
         lines += _entry("", f"... {cases - _MOST_LINES:,} more")
+    return lines
+
+
+def _diagnosis(diagnosis: Diagnosis, where: Case | Row) -> list[str]:
+    """What all failures have in common, and where the rule may be right."""
+    lines = _entry("errors", "; ".join(diagnosis.signs)) if diagnosis.signs else []
+    other = [f"smallest failure with {words}: {case}" for words, case in diagnosis.firsts if case != where]
+    for place, text in enumerate(other):
+        lines += _entry("" if place or lines else "errors", text)
+    lines += _entry("failures", diagnosis.scope)
+    for condition in diagnosis.conditions:
+        same = f" (the same at these cases: {'; '.join(condition.others)})" if condition.others else ""
+        lines += _entry("", f"{condition.words}{same}: {diagnosis.counts(condition)}")
+    for text in diagnosis.unusable:
+        lines += _entry("", f"your feature could not be used: {text}")
+    lines += _entry("suggestion", diagnosis.suggested)
+    if diagnosis.suggestion and diagnosis.suggestion.premise:
+        lines += _entry("", diagnosis.suggestion.premise, wrap=False)
     return lines
 
 

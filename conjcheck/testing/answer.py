@@ -7,7 +7,7 @@ from typing import Any
 from conjcheck.geometry.polynomial import RootPolynomial, read_polynomial
 from conjcheck.oracle.equivariant import MOST_DEGREE
 
-__all__ = ["Value", "WrongAnswer", "count_of", "polynomial_of", "shown_objects", "shown_value", "truth_of"]
+__all__ = ["Value", "WrongAnswer", "count_of", "plain_value", "polynomial_of", "shown_objects", "shown_value", "truth_of"]
 
 Value = int | RootPolynomial
 """What a rule gives at a case: a count, or in the equivariant rings a polynomial."""
@@ -48,6 +48,11 @@ def shown_value(value: object) -> str:
     if isinstance(value, int) and value.bit_length() >= 4_000:
         return f"an integer of {value.bit_length():,} bits"
     return str(value)
+
+
+def plain_value(value: object) -> int | str | None:
+    """A value for JSON: small integers as they are, others and polynomials as text."""
+    return value if value is None or (isinstance(value, int) and value.bit_length() < 64) else shown_value(value)
 
 
 def polynomial_of(answer: Any, rank: int) -> RootPolynomial:

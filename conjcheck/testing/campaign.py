@@ -7,6 +7,7 @@ from concurrent.futures import FIRST_COMPLETED, Executor, Future, ThreadPoolExec
 from dataclasses import dataclass, field, replace
 from pathlib import Path
 from time import monotonic
+from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import LedgerError, NotationError, OutOfReach
@@ -47,7 +48,7 @@ class Terms:
         """The settings that make a result another one, as the ledger keeps them."""
         words = ["rows" if self.draws is None else f"sample seed {self.seed}"]
         words += ["every failure"] * self.every + ["cross-check"] * self.cross_check
-        return ", ".join([*words, f"call limit {self.call_limit:g}", f"memory {self.memory}"])
+        return ", ".join([*words, f"call limit {self.call_limit!r}", f"memory {self.memory}"])
 
 
 @dataclass(frozen=True, slots=True)
@@ -166,9 +167,11 @@ def run_campaign(
         try:
             walk.through(plans, pool, ahead=_AHEAD * jobs)
         finally:
+            walk.forget()
             if executor is None:
+                pool.shutdown(wait=False, cancel_futures=True)
                 close_all()  # what is still being compared is not wanted any more
-                pool.shutdown(cancel_futures=True)
+                pool.shutdown()
     finally:
         if kept:
             kept.__exit__(None, None, None)
@@ -202,15 +205,14 @@ class _Walk:
             if not self._take() and not self.waiting and not more:
                 return
             if self._ended():
-                self._forget()
                 return
             running = [found for _, found in self.waiting if isinstance(found, Future)]
             if running and isinstance(self.waiting[0][1], Future):
                 wait(running, return_when=FIRST_COMPLETED)
-                self._settle()
+                more = self._settle() and more
 
-    def _settle(self) -> None:
-        """Keep what is finished, in the ledger at once; a failure makes all later chunks superfluous."""
+    def _settle(self) -> bool:
+        """Keep what is finished, in the ledger at once; a failure makes all later chunks superfluous: then no more are wanted."""
         for k, (plan, found) in enumerate(self.waiting):
             if isinstance(found, Future) and found.done():
                 result = _result(plan, found)
@@ -223,6 +225,7 @@ class _Walk:
             _, found = self.waiting.pop()
             if isinstance(found, Future):
                 found.cancel()
+        return stop is None
 
     def _take(self) -> bool:
         """Add up what is finished from the first chunk on without a gap."""
@@ -241,7 +244,8 @@ class _Walk:
         result = self.results[self.last.space].result
         return result.ended or bool(result.problem)
 
-    def _forget(self) -> None:
+    def forget(self) -> None:
+        """Take back what was given out and is not wanted any more."""
         for _, found in self.waiting:
             if isinstance(found, Future):
                 found.cancel()
@@ -252,12 +256,9 @@ class _Walk:
         if found is None:
             return None
         try:
-            result = ChunkResult.parse(found)
-        except (TypeError, ValueError):
-            where = f"rows {plan.chunk.first} to {plan.chunk.last} of {plan.chunk.space}"
-            raise LedgerError(
-                f"{self.kept and self.kept.path}: damaged: no result for {where}; choose another with --ledger"
-            ) from None
+            result = _parsed(plan, found)
+        except (TypeError, ValueError) as error:
+            raise LedgerError(f"{self.kept and self.kept.path}: damaged: {error}; choose another with --ledger") from None
         self.resumed += result.seen
         self._tell(plan, result)
         return result
@@ -277,17 +278,39 @@ class _Walk:
 def _result(plan: _Plan, future: "Future[str]") -> ChunkResult:
     """The result of a future; what ended it otherwise is a problem."""
     try:
-        return ChunkResult.parse(json.loads(future.result()))
+        found = json.loads(future.result())
+        if isinstance(found, dict) and found.get("problem"):
+            return ChunkResult(problem=str(found["problem"]))
+        return _parsed(plan, found)
     except Exception as error:  # whatever an executor raises: a lost worker, a lost network
         return ChunkResult(
             problem=f"{plan.chunk.space}, rows {plan.chunk.first} to {plan.chunk.last}: {type(error).__name__}: {error}"
         )
 
 
+def _parsed(plan: _Plan, found: dict[str, Any]) -> ChunkResult:
+    """The result of a chunk in JSON, all of it.
+
+    Raises:
+        ValueError: it is no result, or not one of just these rows.
+    """
+    chunk = plan.chunk
+    result = ChunkResult.parse(found)
+    if not result.covers(chunk.first, chunk.last) or (result.ended and chunk.every):
+        raise ValueError(
+            f"expected the result of rows {chunk.first} to {chunk.last} of {chunk.space}, got one of {result.seen} rows"
+        )
+    return result
+
+
 def _check(conjecture: Conjecture, spaces: list[FlagVariety]) -> None:
     if not Path(conjecture.file).is_file():
         raise NotationError(
             f"expected a conjecture in a file, got {conjecture.name} in {conjecture.file}; write it to conjectures/"
+        )
+    if any(value != conjecture.variants[name][0] for name, value in conjecture.choice.items()):
+        raise NotationError(
+            f"expected the rule {conjecture.name} as it stands, got {conjecture.choice_in_words}; make that the first choice in its file"
         )
     if not spaces:
         raise NotationError("expected at least one flag variety to survey, got none")

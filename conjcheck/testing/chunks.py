@@ -13,7 +13,7 @@ from conjcheck.geometry.case import Case, Row, count_cases, rows
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.answer import plain_value
 from conjcheck.testing.compare import Comparer
-from conjcheck.testing.finding import Finding
+from conjcheck.testing.finding import STATUSES, Finding
 
 __all__ = ["Chunk", "ChunkResult", "chunks", "compare_chunk", "entry_of", "rows_of_chunk", "sample_chunks"]
 
@@ -120,17 +120,42 @@ class ChunkResult:
         Raises:
             ValueError: it is none.
         """
-        numbers = {"seen", "rows", "cases", "nonzero", "failing_rows", "failing", "before"}
-        good = set(found) == set(cls.__dataclass_fields__) and all(type(found[n]) is int and found[n] >= 0 for n in numbers)
-        good = (
-            good and isinstance(found["findings"], list) and isinstance(found["ended"], bool) and isinstance(found["problem"], str)
-        )
-        good = good and isinstance(found["seconds"], (int, float))
-        for entry in found["findings"] if good else ():
-            good = good and isinstance(entry, dict) and isinstance(entry.get("where"), str) and isinstance(entry.get("status"), str)
-        if not good:
+        if set(found) != set(cls.__dataclass_fields__) or not all(_KINDS[name](value) for name, value in found.items()):
             raise ValueError("expected the result of a chunk")
-        return cls(**{**found, "findings": tuple(found["findings"])})
+        result = cls(**{**found, "findings": tuple(found["findings"])})
+        if not (
+            result.rows <= result.seen
+            and max(result.nonzero, result.before, result.rows) <= result.cases
+            and bool(result.findings) == bool(result.failing) == bool(result.failing_rows)
+            and max(len(result.findings), result.failing_rows) <= result.failing
+            and (result.failing or not result.ended)
+        ):
+            raise ValueError("expected the result of a chunk with numbers that go together")
+        return result
+
+    def covers(self, first: int, last: int) -> bool:
+        """Whether it is the whole result of those rows: all of them seen, or fewer because a failure ended it."""
+        return not self.problem and (self.seen < last - first if self.ended else self.seen == last - first)
+
+
+def _is_number(value: Any) -> bool:
+    return type(value) is int and 0 <= value < 2**63
+
+
+def _is_finding(value: Any) -> bool:
+    if not isinstance(value, dict) or not all(isinstance(value.get(name), str) for name in ("where", "status", "detail", "trace")):
+        return False
+    return value["status"] in STATUSES[1:] and "rule" in value and "oracle" in value
+
+
+_KINDS: dict[str, Callable[[Any], bool]] = {
+    **dict.fromkeys(("seen", "rows", "cases", "nonzero", "failing_rows", "failing", "before"), _is_number),
+    "seconds": lambda value: type(value) in (int, float) and 0 <= value < float("inf"),
+    "findings": lambda value: isinstance(value, list) and all(map(_is_finding, value)),
+    "ended": lambda value: isinstance(value, bool),
+    "problem": lambda value: isinstance(value, str),
+}
+"""What each field of a result must be in JSON."""
 
 
 def chunks(conjecture: Conjecture, X: FlagVariety) -> Iterator[tuple[int, int]]:
@@ -202,11 +227,11 @@ def _compare_row(comparer: Comparer, row: Row, *, every: bool) -> ChunkResult:
         return ChunkResult(1, int(result.cases > 0), result.cases, result.nonzero, before=result.cases)
     if not every:
         return ChunkResult(failing_rows=1, failing=1, findings=(entry_of(first),), ended=True)
-    found, _ = comparer.findings(row)
+    found, whole = comparer.findings(row)
     found = found or [first]
     kept = tuple(entry_of(finding) for finding in found[:_MOST_KEPT])
     cases = nonzero = 0
-    if first.status == "refuted":
+    if first.status == "refuted" and whole:
         truth = comparer.truth(row)
         if comparer.conjecture.premise_by_rows:
             cases, nonzero = comparer.size(row), len(truth)

@@ -1,7 +1,7 @@
 """The one way to compare: a rule against the oracle, a row at a time, zeros included."""
 
 import random
-from collections.abc import Container, Iterable
+from collections.abc import Iterable
 from contextlib import nullcontext
 from dataclasses import dataclass
 from time import perf_counter
@@ -17,7 +17,10 @@ from conjcheck.testing.answer import Value, WrongAnswer, shown_objects, shown_va
 from conjcheck.testing.calls import Key, RuleCalls, Values
 from conjcheck.testing.finding import Finding
 
-__all__ = ["Comparer", "Key", "RowResult", "Truth"]
+__all__ = ["Comparer", "Key", "RowResult", "Truth", "sample_of_row"]
+
+_MOST_SETTLED = 20
+"""Of all failures in one row so many are asked for again: a rule that is no function shows it in the first ones."""
 
 Truth = dict[Key, Any]
 """The oracle's nonzero terms of a row: integers, or sampled polynomials in the equivariant rings."""
@@ -63,7 +66,9 @@ class Comparer(RuleCalls):
         terms = row_terms(row.u, row.v, cross_check=self.cross_check)
         return {key: n for key, n in terms.items() if not (self.conjecture.is_classical and any(key[1]))}
 
-    def row(self, row: Row, *, deadline: float = float("inf"), most_cases: int | None = None) -> RowResult:
+    def row(
+        self, row: Row, *, deadline: float = float("inf"), most_cases: int | None = None, truth: Truth | None = None
+    ) -> RowResult:
         """Compare one row, up to the first thing wrong.
 
         Args:
@@ -71,13 +76,16 @@ class Comparer(RuleCalls):
             deadline: stop at this ``perf_counter()`` time, between two calls.
             most_cases: for a rule that answers case by case, compare at most about this many: all nonzero constants, and a sample
                 of the zeros that is the same every time.
+            truth: what ``truth(row)`` gave, if several conjectures that speak about the same constants share it.
 
         Raises:
             OutOfReach: no engine serves this row.
         """
-        if not self.inside(row):  # the oracle is not asked in vain
-            return RowResult(0, 0, None, True)
-        return self._compare(row, self.truth(row), deadline=deadline, most_cases=most_cases)
+        if truth is None:
+            if not self.inside(row):  # the oracle is not asked in vain
+                return RowResult(0, 0, None, True)
+            truth = self.truth(row)
+        return self._compare(row, truth, deadline=deadline, most_cases=most_cases)
 
     def findings(self, row: Row, *, deadline: float = float("inf")) -> tuple[list[Finding], bool]:
         """Everything that differs in one row, in order, and whether the whole row was looked at.
@@ -86,16 +94,12 @@ class Comparer(RuleCalls):
         """
         if not self.inside(row):
             return [], True
-        truth, found = self.truth(row), list[Finding]()
-        skipped: set[Key] = set()
-        while True:
-            result = self._compare(row, truth, deadline=deadline, skipped=skipped)
-            if result.finding is None:
-                return found, result.complete
-            found.append(result.finding)
-            if not isinstance(result.finding.where, Case) or result.finding.status != "refuted":
-                return found, not isinstance(result.finding.where, Case)
-            skipped.add((result.finding.where.w, result.finding.where.d))
+        found: list[Finding] = []
+        result = self._compare(row, self.truth(row), deadline=deadline, collected=found)
+        found[:_MOST_SETTLED] = [self.settle(finding) for finding in found[:_MOST_SETTLED]]
+        if result.finding is None:
+            return found, result.complete
+        return [*found, result.finding], not isinstance(result.finding.where, Case)
 
     def case(self, case: Case) -> Finding | None:
         """Compare one single case."""
@@ -131,10 +135,10 @@ class Comparer(RuleCalls):
         *,
         deadline: float = float("inf"),
         most_cases: int | None = None,
-        skipped: Container[Key] = (),
+        collected: list[Finding] | None = None,
         only: Key | None = None,
     ) -> RowResult:
-        """The comparison itself: the rule's answers against the truth, outcome by outcome."""
+        """The comparison itself: the rule's answers against the truth, outcome by outcome; with a list to collect them, all failures."""
         conjecture, limit, claimed, oracle = self.conjecture, self.limit, self.is_claim, self.oracle
         rule, classical = conjecture.rule, conjecture.is_classical
         X, u, v = row.X, row.u, row.v
@@ -161,7 +165,7 @@ class Comparer(RuleCalls):
             else:
                 keys = sorted({*values, *self.outcomes(row)}, key=place_in_row)
         elif most_cases is not None and size > most_cases:
-            keys, complete = _sample(row, truth, most_cases, self.conjecture), False
+            keys, complete = sample_of_row(row, truth, most_cases, self.conjecture), False
         else:
             keys = self.outcomes(row)
         if only is not None:
@@ -169,8 +173,6 @@ class Comparer(RuleCalls):
         cases = nonzero = 0
         for key in keys:
             self._progress = key, cases, nonzero
-            if skipped and key in skipped:
-                continue
             w, d = key
             limit.started = started = perf_counter()
             if started > deadline:
@@ -188,6 +190,9 @@ class Comparer(RuleCalls):
                     count = answer if counting and type(answer) is int and answer >= 0 else self.read(answer, row)
             if count != true:
                 limit.started = 0.0
+                if collected is not None:
+                    collected.append(self._difference(Case(X, u, v, w, d), count, true))
+                    continue
                 if values is not None and premise is None:
                     cases = self.below(row, key)
                 return RowResult(cases, nonzero, self._difference(Case(X, u, v, w, d), count, true), complete)
@@ -215,7 +220,7 @@ class Comparer(RuleCalls):
         return Finding("refuted", place, count, true, f"the rule gives {shown_value(count)}, the oracle {true}", objects)
 
 
-def _sample(row: Row, truth: Truth, most: int, conjecture: Conjecture) -> list[Key]:
+def sample_of_row(row: Row, truth: Truth, most: int, conjecture: Conjecture) -> list[Key]:
     """All nonzero outcomes of a row and a sample of the others, the same every time, in order."""
     chooser = random.Random(str(row))  # noqa: S311  # a reproducible sample, no secret
     X, total = row.X, row.u.length + row.v.length

@@ -4,12 +4,15 @@ from collections.abc import Callable
 from dataclasses import dataclass, field, replace
 from itertools import islice
 from time import perf_counter
+from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import DeclarationError, NotationError, OutOfReach
+from conjcheck.evidence.derivation import Derivation, derivation
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.compare import Comparer
+from conjcheck.testing.diagnose import diagnose
 from conjcheck.testing.explain import explain
 from conjcheck.testing.finding import Finding, Found
 from conjcheck.testing.laws import NoValue, broken_laws, laws_apply
@@ -34,7 +37,7 @@ class Effort:
         laws: the laws.
         probe: all probes together.
         draws: how many times the examples of the Hypothesis profile in force are drawn in a random part.
-        minimise, layer: after a failure, looking below it and collecting the layer.
+        minimise, layer, diagnosis: after a failure, looking below it, collecting the layer, and asking what all failures have in common.
         most_cases: cases compared per row in a probe, for rules that answer case by case.
         most_classes: the largest space a probe goes to, in classes.
     """
@@ -45,14 +48,15 @@ class Effort:
     draws: int
     minimise: float
     layer: float
+    diagnosis: float
     most_cases: int
     most_classes: int
 
 
 EFFORTS = {
-    "quick": Effort(2.0, 0.5, 1.0, 1, 5.0, 5.0, 500, 800),
-    "normal": Effort(10.0, 1.0, 4.0, 1, 20.0, 60.0, 2_000, 5_040),
-    "thorough": Effort(120.0, 10.0, 60.0, 50, 240.0, 120.0, 20_000, 40_320),
+    "quick": Effort(2.0, 0.5, 1.0, 1, 5.0, 5.0, 2.0, 500, 800),
+    "normal": Effort(10.0, 1.0, 4.0, 1, 20.0, 60.0, 10.0, 2_000, 5_040),
+    "thorough": Effort(120.0, 10.0, 60.0, 50, 240.0, 120.0, 60.0, 20_000, 40_320),
 }
 """The levels of effort by name."""
 
@@ -101,6 +105,7 @@ class Examination:
             coverage.cases,
             coverage.nonzero,
             seconds=perf_counter() - started,
+            spaces=_spaces(coverage),
         )
 
     def laws(self, *, seed: int | None = None) -> Outcome | None:
@@ -240,6 +245,7 @@ class Examination:
             cases=count.cases,
             nonzero=count.nonzero,
             seconds=perf_counter() - started,
+            spaces=tuple({"space": X.name, "drawn": True} for X in spaces),
         )
 
     def work_out(
@@ -252,6 +258,7 @@ class Examination:
             minimum = minimise(self.comparer, finding, self.coverage, budget=self.effort.minimise)
         finding = minimum.finding
         layer = layer_of(self.comparer, finding, budget=self.effort.layer) if finding.status == "refuted" else None
+        diagnosis = diagnose(self.comparer, minimum, layer, budget=self.effort.diagnosis) if layer else None
         coverage = self.coverage
         outcome = Outcome(
             self.conjecture,
@@ -266,6 +273,8 @@ class Examination:
             minimum=minimum,
             layer=layer,
             broken_law=broken_law,
+            diagnosis=diagnosis,
+            spaces=_spaces(coverage),
         )
         self.failure = self._describe(outcome, started)
         return self.failure
@@ -276,7 +285,17 @@ class Examination:
         if finding and finding.status == "refuted":
             finding, how = confirm(finding)
             outcome = replace(outcome, finding=finding, confirmed_by=how, explanation=explain(self.comparer, finding))
+            outcome = replace(outcome, derivation=self._derive(finding.where))
         return replace(outcome, seconds=perf_counter() - started)
+
+    def _derive(self, where: Case | Row) -> Derivation | None:
+        """A chain that leads to the oracle's value, where there is a short one."""
+        if not isinstance(where, Case) or self.conjecture.is_equivariant:
+            return None
+        try:
+            return derivation(where)
+        except OutOfReach:
+            return None
 
 
 def examine(
@@ -315,6 +334,13 @@ def examine(
         if not examination.failure:
             outcomes.append(examination.probe(spaces, examination.effort.probe / len(levels), seed=seed))
     return [outcome for outcome in outcomes if outcome]
+
+
+def _spaces(coverage: Coverage) -> tuple[dict[str, Any], ...]:
+    """How far each space was compared, then those in between that were not, in JSON types."""
+    last = coverage.spaces[-1].X if coverage.spaces else None
+    missed = [X for X in coverage.skipped if last and last > X]
+    return (*(s.as_json() for s in coverage.spaces), *({"space": X.name, "out_of_reach": True} for X in missed))
 
 
 def _nothing(coverage: Coverage) -> str:

@@ -15,7 +15,9 @@ import threading
 import weakref
 from dataclasses import asdict, replace
 from pathlib import Path
+from queue import Empty, SimpleQueue
 from time import monotonic
+from typing import Any
 
 from conjcheck.geometry.case import Case, Row, outcomes
 from conjcheck.testing.chunks import Chunk, ChunkResult, entry_of, rows_of_chunk
@@ -41,6 +43,10 @@ class _Closed(Exception):
     """The process was ended by :func:`close_all`."""
 
 
+class _Full(Exception):
+    """The process ran short of memory, but it had compared other chunks before."""
+
+
 class _Process:
     """One worker process and the file of its marks."""
 
@@ -51,12 +57,16 @@ class _Process:
         self._path = Path(name)
         self._marks = Marks(self._path)
         self._child = subprocess.Popen(  # noqa: S603  # ourselves
-            [sys.executable, "-m", "conjcheck.testing.worker", name],
+            [sys.executable, "-P", "-m", "conjcheck.testing.worker", name],
             stdin=subprocess.PIPE,
             stdout=subprocess.PIPE,
+            stderr=subprocess.DEVNULL,
             start_new_session=True,  # Ctrl-C is for whoever runs the survey
+            env={**os.environ, "PYTHONPATH": os.pathsep.join(map(os.path.abspath, sys.path))},  # the modules that are found here
         )
-        self._answer = b""
+        self._lines: SimpleQueue[bytes] = SimpleQueue()
+        threading.Thread(target=_read, args=(self._child, self._lines), daemon=True).start()
+        self._task = 0
         self.close = weakref.finalize(self, _end, self._child, self._path)
 
     @property
@@ -64,54 +74,84 @@ class _Process:
         """The process."""
         return self._child.pid
 
-    def run(self, chunk: Chunk, *, careful: bool = False) -> ChunkResult:
-        """Compare a chunk there.
+    @property
+    def lives(self) -> bool:
+        """Whether it may be given a chunk."""
+        return self.close.alive and self._child.poll() is None
+
+    def run(self, chunk: Chunk, *, careful: bool = False, until: int | None = None) -> ChunkResult:
+        """Compare a chunk there, see ``worker.run_chunk``.
 
         Raises:
             _Died: the process did not survive it, or did not answer and was ended.
+            _Full: it ran short of memory, and a fresh one may not.
+            _Closed: it was ended by :func:`close_all`.
         """
         assert self._child.stdin is not None, "it has a pipe"
-        reader = threading.Thread(target=self._read, daemon=True)
-        self._answer = b""
         self._marks.clear()
-        with contextlib.suppress(OSError):  # it is dead: noticed below
-            self._child.stdin.write(json.dumps({"chunk": asdict(chunk), "careful": careful}).encode() + b"\n")
+        self._task += 1
+        task = {"task": self._task, "chunk": asdict(chunk), "careful": careful, "until": until}
+        with contextlib.suppress(OSError, ValueError):  # it is dead, or closed: noticed below
+            self._child.stdin.write(json.dumps(task).encode() + b"\n")
             self._child.stdin.flush()
-        reader.start()
-        patience = chunk.call_limit + _GRACE
+        line, slow = self._answer(chunk.call_limit + _GRACE)
+        try:
+            answer = json.loads(line)
+            if answer["task"] != self._task:
+                raise ValueError("an answer to something else")
+            result = ChunkResult.parse(answer["result"])
+        except (ValueError, TypeError, KeyError):
+            if not self.close.alive:
+                raise _Closed from None
+            with contextlib.suppress(subprocess.TimeoutExpired):
+                self._child.wait(0.5)
+            _end_group(self._child)
+            _, row, outcome = self._marks.read()
+            raise _Died(_ending(self._child.wait(), chunk, slow=slow), row, outcome, slow=slow) from None
+        if answer["again"]:
+            raise _Full
+        return result
+
+    def _answer(self, patience: float) -> tuple[bytes, bool]:
+        """The next line, nothing if there is none any more; and whether it was ended since its heart had stopped."""
         heard, beat = monotonic(), -1
-        slow = False
-        while reader.is_alive():
-            reader.join(0.5)
+        while True:
+            with contextlib.suppress(Empty):
+                return self._lines.get(timeout=0.5), False
             now, _, _ = self._marks.read()
             if now != beat:
                 heard, beat = monotonic(), now
-            elif monotonic() - heard > patience and reader.is_alive():
-                slow = True
-                self._child.kill()
-        try:
-            return ChunkResult.parse(json.loads(self._answer))
-        except ValueError:
-            if not self.close.alive:
-                raise _Closed from None
-            self._child.kill()
-            code = self._child.wait()
-            _, row, outcome = self._marks.read()
-            raise _Died(_ending(code, chunk, slow=slow), row, outcome, slow=slow) from None
+            if self._child.poll() is not None:  # a child of its own may hold the pipe open: do not wait for its end
+                with contextlib.suppress(Empty):
+                    return self._lines.get(timeout=0.5), False
+                return b"", False
+            if monotonic() - heard > patience:
+                return b"", True
 
-    def _read(self) -> None:
-        assert self._child.stdout is not None, "it has a pipe"
-        self._answer = self._child.stdout.readline()
+
+def _read(child: subprocess.Popen[bytes], lines: "SimpleQueue[bytes]") -> None:
+    """Pass on what a worker process says, line by line; at the end nothing."""
+    assert child.stdout is not None, "it has a pipe"
+    with child.stdout as answers:
+        for line in answers:
+            lines.put(line)
+    lines.put(b"")
+
+
+def _end_group(child: subprocess.Popen[bytes]) -> None:
+    """Kill a worker process and the children that its rule may have left behind."""
+    with contextlib.suppress(OSError, AttributeError):
+        os.killpg(child.pid, signal.SIGKILL)
+    child.kill()
 
 
 def _end(child: subprocess.Popen[bytes], path: Path) -> None:
     """End a worker process: nothing that it does is needed any more."""
-    child.kill()
+    _end_group(child)
     child.wait()
-    for pipe in (child.stdin, child.stdout):
-        if pipe is not None:
-            with contextlib.suppress(OSError):
-                pipe.close()
+    if child.stdin is not None:
+        with contextlib.suppress(OSError):
+            child.stdin.close()
     path.unlink(missing_ok=True)
 
 
@@ -126,22 +166,30 @@ def _ending(code: int, chunk: Chunk, *, slow: bool) -> str:
 
 _here = threading.local()
 _all: "weakref.WeakSet[_Process]" = weakref.WeakSet()
+_closed = 0
+"""How often ``close_all`` was called: a chunk begun before is not to start a process any more."""
 
 
 def _process(*, fresh: bool = False) -> _Process:
-    """The process of this thread."""
-    if fresh and (old := getattr(_here, "process", None)):
+    """The process of this thread, a new one if that is not alive."""
+    if _here.closed != _closed:
+        raise _Closed
+    old: _Process | None = getattr(_here, "process", None)
+    if old is not None and not fresh and old.lives:
+        return old
+    if old is not None:
         old.close()
-        _here.process = None
-    if getattr(_here, "process", None) is None:
-        _here.process = _Process()
-        _all.add(_here.process)
-    found: _Process = _here.process
-    return found
+    new = _here.process = _Process()
+    _all.add(new)
+    if _here.closed != _closed:  # meanwhile
+        new.close()
+    return new
 
 
 def close_all() -> None:
     """End all worker processes of this process; a chunk in flight is lost."""
+    global _closed  # noqa: PLW0603
+    _closed += 1
     for process in list(_all):
         process.close()
 
@@ -157,48 +205,79 @@ def isolated(text: str) -> str:
         again, that is a finding (``crashed`` or ``too-slow``); if not, it was killed from outside and the chunk is run again.
     """
     chunk = Chunk.parse(text)
-    total, deaths, place = ChunkResult(), 0, chunk.first
-    while place < chunk.last and not total.ended and not total.problem:
-        try:
-            total += _process().run(chunk.part(place, chunk.last))
-            break
-        except _Closed:
-            total += ChunkResult(problem="stopped")
-        except _Died as death:
-            row = death.row
-            found = _alone(chunk.part(row, row + 1)) if place <= row < chunk.last else None
-            if found is None:
-                deaths += 1
-                if deaths == _MOST_DEATHS:
-                    total += ChunkResult(
-                        problem=f"{chunk.space}: {death.how}, {deaths} times, but not in a row that was compared alone"
-                    )
-                continue
-            if row > place:
-                try:
-                    total += _process().run(chunk.part(place, row))
-                except (_Died, _Closed):
-                    continue
-            total += found if chunk.every else replace(found, seen=0, ended=True)
-            place = row + 1
+    _here.closed = _closed
+    try:
+        total = _survived(chunk)
+    except _Closed:
+        total = ChunkResult(problem="stopped")
+    if not total.problem and not total.covers(chunk.first, chunk.last):
+        total = ChunkResult(
+            problem=f"{chunk.space}: rows {chunk.first} to {chunk.last} gave {total.seen} rows: a fault of conjcheck"
+        )
     return json.dumps(total.as_json())
 
 
+def _survived(chunk: Chunk) -> ChunkResult:
+    """The result of a chunk, whatever it does to its process."""
+    total, deaths, place, fresh = ChunkResult(), 0, chunk.first, False
+    while place < chunk.last and not total.ended and not total.problem:
+        try:
+            return total + _process(fresh=fresh).run(chunk.part(place, chunk.last))
+        except _Full:
+            fresh = True
+            continue
+        except _Died as death:
+            row, how = death.row, death.how
+        fresh = False
+        found = _alone(chunk.part(row, row + 1)) if place <= row < chunk.last else None
+        try:
+            before = _process().run(chunk.part(place, row)) if found and row > place else ChunkResult()
+        except (_Died, _Full):
+            found = None
+        if found is None:
+            deaths += 1
+            if deaths == _MOST_DEATHS:
+                return total + ChunkResult(
+                    problem=f"{chunk.space}: {how}, {deaths} times, but not in a row that was compared alone"
+                )
+            continue
+        total += before
+        if not total.ended and not total.problem:
+            total += found if chunk.every else replace(found, seen=0, ended=True)
+        place = row + 1
+    return total
+
+
 def _alone(chunk: Chunk) -> ChunkResult | None:
-    """What a row gives when it is compared alone in a fresh process: a finding if that dies again, ``None`` if the row is innocent."""
-    try:
-        _process(fresh=True).run(chunk, careful=True)
-    except _Closed:
-        return None
-    except _Died as again:
-        _process(fresh=True)
-        if again.row == Marks.NOWHERE:
+    """What a row gives when it is compared alone in a fresh process: a finding if that dies again, ``None`` if the row is innocent.
+
+    An end that may have come from outside must happen twice at the same place.
+    """
+    places = set()
+    for _ in range(2):
+        try:
+            _process(fresh=True).run(chunk, careful=True)
+        except _Full:
             return None
-        (row,) = rows_of_chunk(chunk)
-        where: Row | Case = row
-        if again.outcome:
-            w, d = outcomes(row.X, row.u.length + row.v.length, **chunk.rings)[again.outcome - 1]
-            where = Case(row.X, row.u, row.v, w, d)
-        finding = Finding("too-slow" if again.slow else "crashed", where, detail=again.how)
-        return ChunkResult(seen=1, failing_rows=1, failing=1, findings=(entry_of(finding),))
-    return None
+        except _Died as death:
+            again = death
+        else:
+            return None
+        places.add((again.row, again.outcome))
+        if again.row == Marks.NOWHERE or len(places) > 1:
+            return None
+        if again.slow:
+            break
+    (row,) = rows_of_chunk(chunk)
+    where: Row | Case = row
+    earlier: tuple[dict[str, Any], ...] = ()
+    if again.outcome:
+        w, d = outcomes(row.X, row.u.length + row.v.length, **chunk.rings)[again.outcome - 1]
+        where = Case(row.X, row.u, row.v, w, d)
+        try:
+            earlier = _process(fresh=True).run(chunk, until=again.outcome - 1).findings
+        except (_Died, _Full):
+            return None
+    finding = Finding("too-slow" if again.slow else "crashed", where, detail=again.how)
+    found = (*earlier, entry_of(finding))
+    return ChunkResult(seen=1, failing_rows=1, failing=len(found), findings=found if chunk.every else found[:1])

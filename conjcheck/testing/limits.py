@@ -26,7 +26,8 @@ class CallLimit:
 
     Args:
         seconds: how long one call may take.
-        on_tick: called a few times a second by the alarm, only while no call is inside C code (with the signal, not with the thread).
+        on_tick: called a few times a second by the alarm (with the signal, not with the thread), while no call is inside C code, and none
+            is over its limit: a rule that swallows the interruption falls silent.
     """
 
     __slots__ = ("_before", "_depth", "_done", "_target", "_thread", "on_tick", "seconds", "started")
@@ -71,10 +72,10 @@ class CallLimit:
         return bool(self.started) and time.perf_counter() - self.started > self.seconds
 
     def _alarm(self, signum: int, frame: FrameType | None) -> None:
-        if self.on_tick is not None:
-            self.on_tick()
         if self._expired():
             raise CallInterrupted
+        if self.on_tick is not None:
+            self.on_tick()
 
     def _watch(self) -> None:
         while not self._done.wait(_TICK):

@@ -119,7 +119,10 @@ def minimise(comparer: Comparer, finding: Finding, coverage: Coverage, *, budget
             finding = Finding("unstable", finding.where, detail=f"{finding.detail or finding.status}, but not when asked again")
     walked = survey(comparer, budget=deadline - perf_counter(), stop_before=finding.row, coverage=coverage)
     if walked.finding:
-        return certified(walked.finding, coverage, coverage.cases + walked.in_row)
+        smaller = sum(
+            space.cases for space in coverage.spaces if not walked.finding.row.X < space.X
+        )  # larger ones may be there, too
+        return certified(walked.finding, coverage, smaller + walked.in_row)
     if walked.ran_out:
         last = coverage.spaces[-1] if coverage.spaces else None
         where = f"; stopped in {last.X} after {last.rows_seen:,} of {last.X.number_of_classes**2:,} rows" if last else ""

@@ -1,20 +1,39 @@
 """The outcome of one part of an examination: a frozen value, the same for terminal, JSON and summary."""
 
 import sys
+from collections.abc import Mapping
 from dataclasses import dataclass
+from html import escape
 from importlib.metadata import PackageNotFoundError, version
+from itertools import islice
 from platform import python_version
 from textwrap import shorten
 from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
+from conjcheck.evidence.derivation import Derivation
 from conjcheck.geometry.case import Case
-from conjcheck.testing.answer import shown_value
+from conjcheck.oracle.engine import Product
+from conjcheck.testing.answer import plain_value, shown_value
+from conjcheck.testing.diagnosis import Diagnosis
 from conjcheck.testing.explain import Explanation
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer, Minimum
 
-__all__ = ["Outcome", "environment", "no_verdict", "plain_value", "smaller_agree"]
+__all__ = ["Outcome", "environment", "no_verdict", "smaller_agree"]
+
+_MOST_TERMS = 300
+_MOST_IN_CELL = 600
+_MOST_FAILURES = 200
+
+_REMEDIES = {
+    "crashed": "the rule raised; the end of the traceback is below",
+    "unstable": "a rule must be a function of its arguments alone: look for randomness, mutable defaults, used-up iterators",
+    "too-slow": "raise the limit with --conjcheck-call-limit, narrow the premise, or return the whole product from (X, u, v)",
+    "not-a-count": "return an int of 0 or more, or an iterable of distinct hashable objects",
+    "undefined": "state the domain as premise=, so that cases outside it are not compared",
+    "not-independent": "a rule may not use conjcheck's product, constant or table: a verdict would say nothing",
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,9 +50,12 @@ class Outcome:
         finding: what is wrong, ``None`` if the status is ``agrees``.
         broken_law: the law that led to the finding, if one did.
         minimum, layer, explanation, confirmed_by: around a finding, as far as they were worked out.
+        derivation: why the oracle's value is what it is; ``None`` where no short chain was found, or for a whole row.
+        diagnosis: what all failures have in common, and where the rule may be right; ``None`` where that was not asked.
         seconds: how long the part took.
         seed: the seed of the random part, if there was one.
         note: one more sentence, e.g. that the record expects a refutation.
+        spaces: what was compared where, in order, in JSON types: ``space``, and how far (see ``SpaceCoverage``), or ``drawn``.
     """
 
     conjecture: Conjecture
@@ -50,9 +72,12 @@ class Outcome:
     layer: Layer | None = None
     explanation: Explanation | None = None
     confirmed_by: str = ""
+    derivation: Derivation | None = None
+    diagnosis: Diagnosis | None = None
     seconds: float = 0.0
     seed: str = ""
     note: str = ""
+    spaces: tuple[Mapping[str, Any], ...] = ()
 
     @property
     def verdict(self) -> str:
@@ -79,8 +104,39 @@ class Outcome:
             return f"minimal: {smaller_agree(self.minimum.below, 'agree')}"
         return f"not known to be minimal: {self.minimum.reach}"
 
+    @property
+    def remedy(self) -> str:
+        """What to do about a finding that is no refutation; empty if there is none."""
+        finding = self.finding
+        if finding is None or finding.status == "refuted":
+            return ""
+        if finding.status == "crashed" and not finding.trace:
+            return "call the rule at this place in a process that may end, with python -X faulthandler"
+        if finding.status == "not-a-count":
+            if "keys" in finding.detail:
+                return "key a whole product by (w, d), w a class of X and d a tuple; or by w alone, with ring='classical'"
+            if self.conjecture.role == "claim":
+                return "return True or False on every path"
+            if self.conjecture.is_equivariant:
+                return "return a polynomial built from simple_roots(X)"
+        return _REMEDIES[finding.status]
+
+    def _repr_html_(self) -> str:
+        """A few lines for a notebook; the whole report is a page of its own."""
+        rows = [("statement", self.conjecture.statement), ("compared", self.scope), ("note", self.note), ("remedy", self.remedy)]
+        if self.explanation:
+            sides = (("by the rule", self.explanation.by_rule), ("by the oracle", self.explanation.by_oracle))
+            rows[1:1] = [(label, str(side)) for label, side in sides if side is not None]
+        cells = "".join(
+            f'<tr><th scope="row" style="text-align:left;vertical-align:top">{label}</th>'
+            f'<td style="text-align:left">{escape(shorten(text, _MOST_IN_CELL, placeholder=" ..."))}</td></tr>'
+            for label, text in rows
+            if text
+        )
+        return f"<div><p><strong>{escape(self.verdict)}</strong></p><table>{cells}</table></div>"
+
     def as_json(self) -> dict[str, Any]:
-        """The outcome in JSON types: for junit properties, other processes and programs."""
+        """The outcome in JSON types: for junit properties, other processes, programs and pages."""
         found: dict[str, Any] = {
             "conjecture": self.conjecture.name,
             "file": self.conjecture.file,
@@ -93,6 +149,9 @@ class Outcome:
             "cases": self.cases,
             "nonzero": self.nonzero,
             "seconds": round(self.seconds, 3),
+            "about": self.conjecture.about(),
+            "spaces": [dict(space) for space in self.spaces],
+            "environment": environment(),
         }
         found["minimal"] = bool(self.minimum and self.minimum.certified)
         if self.seed:
@@ -103,25 +162,49 @@ class Outcome:
             found["rule"], found["oracle"] = plain_value(self.finding.rule), plain_value(self.finding.oracle)
             found["kinds"] = list(self.explanation.kinds) if self.explanation else []
             found["confirmed_by"] = self.confirmed_by
+            found["detail"], found["trace"], found["remedy"] = self.finding.detail, self.finding.trace, self.remedy
+            found["minimality"] = self.minimality
+            if self.finding.objects is not None:
+                found["objects"] = list(self.finding.objects)
+            if self.broken_law:
+                found["broken_law"] = self.broken_law
+        if self.explanation:
+            found["products"] = {
+                "rule": _plain_product(self.explanation.by_rule),
+                "oracle": _plain_product(self.explanation.by_oracle),
+                "partial": self.explanation.partial,
+            }
         if self.layer:
             found["layer"] = {
                 "pairs": self.layer.pairs,
                 "cases": sum(isinstance(f.where, Case) for f in self.layer.findings),
                 "orbits": self.layer.orbits,
                 "complete": self.layer.complete,
+                "rows": self.layer.rows,
+                "size": self.layer.size,
+                "all_orbits": self.layer.all_orbits,
+                "failures": [
+                    {"where": str(f.where), "rule": plain_value(f.rule), "oracle": plain_value(f.oracle)}
+                    for f in self.layer.findings[:_MOST_FAILURES]
+                ],
             }
+        if self.diagnosis:
+            found["diagnosis"] = self.diagnosis.as_json()
         return found
+
+
+def _plain_product(product: Product | None) -> dict[str, Any] | None:
+    """A product in JSON types: its terms in order, the first few hundred of them, and how many there are more."""
+    if product is None:
+        return None
+    terms = [{"w": str(w), "d": list(d), "n": plain_value(n)} for (w, d), n in islice(product.items(), _MOST_TERMS)]
+    return {"terms": terms, "more": len(product) - len(terms)}
 
 
 def no_verdict(conjecture: Conjecture, part: str, why: str) -> dict[str, Any]:
     """The JSON form for a part that ended without a verdict, through an error that is not the rule's."""
     line = Outcome(conjecture, part, "no verdict", why, why).as_json()
     return line | {"status": "no verdict", "verdict": f"no verdict: {conjecture.name}: {why}"}
-
-
-def plain_value(value: object) -> int | str | None:
-    """A value for JSON: small integers as they are, others and polynomials as text."""
-    return value if value is None or (isinstance(value, int) and value.bit_length() < 64) else shown_value(value)
 
 
 def smaller_agree(count: int, what: str) -> str:

@@ -1,32 +1,75 @@
 """The verdict on a survey at scale: its outcome for all reports, and what of it goes on record."""
 
+from collections.abc import Iterable
+from concurrent.futures import Executor
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
-from conjcheck.evidence.entries import Counterexample, Covered, Sample, own_version
+from conjcheck.conjecture.declare import Conjecture
+from conjcheck.errors import RecordError
+from conjcheck.evidence.entries import Covered, Sample, own_version
 from conjcheck.evidence.reading import parse_place
 from conjcheck.evidence.record import Record, current_record, write_record
 from conjcheck.geometry.case import Case
-from conjcheck.testing.campaign import Campaign, SpaceResult
+from conjcheck.geometry.flag_variety import FlagVariety
+from conjcheck.testing.apart import Lost, apart
+from conjcheck.testing.campaign import Campaign, SpaceResult, Terms, run_campaign
 from conjcheck.testing.covered import covered
 from conjcheck.testing.examine import EFFORTS, Effort, Examination
 from conjcheck.testing.finding import Finding
-from conjcheck.testing.minimise import Minimum, certified, minimise
+from conjcheck.testing.minimise import Minimum, certified, confirm, minimise
 from conjcheck.testing.outcome import Outcome
+from conjcheck.testing.recording import counterexample
 from conjcheck.testing.scope import survey_scope, survey_spaces
 from conjcheck.testing.survey import Coverage, SpaceCoverage, in_reach
 
-__all__ = ["campaign_outcome", "campaign_record", "write_campaign"]
+__all__ = ["campaign_outcome", "campaign_record", "survey", "write_campaign"]
 
 _HOW = "rows drawn uniformly, with repetition"
+_PATIENCE = 60.0
+"""Seconds for what has no budget of its own: setting up the oracle, and confirming its value."""
+
+
+def survey(
+    conjecture: Conjecture,
+    spaces: Iterable[FlagVariety | str],
+    *,
+    jobs: int = 1,
+    executor: Executor | None = None,
+    ledger: str | Path | None = None,
+    record: bool = False,
+    **terms: Any,
+) -> Outcome:
+    """Compare a conjecture with the oracle on whole spaces, from Python: what ``conjcheck survey`` does.
+
+    Args:
+        conjecture: a decorated function in a file.
+        spaces: flag varieties of its family, or their names.
+        jobs: processes on this machine.
+        executor: where chunks are compared instead: any ``concurrent.futures.Executor``.
+        ledger: the file that keeps finished chunks; ``None`` to keep nothing.
+        record: whether to add what was compared to the record beside the plug-in.
+        terms: the fields of ``conjcheck.testing.campaign.Terms``: ``every``, ``draws``, ``seed``, ``call_limit``, ``memory``,
+            ``cross_check``.
+
+    Raises:
+        the errors of ``run_campaign``; RecordError: the record cannot be used.
+    """
+    chosen = [FlagVariety(X) if isinstance(X, str) else X for X in spaces]
+    kept = None if ledger is None else Path(ledger)
+    done = run_campaign(conjecture, chosen, terms=Terms(**terms), jobs=jobs, executor=executor, ledger=kept)
+    outcome = campaign_outcome(done)
+    if record:
+        write_campaign(done, outcome)
+    return outcome
 
 
 def campaign_outcome(campaign: Campaign, *, effort: Effort = EFFORTS["normal"]) -> Outcome:
     """The outcome of a survey at scale: what agrees, or the smallest failure, worked out as in any other examination.
 
-    A refuting row is compared once more in this process, and the layer is collected; a rule that ended its process, hung or ate memory
-    is not called here again.
+    What is worked out around a refutation (the minimum, the layer) calls the rule in a copy of this process; if the rule ends that, the
+    outcome says so and holds what the survey found. A rule that ended its process before, hung or ate memory is not called again.
     """
     coverage = _coverage(campaign)
     part = "survey" if campaign.terms.draws is None else f"sample[seed {campaign.terms.seed}]"
@@ -36,36 +79,55 @@ def campaign_outcome(campaign: Campaign, *, effort: Effort = EFFORTS["normal"]) 
     if campaign.terms.draws is not None:
         coverage = Coverage(named=True)
     entry = failing.result.findings[0]
-    examination = Examination(campaign.conjecture, effort, call_limit=campaign.terms.call_limit, coverage=coverage)
+    place = parse_place(entry["where"])
     before = sum(s.result.cases for s in campaign.spaces if s.X < failing.X) + failing.result.before
     note = _totals(campaign)
-    if entry["status"] != "refuted":
-        finding = Finding(entry["status"], parse_place(entry["where"]), detail=entry["detail"], trace=entry["trace"])
-        reach = (
-            f"all {before:,} cases before it agree" if campaign.terms.draws is None else "rows were drawn, not compared in order"
-        )
-        return Outcome(
-            campaign.conjecture,
-            part,
-            finding.status,
-            survey_scope(coverage, campaign.conjecture),
-            survey_spaces(coverage),
-            *(coverage.rows, coverage.cases, coverage.nonzero),
-            finding=finding,
-            minimum=Minimum(finding, False, before, reach),
-            note=note,
-            seconds=campaign.seconds,
-        )
+    if entry["status"] == "refuted":
+        try:
+            outcome = apart(
+                lambda: _worked_out(campaign, coverage, part, entry, before, effort),
+                seconds=effort.minimise + effort.layer + effort.diagnosis + 10 * campaign.terms.call_limit + _PATIENCE,
+                shared=(campaign.conjecture,),
+            )
+            return replace(outcome, seconds=campaign.seconds, note=note)
+        except Lost as lost:
+            note = "; ".join(
+                [*filter(None, [note]), f"no layer was collected: when the rule was called around the failure, {lost}"]
+            )
+    reach = "rows were drawn, not compared in order"
+    if campaign.terms.draws is None:
+        reach = f"all {before:,} cases of the rows surveyed before it agree"
+    value, true = (entry[name] if isinstance(entry[name], int) else None for name in ("rule", "oracle"))
+    finding, how = Finding(entry["status"], place, value, true, detail=entry["detail"], trace=entry["trace"]), ""
+    if finding.status == "refuted":
+        finding, how = confirm(finding)
+    return Outcome(
+        campaign.conjecture,
+        part,
+        finding.status,
+        survey_scope(coverage, campaign.conjecture),
+        survey_spaces(coverage),
+        *(coverage.rows, coverage.cases, coverage.nonzero),
+        finding=finding,
+        minimum=Minimum(finding, False, before, reach),
+        confirmed_by=how,
+        note=note,
+        seconds=campaign.seconds,
+    )
+
+
+def _worked_out(campaign: Campaign, coverage: Coverage, part: str, entry: dict[str, Any], before: int, effort: Effort) -> Outcome:
+    """The outcome for a row that was refuted, compared once more."""
+    examination = Examination(campaign.conjecture, effort, call_limit=campaign.terms.call_limit, coverage=coverage)
     place = parse_place(entry["where"])
     row = place.row if isinstance(place, Case) else place
     with examination.comparer.limit:
         result = examination.comparer.row(row)
     if result.finding is None:
         finding = Finding("unstable", place, detail=f"the rule gave {entry['rule']} in the survey, and agrees when asked again")
-        return replace(_agreement(campaign, part, coverage), status="unstable", finding=finding, note=note)
+        return replace(_agreement(campaign, part, coverage), status="unstable", finding=finding)
     minimum = _minimum(campaign, examination, result.finding, before + result.cases)
-    outcome = examination.work_out(result.finding, part, 0.0, minimum=minimum)
-    return replace(outcome, seconds=campaign.seconds, note=note)
+    return examination.work_out(result.finding, part, 0.0, minimum=minimum)
 
 
 def _minimum(campaign: Campaign, examination: Examination, finding: Finding, below: int) -> Minimum | None:
@@ -81,13 +143,19 @@ def _minimum(campaign: Campaign, examination: Examination, finding: Finding, bel
             break
         if X not in complete:
             missing.append(X)
+    else:  # it ended before the finding: there may be more
+        return Minimum(
+            finding, False, below, f"all {below:,} smaller cases surveyed agree; the family has too many spaces to name others"
+        )
     coverage.skipped = skipped
     if not missing:
         return certified(finding, coverage, below)
     if campaign.terms.every:
         names = ", ".join(X.name for X in missing[:5]) + (" ..." if len(missing) > 5 else "")
         return Minimum(finding, False, below, f"all {below:,} smaller cases surveyed agree; not surveyed: {names}")
-    return minimise(examination.comparer, finding, coverage, budget=examination.effort.minimise)
+    found = minimise(examination.comparer, finding, coverage, budget=examination.effort.minimise)
+    coverage.spaces.sort(key=lambda space: space.X.sort_key)
+    return found
 
 
 def _coverage(campaign: Campaign) -> Coverage:
@@ -110,7 +178,7 @@ def _agreement(campaign: Campaign, part: str, coverage: Coverage) -> Outcome:
         parts = [f"{s.result.rows:,} on {s.X} ({_sample(campaign, s).bound})" for s in campaign.spaces if s.result.rows]
         where = ", ".join(str(s.X) for s in campaign.spaces)
         scope = f"samples of {_HOW}, seed {campaign.terms.seed}: {', '.join(parts)}; {rows:,} rows, {cases:,} cases"
-    status = "agrees" if rows and not campaign.problems else "undefined"
+    status = "agrees" if rows and all(space.complete for space in campaign.spaces) else "undefined"
     if not rows:
         scope = (
             f"nothing compared: expected a row inside the premise on {where or 'the spaces named'}, got none; name larger spaces"
@@ -139,6 +207,7 @@ def _totals(campaign: Campaign) -> str:
             f"{s.X}: {s.result.failing:,} cases in {s.result.failing_rows:,} rows" for s in campaign.spaces if s.result.failing
         ]
         words.append(f"all failures: {'; '.join(found)}")
+        words += [f"not finished: {problem}" for problem in campaign.problems]
     return "; ".join(words)
 
 
@@ -158,9 +227,14 @@ def campaign_record(campaign: Campaign, outcome: Outcome) -> Record:
     """The record of the conjecture with this survey added; what was computed for another version of the rule is dropped.
 
     Raises:
-        RecordError: the record beside the plug-in cannot be used, or contradicts the survey.
+        RecordError: the record beside the plug-in cannot be used, or contradicts the survey; or the rule was changed meanwhile.
     """
     record = current_record(campaign.conjecture)
+    if record.rule != campaign.rule:
+        raise RecordError(
+            f"expected {campaign.conjecture.file} as it was when the survey began ({campaign.rule[:19]}), it was changed meanwhile; "
+            "nothing was recorded, survey the rule as it stands"
+        )
     if campaign.terms.draws is None:
         failing = {s.X: s.result.failing for s in campaign.spaces if campaign.terms.every}
         entries: list[Covered] = list(covered(_coverage(campaign), campaign.conjecture, cross_check=campaign.terms.cross_check))
@@ -171,9 +245,9 @@ def campaign_record(campaign: Campaign, outcome: Outcome) -> Record:
                 record = record.with_sample(_sample(campaign, space))
     finding = outcome.finding
     if finding is not None and outcome.status == "refuted":
-        plain = outcome.as_json()
         minimal = outcome.minimum is not None and outcome.minimum.certified
-        record = record.with_counterexample(Counterexample(finding.where, plain["rule"], plain["oracle"], minimal))
+        found = counterexample(finding, campaign.conjecture, minimal=minimal, confirmed_by=outcome.confirmed_by)
+        record = record.with_counterexample(found)
     return record
 
 

@@ -1,12 +1,16 @@
-"""The process in which a survey calls a rule: ``python -m conjcheck.testing.worker``; it reads chunks and writes results, as JSON lines.
+"""The process in which a survey calls a rule: ``python -m conjcheck.testing.worker``; chunks in, results out, as lines of JSON.
 
 What it is doing stands in a small shared file (``Marks``), so that whoever started it can tell where the rule hung or killed it.
-What the rule prints is thrown away. The process ends when its standard input does, or when its parent is gone.
+What the rule prints is thrown away. The process ends when its standard input does, or when its parent is gone. A copy of it that the
+rule made by a fork never answers.
 """
 
+import contextlib
+import ctypes
 import json
 import mmap
 import os
+import signal
 import struct
 import sys
 from pathlib import Path
@@ -19,6 +23,7 @@ from conjcheck.evidence.source import rule_hash
 from conjcheck.geometry.case import Case
 from conjcheck.testing.chunks import Chunk, ChunkResult, compare_chunk, entry_of, rows_of_chunk
 from conjcheck.testing.compare import Comparer
+from conjcheck.testing.limits import CallLimit
 
 __all__ = ["Marks", "main", "run_chunk"]
 
@@ -63,13 +68,16 @@ class Marks:
         return beat, row, outcome
 
 
-def run_chunk(chunk: Chunk, marks: Marks, *, careful: bool) -> ChunkResult:
-    """Compare a chunk; ``careful``: its one row, outcome by outcome, each one marked before the rule is called."""
-    try:
-        conjecture = _conjecture(chunk)
-    except ConjcheckError as error:
-        return ChunkResult(problem=str(error))
-    comparer = Comparer(conjecture, call_limit=chunk.call_limit, cross_check=chunk.cross_check)
+def run_chunk(chunk: Chunk, marks: Marks, *, careful: bool = False, until: int | None = None) -> ChunkResult:
+    """Compare a chunk.
+
+    Args:
+        chunk: the piece.
+        marks: told where it is.
+        careful: its one row, outcome by outcome, each one marked before the rule is called; nothing else than whether the process
+            survives that is of interest.
+        until: collect the failures among so many first outcomes of its one row.
+    """
     parent = os.getppid()
 
     def tick() -> None:
@@ -77,20 +85,27 @@ def run_chunk(chunk: Chunk, marks: Marks, *, careful: bool) -> ChunkResult:
         if os.getppid() != parent:
             os._exit(0)
 
+    try:
+        with CallLimit(chunk.call_limit, tick):  # an import may take long
+            conjecture = _conjecture(chunk)
+    except ConjcheckError as error:
+        return ChunkResult(problem=str(error))
+    comparer = Comparer(conjecture, call_limit=chunk.call_limit, cross_check=chunk.cross_check)
     comparer.limit.on_tick = tick
-    if not careful:
+    if not careful and until is None:
         return compare_chunk(comparer, chunk, marks.row)
-    (row,) = rows_of_chunk(chunk)
-    comparer.truth(row)  # what the oracle does is not the rule's doing
-    marks.row(chunk.first)
-    if conjecture.by_rows:
-        return compare_chunk(comparer, chunk)
     with comparer.limit:
-        for place, (w, d) in enumerate(comparer.outcomes(row)):
+        (row,) = rows_of_chunk(chunk)
+        comparer.truth(row)  # what the oracle does is not the rule's doing
+        marks.row(chunk.first)
+        if conjecture.by_rows:
+            return compare_chunk(comparer, chunk)
+        found = []
+        for place, (w, d) in enumerate(comparer.outcomes(row)[:until]):
             marks.outcome(place)
-            if found := comparer.case(Case(row.X, row.u, row.v, w, d)):
-                return ChunkResult(failing_rows=1, failing=1, findings=(entry_of(found),), ended=True)
-    return ChunkResult(seen=1)
+            if finding := comparer.case(Case(row.X, row.u, row.v, w, d)):
+                found.append(entry_of(finding))
+    return ChunkResult(seen=1, failing_rows=int(bool(found)), failing=len(found), findings=tuple(found))
 
 
 _loaded: dict[tuple[str, str, str], Conjecture] = {}
@@ -105,6 +120,8 @@ def _conjecture(chunk: Chunk) -> Conjecture:
                 f"expected {chunk.file} as it was when the survey began ({chunk.rule[:19]}), got {found[:19]}; start again"
             )
         named = [c for c in conjectures_in_file(Path(chunk.file)) if c.name == chunk.name]
+        if rule_hash(chunk.file) != chunk.rule:
+            raise ConjcheckError(f"expected {chunk.file} to stay as it is while it is imported, it was changed; start again")
         if not named:
             raise ConjcheckError(f"expected a conjecture {chunk.name!r} in {chunk.file}, got none")
         _loaded[key] = named[0]
@@ -124,32 +141,52 @@ def _limit_memory(most: int) -> None:
         return
 
 
+def _end_with_parent() -> None:
+    """Let the system end this process when its parent ends, even if the rule hangs where no signal is looked at; only on Linux."""
+    with contextlib.suppress(OSError, AttributeError):
+        ctypes.CDLL(None).prctl(1, int(signal.SIGKILL))  # PR_SET_PDEATHSIG
+
+
 def _serve(tasks: BinaryIO, answers: BinaryIO, marks: Marks) -> None:
-    limited = False
-    for line in tasks:
+    own = os.getpid()
+    for served, line in enumerate(tasks):
         task = json.loads(line)
         chunk = Chunk(**task["chunk"])
-        if not limited:
+        if not served:
             _limit_memory(chunk.memory)
-            limited = True
         try:
-            result = run_chunk(chunk, marks, careful=task["careful"])
+            result = run_chunk(chunk, marks, careful=task["careful"], until=task["until"])
         except MemoryError:
             result = ChunkResult(
                 problem=f"{chunk.space}: the oracle needs more than the {chunk.memory / 2**30:.1f} GiB allowed; raise --memory"
             )
-        answers.write(json.dumps(result.as_json()).encode() + b"\n")
+            short = True
+        except Exception as error:  # the oracle's doing: whatever a rule raises is a finding
+            result = ChunkResult(problem=f"{chunk.space}: {type(error).__name__}: {error}")
+            short = False
+        else:
+            short = any(entry["detail"].startswith("MemoryError") for entry in result.findings)
+        if os.getpid() != own:
+            os._exit(0)
+        # Earlier chunks take memory, too: what is short here may be enough in a fresh process.
+        answer = {"task": task["task"], "again": short and served > 0, "result": result.as_json()}
+        answers.write(json.dumps(answer).encode() + b"\n")
         answers.flush()
 
 
 def main() -> None:
     """Serve until the input ends."""
+    _end_with_parent()
     answers = os.fdopen(os.dup(1), "wb")
     silence = os.open(os.devnull, os.O_WRONLY)
     os.dup2(silence, 1)
     tasks = os.fdopen(os.dup(0), "rb")
     os.dup2(os.open(os.devnull, os.O_RDONLY), 0)
-    _serve(tasks, answers, Marks(Path(sys.argv[1])))
+    path = Path(sys.argv[1])
+    marks = Marks(path)
+    with contextlib.suppress(OSError):  # it stays readable for those who have it open, and nothing is left of it afterwards
+        path.unlink()
+    _serve(tasks, answers, marks)
 
 
 if __name__ == "__main__":

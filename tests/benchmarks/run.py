@@ -123,6 +123,57 @@ def plain_rows_7() -> float:
     return _plain_rows(7, 50)
 
 
+def _localised(name: str, count: int, *, single: bool) -> float:
+    """Median milliseconds by localisation after set-up: whole products, or one nonzero constant of each, a class seen before."""
+    from conjcheck import FlagVariety
+    from conjcheck.oracle.localisation import localisation
+
+    X = FlagVariety(name)
+    engine = localisation(X)
+    chooser = random.Random(2024)
+    pairs = [tuple(chooser.choices(X.classes, k=2)) for _ in range(count)]
+    rows = [engine.row(u, v) for u, v in pairs]  # set-up
+    times = []
+    for (u, v), row in zip(pairs, rows, strict=True):
+        w, d = chooser.choice(list(row))
+        engine.constant(u, v, w, d)
+        began = perf_counter()
+        found = engine.constant(u, v, w, d) if single else engine.row(u, v)
+        times.append(perf_counter() - began)
+        assert found == (row[w, d] if single else row)
+    return 1000 * statistics.median(times)
+
+
+def constants_e8() -> float:
+    """Milliseconds for one constant on E8/P8."""
+    return _localised("E8/P8", 200, single=True)
+
+
+def rows_e8() -> float:
+    """Milliseconds for one product on E8/P8."""
+    return _localised("E8/P8", 200, single=False)
+
+
+def constants_gr_10() -> float:
+    """Milliseconds for one constant on Gr(5,10)."""
+    return _localised("Gr(5,10)", 200, single=True)
+
+
+def rows_gr_10() -> float:
+    """Milliseconds for one product on Gr(5,10)."""
+    return _localised("Gr(5,10)", 200, single=False)
+
+
+def constants_two_steps() -> float:
+    """Milliseconds for one constant on Fl(2,4;6)."""
+    return _localised("Fl(2,4;6)", 100, single=True)
+
+
+def rows_two_steps() -> float:
+    """Milliseconds for one product on Fl(2,4;6)."""
+    return _localised("Fl(2,4;6)", 100, single=False)
+
+
 def _import_seconds(module: str) -> float:
     """Milliseconds that a fresh interpreter takes to import a module and end."""
     command = [sys.executable, "-c", f"import {module}"]
@@ -229,6 +280,11 @@ PARTS: dict[str, list[Line]] = {
         ("one product on Fl(7), nothing remembered", "ms", products_7, plain_rows_7, 3),
         ("one product on Fl(6), in the course of 200", "ms", products_6_remembering, plain_rows_6, 3),
         ("one product on Fl(7), in the course of 50", "ms", products_7_remembering, plain_rows_7, 3),
+    ],
+    "constant": [
+        ("E8/P8, localisation: one constant | its whole product", "ms", constants_e8, rows_e8, 3),
+        ("Gr(5,10), localisation: one constant | its whole product", "ms", constants_gr_10, rows_gr_10, 3),
+        ("Fl(2,4;6), localisation: one constant | its product", "ms", constants_two_steps, rows_two_steps, 3),
     ],
     "import": [
         ("import conjcheck | import numpy", "ms", import_ours, import_numpy, 7),

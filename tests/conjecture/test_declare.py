@@ -7,6 +7,7 @@ import inspect
 import pytest
 
 from conjcheck import CompleteFlags, Conjecture, Gr, Grassmannians, Varieties, candidate, claim
+from conjcheck.conjecture.discover import conjectures_in_file
 from conjcheck.errors import DeclarationError
 
 
@@ -233,3 +234,141 @@ def test_the_family_is_compulsory():
             decorator()(whole)
         with pytest.raises(TypeError):
             decorator(whole)
+
+
+# -- open choices --------------------------------------------------------------------------------------------------------
+
+
+def chosen(X, u, v, w, d, *, strict, drop=7):
+    """A rule with open choices."""
+    return (strict, drop)
+
+
+VARIANTS = {"strict": (False, True), "drop": [1, 0, 2]}
+
+
+def test_the_first_values_are_the_rule():
+    """A rule with open choices is declared with their first values: a call needs none, and the choice is told."""
+    made = candidate(on=Grassmannians(), variants=VARIANTS)(chosen)
+    X = Gr(2, 4)
+    assert made(X, X.identity, X.identity, X.identity, (0,)) == (False, 1)
+    assert dict(made.choice) == {"strict": False, "drop": 1}
+    assert dict(made.variants) == {"strict": (False, True), "drop": (1, 0, 2)}
+    assert made.choice_in_words == "strict=False, drop=1"
+    assert made.number_of_variants == 6
+    assert not made.by_rows
+    with pytest.raises(TypeError):
+        made.choice["strict"] = True
+    with pytest.raises(TypeError):
+        made.variants["strict"] = ()
+
+
+def test_variants_are_conjectures():
+    """Each combination, in the order of the declaration, is a conjecture of the same name, file, line, family, premise and page."""
+    premise = lambda X, u, v: u.length == 1  # noqa: E731
+    made = candidate(on=Grassmannians(), premise=premise, variants=VARIANTS)(chosen)
+    found = list(made.all_variants())
+    assert [one(*[None] * 5) for one in found] == [(False, 1), (False, 0), (False, 2), (True, 1), (True, 0), (True, 2)]
+    for one in found:
+        assert (one.name, one.file, one.line) == ("chosen", __file__, chosen.__code__.co_firstlineno)
+        assert (one.on, one.premise, one.premise_by_rows, one.role) == (made.on, premise, True, "candidate")
+        assert one.__doc__ == "A rule with open choices."
+        assert one.rule(*[None] * 5) == (one.choice["strict"], one.choice["drop"])
+
+
+def test_a_choice_keeps_the_others():
+    """``variant`` changes what it is told and nothing else, also of a variant; the conjecture it came from stays as it is."""
+    made = candidate(on=Grassmannians(), variants=VARIANTS)(chosen)
+    other = made.variant(strict=True).variant(drop=2)
+    assert other(*[None] * 5) == (True, 2)
+    assert made(*[None] * 5) == (False, 1)
+    assert other.called("renamed").choice_in_words == "strict=True, drop=2"
+    assert other.variant(strict=False, drop=1)(*[None] * 5) == (False, 1)
+    assert isinstance(other.rule.func, type(chosen)), "choices do not pile up"
+
+
+def test_variants_go_through_other_decorators():
+    """A decorator below is called for every variant, too."""
+    seen = []
+
+    def traced(function):
+        @functools.wraps(function)
+        def wrapper(*args, **choice):
+            seen.append(choice)
+            return function(*args, **choice)
+
+        return wrapper
+
+    made = candidate(on=Grassmannians(), variants=VARIANTS)(traced(chosen))
+    assert made.variant(drop=0)(*[None] * 5) == (False, 0)
+    assert seen == [{"strict": False, "drop": 0}]
+    assert made.file == __file__
+
+
+@pytest.mark.parametrize("choice", [{"strict": 5}, {"wide": True}, {"drop": 3, "strict": True}])
+def test_a_choice_that_is_not_offered(choice):
+    """Another argument, or another value, is refused with what is offered."""
+    made = candidate(on=Grassmannians(), variants=VARIANTS)(chosen)
+    words = r"expected a choice among those of chosen \(strict=\(False, True\), drop=\(1, 0, 2\)\), got "
+    with pytest.raises(DeclarationError, match=words):
+        made.variant(**choice)
+    with pytest.raises(DeclarationError, match=r"expected a choice among those of whole \(no open choices\), got"):
+        candidate(on=Grassmannians())(whole).variant(**choice)
+
+
+def test_without_open_choices():
+    """A rule without variants is its own only one; a whole-product rule may have some."""
+    plain = candidate(on=Grassmannians())(whole)
+    assert (dict(plain.choice), plain.choice_in_words, plain.number_of_variants) == ({}, "", 1)
+    assert [one.rule for one in plain.all_variants()] != []
+
+    @candidate(on=Grassmannians(), ring="classical", variants={"a": (1, 2)})
+    def rows(X, u, v, *, a):
+        return {u: a}
+
+    assert rows.by_rows
+    assert [one(None, 0, None) for one in rows.all_variants()] == [{0: 1}, {0: 2}]
+
+
+@pytest.mark.parametrize(
+    ("variants", "rule", "words"),
+    [
+        (
+            {"strict": (0, 1)},
+            single,
+            r"expected a keyword-only argument for each of the variants, got none for strict; write def single",
+        ),
+        ({"w": (0, 1)}, single, "expected a keyword-only argument for each of the variants, got none for w"),
+        ({"strict": (0, 1)}, chosen, r"expected the arguments .* for the rule, got \(X, u, v, w, d, \*drop\)"),
+        ({"strict": (), "drop": (1,)}, chosen, r"expected variants=\{"),
+        ({"strict": 3, "drop": (1,)}, chosen, r"expected variants=\{"),
+        ({"strict": "ab", "drop": (1,)}, chosen, r"expected variants=\{"),
+        (["strict"], chosen, r"expected variants=\{"),
+        ({"strict": (0, 1, 0), "drop": (1,)}, chosen, r"expected different values for strict in variants, got strict=\(0, 1, 0\)"),
+        ({"strict": (False, 0), "drop": (1,)}, chosen, "expected different values for strict"),
+    ],
+)
+def test_variants_that_are_refused(variants, rule, words):
+    """Every variant is a keyword-only argument with some different values, and every keyword-only argument is a variant."""
+    with pytest.raises(DeclarationError, match=words) as caught:
+        candidate(on=Grassmannians(), variants=variants)(rule)
+    assert str(caught.value).startswith(f"{__file__}:{rule.__code__.co_firstlineno}: @candidate {rule.__name__}: ")
+
+
+def test_claims_have_no_variants():
+    """The decorator for claims does not take any."""
+    with pytest.raises(TypeError, match="variants"):
+        claim(on=Grassmannians(), variants={"a": (1,)})
+
+
+def test_variants_in_a_file(tmp_path):
+    """A plug-in with open choices is found once, under its name, with the first values."""
+    path = tmp_path / "open.py"
+    path.write_text(
+        "from conjcheck import Grassmannians, candidate\n"
+        "@candidate(on=Grassmannians(), variants={'n': (3, 4)})\n"
+        "def rule(X, u, v, *, n):\n    return {(u, (0,)): n}\n"
+    )
+    (found,) = conjectures_in_file(path)
+    assert (found.name, dict(found.choice), found.line, found.file) == ("rule", {"n": 3}, 2, str(path))
+    assert [one.name for one in found.all_variants()] == ["rule", "rule"]

@@ -1,6 +1,7 @@
-"""What the tests of the harness share is imported by the name of its file."""
+"""What the tests of the harness and those of this folder share is imported by the name of its file."""
 
 import sys
 from pathlib import Path
 
 sys.path.insert(0, str(Path(__file__).parents[1] / "testing"))
+sys.path.insert(0, str(Path(__file__).parent))

@@ -2,12 +2,35 @@
 
 import importlib.util
 import json
+import os
+import stat
+import tempfile
+from dataclasses import replace
+from pathlib import Path
 
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+from making import HASH, OTHER_HASH, records
 
-from conjcheck import Case, Row
-from conjcheck.errors import NotationError, RecordError
-from conjcheck.evidence.record import Counterexample, Record, parse_place, read_record, record_path, write_record
+from conjcheck import Case, FlagVariety, Row
+from conjcheck.errors import RecordError
+from conjcheck.evidence.record import (
+    Counterexample,
+    Covered,
+    Record,
+    Sample,
+    current_record,
+    merge,
+    read_record,
+    read_record_file,
+    record_path,
+    record_text,
+    stale_words,
+    write_record,
+    write_record_file,
+)
+from conjcheck.evidence.source import rule_hash
 
 CASE = Case.parse("Gr(2,4): (2,1) * (2,1) -> (2), q^(1)")
 SMALLER = Case.parse("Gr(1,3): (1) * (1) -> (2), q^(0)")
@@ -39,7 +62,7 @@ def test_without_a_file(rule, tmp_path):
 def test_written_and_read(rule):
     """What is written is read back the same: cases and rows, with and without values."""
     record = Record(
-        "my_rule", "refuted", (Counterexample(CASE, 0, 1, minimal=True), Counterexample(ROW, None, None, minimal=False))
+        "my_rule", "refuted", (Counterexample(CASE, 0, 1, minimal=False), Counterexample(ROW, None, None, minimal=True))
     )
     assert write_record(rule, record) == record_path(rule)
     assert read_record(rule) == record
@@ -47,22 +70,48 @@ def test_written_and_read(rule):
     assert read_record(rule) == Record("my_rule", "open", ())
 
 
+P2 = Covered(FlagVariety("Gr(1,3)"), 9, 9, 12, 10, seconds=0.25, engine="recursion", conjcheck="0.1.0")
+TEXT = """{
+  "format": "conjcheck-record",
+  "version": 1,
+  "conjecture": "my_rule",
+  "status": "refuted",
+  "statement": "",
+  "ring": "quantum",
+  "premise": false,
+  "rule": "%s",
+  "coverage": [
+    {"space": "Gr(1,3)", "rows": 9, "seen": 9, "of": 9, "cases": 12, "nonzero": 10, "failing": 0, "seconds": 0.25, "engine": "recursion", "conjcheck": "0.1.0"}
+  ],
+  "samples": [],
+  "counterexamples": [
+    {
+      "where": "Gr(2,4): (2,1) * (2,1) -> (2), q^(1)",
+      "rule": 0,
+      "oracle": 1,
+      "minimal": true,
+      "certificate": null,
+      "instead": null
+    }
+  ]
+}
+"""  # noqa: E501
+
+
 def test_the_text(rule):
-    """The file is indented JSON with one line per fact, ending in a newline, the same for the same record."""
-    record = Record("my_rule", "refuted", (Counterexample(CASE, 0, 1, minimal=True),))
+    """The file is JSON with one line per fact and per space, ending in a newline, the same for the same record."""
+    found = Counterexample(CASE, 0, 1, minimal=True)
+    record = Record("my_rule", "refuted", (found,), ring="quantum", premise=False, rule=HASH, coverage=(P2,))
     text = write_record(rule, record).read_text(encoding="utf-8")
-    assert text == (
-        '{\n  "format": "conjcheck-record",\n  "version": 1,\n  "conjecture": "my_rule",\n  "status": "refuted",\n'
-        '  "counterexamples": [\n    {\n      "where": "Gr(2,4): (2,1) * (2,1) -> (2), q^(1)",\n'
-        '      "rule": 0,\n      "oracle": 1,\n      "minimal": true\n    }\n  ]\n}\n'
-    )
+    assert text == record_text(record) == TEXT % HASH
     assert write_record(rule, record).read_text(encoding="utf-8") == text
 
 
 def test_one_more_counterexample():
-    """A new counterexample refutes, is put in order, and replaces one at the same place."""
-    record = Record("r", "open", ()).with_counterexample(Counterexample(CASE, 0, 1, minimal=False))
+    """A new counterexample refutes, is put in order, and replaces one at the same place; a larger one is not minimal any more."""
+    record = Record("r", "open", ()).with_counterexample(Counterexample(CASE, 0, 1, minimal=True))
     record = record.with_counterexample(Counterexample(SMALLER, 0, 1, minimal=True))
+    assert [c.minimal for c in record.counterexamples] == [True, False]
     assert record.status == "refuted"
     assert [c.where for c in record.counterexamples] == [SMALLER, CASE]
     again = record.with_counterexample(Counterexample(CASE, 5, 1, minimal=False))
@@ -71,69 +120,14 @@ def test_one_more_counterexample():
     assert [c.where for c in with_row.counterexamples] == [SMALLER, CASE.row, CASE]
 
 
-def test_places():
-    """With an arrow it is a case, without one a row; anything else is refused."""
-    assert parse_place(str(CASE)) == CASE
-    assert parse_place(str(ROW)) == ROW
-    for text in ("", "Gr(2,4)", "Gr(2,4): (1) -> (1)", "Gr(2,4): (9) * (1)"):
-        with pytest.raises(NotationError):
-            parse_place(text)
-
-
-GOOD = {
-    "format": "conjcheck-record",
-    "version": 1,
-    "conjecture": "my_rule",
-    "status": "refuted",
-    "counterexamples": [{"where": str(CASE), "rule": 0, "oracle": 1, "minimal": True}],
-}
-
-
-def entry(**changes):
-    """The record with a changed counterexample after a good one."""
-    return GOOD | {"counterexamples": [*GOOD["counterexamples"], GOOD["counterexamples"][0] | changes]}
-
-
-@pytest.mark.parametrize(
-    ("content", "words"),
-    [
-        (b"", "expected JSON in UTF-8"),
-        (b"{", "expected JSON in UTF-8"),
-        (b"\xff\xfe", "expected JSON in UTF-8"),
-        (b"[" * 100_000, "expected JSON in UTF-8"),
-        (b"<<<<<<< ours\n{}\n=======\n", "restore the file or delete it"),
-        ([], "this is not a record"),
-        ({}, "this is not a record"),
-        (None, "this is not a record"),
-        (GOOD | {"format": "other"}, "this is not a record"),
-        (GOOD | {"version": 2}, "expected version 1, got 2; use the conjcheck that wrote it"),
-        (GOOD | {"version": "1"}, "expected version 1, got '1'"),
-        (GOOD | {"conjecture": "other"}, "expected the record of 'my_rule', got that of 'other'"),
-        (GOOD | {"status": "agrees"}, 'expected "status" to be "open" or "refuted", got \'agrees\''),
-        (GOOD | {"status": ["open"]}, 'expected "status" to be "open" or "refuted"'),
-        (GOOD | {"counterexamples": {}}, 'expected a list under "counterexamples", got {}'),
-        (GOOD | {"counterexamples": []}, "expected a counterexample, since the status is refuted, got none"),
-        (GOOD | {"counterexamples": ["text"]}, "expected an object with a text under \"where\" as counterexample 1, got 'text'"),
-        (entry(where=5), 'under "where" as counterexample 2'),
-        (entry(where="Gr(2,4): (9) * (1)"), "counterexample 2: "),
-        (entry(where="nonsense"), "counterexample 2: expected a row"),
-        (entry(where="P^999999999: (1) * (1)"), "counterexample 2: "),
-        (entry(rule=-1), 'an integer of 0 or more, or a polynomial as text under "rule" of counterexample 2, got -1'),
-        (entry(rule=1.0), 'under "rule" of counterexample 2, got 1.0'),
-        (entry(oracle=True), 'under "oracle" of counterexample 2, got True'),
-        (entry(oracle=[1]), 'under "oracle" of counterexample 2'),
-    ],
-    ids=range(25),
-)
-def test_damaged_records(rule, content, words):
-    """A file that is no record of this conjecture is refused with its path, the entry, what was expected and what came."""
+def test_a_record_of_another_conjecture(rule):
+    """A record under the name of another conjecture is not believed."""
     path = record_path(rule)
     path.parent.mkdir()
-    path.write_bytes(content if isinstance(content, bytes) else json.dumps(content).encode())
-    with pytest.raises(RecordError) as caught:
+    path.write_text(record_text(Record("other", "open")), encoding="utf-8")
+    with pytest.raises(RecordError, match="expected the record of 'my_rule', got that of 'other'"):
         read_record(rule)
-    assert str(caught.value).startswith(f"{path}: ")
-    assert words in str(caught.value)
+    assert read_record_file(path).conjecture == "other"
 
 
 def test_a_folder_in_its_place(rule):
@@ -143,10 +137,211 @@ def test_a_folder_in_its_place(rule):
         read_record(rule)
 
 
-def test_minimal_is_never_invented(rule):
-    """Only the word true makes a recorded counterexample minimal."""
+def test_a_certificate_is_kept():
+    """Looking again at a counterexample loses no certificate, unless the values have changed."""
+    record = Record("r", "refuted", (Counterexample(CASE, 0, 1, minimal=True, certificate="r.1.certificate.json"),))
+    again = record.with_counterexample(Counterexample(CASE, 0, 1, minimal=False))
+    assert (again.counterexamples[0].certificate, again.counterexamples[0].minimal) == ("r.1.certificate.json", False)
+    other = record.with_counterexample(Counterexample(CASE, 2, 1, minimal=False))
+    assert other.counterexamples[0].certificate is None
+    words = record.with_counterexample(Counterexample(CASE, 0, 1, minimal=True, instead="two engines"))
+    assert (words.counterexamples[0].certificate, words.counterexamples[0].instead) == (None, "two engines")
+
+
+def test_coverage_goes_on():
+    """More coverage of a space takes the place of less; as much leaves the record as it is, so that files do not change for nothing."""
+    record = Record("r", "open", rule=HASH, coverage=(P2,))
+    assert record.with_coverage([replace(P2, seconds=0.125)]) == record
+    assert record.with_coverage([replace(P2, seen=5, rows=5, cases=6, nonzero=5)]) == record
+    other = Covered(FlagVariety("Gr(1,2)"), 4, 4, 4, 4)
+    assert record.with_coverage([other]).coverage == (other, P2)
+    part = Record("r", "open", rule=HASH, coverage=(replace(P2, seen=5, rows=5, cases=6, nonzero=5),))
+    assert part.with_coverage([P2]) == record
+    with pytest.raises(
+        RecordError, match=r"coverage of Gr\(1,3\), got two that contradict each other: cases 11 and 12 after 9 and 9 rows"
+    ):
+        record.with_coverage([replace(P2, cases=11)])
+
+
+def test_coverage_belongs_to_a_rule():
+    """Without the hash of a rule there is no coverage and no sample."""
+    with pytest.raises(RecordError, match=r"use renewed\(hash\) first"):
+        Record("r", "open").with_coverage([P2])
+    with pytest.raises(RecordError, match=r"use renewed\(hash\) first"):
+        Record("r", "open").with_sample(Sample(P2.X, "drawn", 1, 10, 10))
+
+
+def test_stale():
+    """Coverage and samples of another version of the rule are stale, said in words, and dropped; counterexamples stay."""
+    found = Counterexample(CASE, 0, 1, minimal=True)
+    other = Covered(FlagVariety("Gr(1,2)"), 4_000, 4, 4_000, 4)
+    sample = Sample(P2.X, "drawn", 1, 10, 10)
+    record = Record("r", "refuted", (found,), rule=HASH, coverage=(P2, other))
+    assert not record.is_stale(HASH)
+    assert record.renewed(HASH) is record
+    assert stale_words(record, HASH) == ""
+    assert record.is_stale(OTHER_HASH)
+    assert record.renewed(OTHER_HASH) == Record("r", "refuted", (found,), rule=OTHER_HASH)
+    ends = "computed for another version of the rule and"
+    assert stale_words(record, OTHER_HASH) == f"coverage of 2 spaces, 4,009 rows, was {ends} counts no more"
+    assert (
+        stale_words(record.with_sample(sample), OTHER_HASH)
+        == f"coverage of 2 spaces, 4,009 rows, and 1 sample, 10 rows, were {ends} count no more"
+    )
+    only = Record("r", "open", rule=HASH).with_sample(sample)
+    assert stale_words(only, OTHER_HASH) == f"1 sample, 10 rows, was {ends} counts no more"
+    bare = Record("r", "refuted", (found,), rule=HASH)
+    assert not bare.is_stale(OTHER_HASH), "a counterexample is computed again anyway"
+    assert stale_words(bare, OTHER_HASH) == ""
+
+
+def test_the_record_as_it_stands(rule):
+    """The current record has statement, ring and hash of the rule as it is now; a change of the file drops its coverage."""
+    record = current_record(rule)
+    assert record == Record("my_rule", "open", ring="quantum", premise=False, rule=rule_hash(rule.file))
+    write_record(rule, record.with_coverage([P2]))
+    assert current_record(rule).coverage == (P2,)
+    with Path(rule.file).open("a", encoding="utf-8") as file:
+        file.write("# changed\n")
+    assert current_record(rule) == replace(record, rule=rule_hash(rule.file))
+    assert read_record(rule).coverage == (P2,), "nothing is dropped from the file by reading"
+
+
+@given(records(), records(), records())
+def test_merging(first, second, third):
+    """Merging is commutative, associative and idempotent, and loses no space and no counterexample."""
+    both = merge(first, second)
+    assert both == merge(second, first)
+    assert merge(both, third) == merge(first, merge(second, third))
+    assert merge(first, first) == first
+    assert merge(both, first) == both
+    assert {c.key for c in both.counterexamples} == {c.key for r in (first, second) for c in r.counterexamples}
+    assert {s.key for s in both.samples} == {s.key for r in (first, second) for s in r.samples}
+    reach = {c.X: c.seen for c in both.coverage}
+    for record in (first, second):
+        assert all(reach[c.X] >= c.seen for c in record.coverage)
+
+
+OTHER_PLACE = Counterexample(SMALLER, 0, 1, minimal=False)
+
+
+@pytest.mark.parametrize(
+    ("changes", "words"),
+    [
+        ({"conjecture": "other"}, "two records of one conjecture, got my_rule and other"),
+        ({"rule": OTHER_HASH}, f"one hash of the rule in both records of my_rule, got {HASH} and {OTHER_HASH}"),
+        ({"statement": "other"}, "one statement in both records of my_rule, got words and other"),
+        ({"ring": "classical"}, "one ring in both records"),
+        ({"premise": True}, "whether there is a premise in both records of my_rule, got False and True"),
+        (
+            {"coverage": (replace(P2, rows=8),)},
+            "one coverage of Gr(1,3), got two that contradict each other: rows 8 and 9 after 9 and 9",
+        ),
+        ({"coverage": (replace(P2, nonzero=9),)}, "nonzero 9 and 10 after 9 and 9 rows"),
+        ({"coverage": (replace(P2, failing=1),)}, "failing 0 and 1 after 9 and 9 rows"),
+        ({"coverage": (replace(P2, seen=8, nonzero=11),)}, "nonzero 11 and 10 after 8 and 9 rows"),
+        (
+            {"samples": (Sample(P2.X, "drawn", 7, 10, 21),)},
+            "sample of Gr(1,3) with seed 7, got two that contradict each other: cases 20 and 21",
+        ),
+        (
+            {"counterexamples": (Counterexample(CASE, 0, 2, minimal=False),)},
+            f"one value of the oracle at counterexample {CASE}, got 1 and 2",
+        ),
+        (
+            {"counterexamples": (Counterexample(CASE, 3, 1, minimal=False),)},
+            f"one value of the rule at counterexample {CASE}, got 0 and 3",
+        ),
+        (
+            {"counterexamples": (OTHER_PLACE,)},
+            f"no counterexample smaller than {CASE}, which is on record as minimal, got {SMALLER}",
+        ),
+    ],
+    ids=range(13),
+)
+def test_contradictions(changes, words):
+    """Records of two rules, or with two answers to one question, are not merged, in either order; the message names the entry."""
+    sample = Sample(P2.X, "drawn", 7, 10, 20)
+    found = Counterexample(CASE, 0, 1, minimal=True)
+    one = Record("my_rule", "refuted", (found,), "words", "quantum", premise=False, rule=HASH, coverage=(P2,), samples=(sample,))
+    messages = []
+    for pair in ((one, replace(one, **changes)), (replace(one, **changes), one)):
+        with pytest.raises(RecordError) as caught:
+            merge(*pair)
+        messages.append(str(caught.value))
+    assert any(words in message for message in messages), messages
+
+
+@given(records())
+def test_read_back(record):
+    """What is written is read back as it was, and the text of what is read is the text."""
+    assert read_text(record_text(record)) == record
+
+
+@given(records(), st.randoms(use_true_random=False))
+def test_merged_by_hand(record, random):
+    """Entries in any order, and entries that stand twice after a merge by hand, make the same record."""
+    data = json.loads(record_text(record))
+    for key in ("coverage", "samples", "counterexamples"):
+        data[key] = data[key] + random.sample(data[key], k=len(data[key]) // 2)
+        random.shuffle(data[key])
+    assert read_text(json.dumps(data)) == record
+
+
+def read_text(text):
+    """The record in a text, through a file."""
+    with tempfile.TemporaryDirectory() as folder:
+        path = Path(folder) / "record.json"
+        path.write_text(text, encoding="utf-8")
+        return read_record_file(path)
+
+
+def test_nothing_is_written_over_what_is_not_understood(rule):
+    """A damaged file, a newer one, or the record of another conjecture is not overwritten."""
     path = record_path(rule)
     path.parent.mkdir()
-    for value, expected in ((True, True), (False, False), ("yes", False), (1, False), (None, False)):
-        path.write_text(json.dumps(GOOD | {"counterexamples": [{"where": str(CASE), "rule": 0, "oracle": 1, "minimal": value}]}))
-        assert read_record(rule).counterexamples[0].minimal is expected
+    other = record_text(Record("other", "open"))
+    for text in ("", "<<<<<<< ours\n", TEXT % HASH.replace("0", "x"), TEXT.replace('"version": 1', '"version": 2') % HASH, other):
+        path.write_text(text, encoding="utf-8")
+        with pytest.raises(RecordError, match=r"nothing was written|write over"):
+            write_record(rule, Record("my_rule", "open"))
+        assert path.read_text(encoding="utf-8") == text
+    assert list(path.parent.iterdir()) == [path]
+
+
+def test_nothing_unreadable_is_written(rule):
+    """A record that would not be read back is not written, and leaves no draft behind."""
+    write_record(rule, Record("my_rule", "open"))
+    for bad in (
+        Record("my_rule", "refuted"),
+        Record("my_rule", "open", rule="sha256:1"),
+        Record("my_rule", "open", (Counterexample(CASE, -1, 1, minimal=True),)),
+        Record("my_rule", "open", rule=HASH, coverage=(replace(P2, seen=10),)),
+        Record("my_rule", "open", rule=HASH, coverage=(replace(P2, seconds=float("nan")),)),
+    ):
+        with pytest.raises(RecordError):
+            write_record(rule, bad)
+        assert read_record(rule) == Record("my_rule", "open")
+    assert list(record_path(rule).parent.iterdir()) == [record_path(rule)]
+
+
+def test_written_in_one_step(rule, tmp_path, monkeypatch):
+    """The file keeps its mode, a link stays a link, and if writing fails the old text is still there and no draft is left."""
+    path = write_record(rule, Record("my_rule", "open"))
+    path.chmod(0o640)
+    link = tmp_path / "link.json"
+    link.symlink_to(path)
+    write_record_file(link, Record("my_rule", "open", rule=HASH))
+    assert link.is_symlink()
+    assert stat.S_IMODE(path.stat().st_mode) == 0o640
+    assert read_record(rule).rule == HASH
+
+    def no_room(*_):
+        raise OSError("no room")
+
+    monkeypatch.setattr(os, "replace", no_room)
+    monkeypatch.setattr("pathlib.Path.replace", no_room)
+    with pytest.raises(OSError, match="no room"):
+        write_record(rule, Record("my_rule", "open"))
+    assert read_record(rule).rule == HASH
+    assert list(path.parent.iterdir()) == [path]

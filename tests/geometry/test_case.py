@@ -249,3 +249,29 @@ def test_refusals_name_the_offending_entry(call, error, message):
     with pytest.raises(error) as caught:
         call()
     assert str(caught.value) == message
+
+
+@pytest.mark.parametrize("name", ["Gr(1,2)", "Gr(2,4)", "Fl(1,3;4)", "B2/B", "Fl(4)", "G2/P1"])
+def test_rows_between_two_places(name):
+    """``rows(X, first, last)`` is the slice of ``rows(X)``, whatever the two places are."""
+    X = FlagVariety(name)
+    everything = list(rows(X))
+    size = len(everything)
+    assert size == X.number_of_classes**2
+    assert everything == sorted(everything)
+    assert list(rows(X, 3)) == everything[3:]
+    places = range(size + 3) if size < 50 else [0, 1, 2, size // 3, size // 2, size - 2, size - 1, size, size + 5]
+    for first in places:
+        for last in places:
+            assert list(rows(X, first, last)) == everything[first:last]
+
+
+def test_one_row_far_away():
+    """A single row of a space with 1,625,702,400 rows is found without passing the others."""
+    X = FlagVariety("Fl(8)")
+    (last,) = rows(X, X.number_of_classes**2 - 1)
+    assert (last.u, last.v) == (X.point, X.point)
+    (first,) = rows(X, 0, 1)
+    assert (first.u, first.v) == (X.identity, X.identity)
+    (middle,) = rows(X, X.number_of_classes**2 // 2, X.number_of_classes**2 // 2 + 1)
+    assert middle.u.length + middle.v.length == X.dim

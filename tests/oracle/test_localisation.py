@@ -8,11 +8,11 @@ import pytest
 
 from conjcheck import Case, Fl, FlagVariety, Gr, product
 from conjcheck.errors import OutOfReach
-from conjcheck.geometry.case import rows
+from conjcheck.geometry.case import outcomes, rows
 from conjcheck.geometry.families import PartialFlags
 from conjcheck.oracle import ENGINES, witnesses
 from conjcheck.oracle.chevalley import chevalley
-from conjcheck.oracle.localisation import _inverses, _Numbers, _vandermonde, localisation, primes
+from conjcheck.oracle.localisation import Localisation, _inverses, _Numbers, _vandermonde, localisation, primes
 
 
 def word(X, *letters):
@@ -227,3 +227,58 @@ def test_work_is_what_the_loops_do():
     """Points times pairs of powers of z times the square table of classes: on ``Gr(2,4)`` up to ``q^2`` once 3 * 4 * 6 * 6."""
     assert localisation(Gr(2, 4)).work(8) == 3 * 4 * 6 * 6
     assert localisation(Fl(3)).work(4) == 3 * (3 * 4 * 6 * 6)
+
+
+@pytest.mark.parametrize("name", ["E7/P7", "Gr(3,7)", "F4/P1", "Fl(1,3;5)", "C3/P1,2", "G2/B", "Fl(4)"])
+def test_a_constant_alone_is_that_of_its_product(name):
+    """Every constant of random products, zeros and all powers of q included, asked for alone in any order, is that of the row."""
+    X, chooser = FlagVariety(name), random.Random(name)
+    engine, asked = Localisation(X), []
+    for _ in range(8):
+        u, v = chooser.choices(X.classes, k=2)
+        row = product(u, v)
+        possible = outcomes(X, u.length + v.length)
+        asked += [(u, v, w, d, row.get((w, d), 0)) for w, d in chooser.sample(possible, min(12, len(possible)))]
+        asked += [(u, v, w, d, n) for (w, d), n in chooser.sample(list(row.items()), min(8, len(row)))]
+    chooser.shuffle(asked)
+    assert len({d for *_, d, n in asked if n}) > 1
+    for u, v, w, d, n in asked:
+        assert engine.constant(u, v, w, d) == n
+
+
+def test_a_constant_off_the_degree_axiom_is_zero():
+    """What the degree axiom forbids, or a negative power of q, is 0 without any work."""
+    X = Fl(3)
+    engine = Localisation(X)
+    u, v = X.classes[1], X.classes[2]
+    assert engine.constant(u, v, X.point, (0, 0)) == 0
+    assert engine.constant(u, v, X.classes[3], (1, -1)) == 0
+    assert not engine._points
+
+
+def test_a_constant_from_several_primes(monkeypatch):
+    """With a bound beyond one prime a constant alone is put together from its residues, too; one beyond its bound is noticed."""
+    X = Gr(3, 6)
+    engine, u = Localisation(X), X.schubert(partition=(2, 1))
+    monkeypatch.setattr(engine, "bound", lambda u, v: 2**70)
+    assert engine.constant(u, u, X.schubert(partition=(3, 2, 1)), (0,)) == 2
+    assert len({p for p, *_ in engine._points}) == 3
+    monkeypatch.setattr(engine, "bound", lambda u, v: 1)
+    with pytest.raises(AssertionError, match="exceeds the bound"):
+        engine.constant(u, u, X.schubert(partition=(3, 2, 1)), (0,))
+
+
+def test_points_are_shared_and_deepened():
+    """A lower power of q is read off a point that is there; a higher one replaces it by a deeper point."""
+    X = Gr(2, 5)
+    engine, top = Localisation(X), X.point
+    engine.constant(X.identity, X.identity, X.identity, (0,))
+    (first,) = engine._points.values()
+    assert first.depth == 0
+    expected = product(top, top)
+    assert engine.row(top, top) == expected
+    (second,) = engine._points.values()
+    assert second.depth == 2 * top.length // X.n
+    for (w, d), n in expected.items():
+        assert engine.constant(top, top, w, d) == n
+    assert list(engine._points.values()) == [second]

@@ -17,7 +17,19 @@ def test_written_verified_stale(project):
     text = (project.path / RECORD).read_text()
     data = json.loads(text)
     assert (data["conjecture"], data["status"]) == ("twice", "refuted")
-    assert data["counterexamples"] == [{"where": FAULT, "rule": 2, "oracle": 1, "minimal": True}]
+    (found,) = data["counterexamples"]
+    assert found | {"certificate": None, "instead": None} == {
+        "where": FAULT,
+        "rule": 2,
+        "oracle": 1,
+        "minimal": True,
+        "certificate": None,
+        "instead": None,
+    }
+    reach = [(entry["space"], entry["rows"], entry["seen"], entry["of"], entry["cases"]) for entry in data["coverage"]]
+    assert reach == [("Gr(1,3)", 9, 9, 9, 9), ("Gr(1,4)", 13, 13, 16, 13)], "what the report calls compared"
+    assert (data["statement"], data["ring"], data["premise"]) == ("h^n = q", "quantum", False)
+    assert data["rule"].startswith("sha256:")
 
     second = project.run("-v", "--junitxml=out.xml", "--conjcheck-record", "-k", "recorded or survey")
     second.assert_outcomes(passed=2)
@@ -73,8 +85,45 @@ def test_a_false_certificate(project):
             (line,) = project.summary(result)
             assert "::survey - stale record: " in line
             assert "Gr(1,3): (2) * (2)" in line
+            again = project.run("--conjcheck-record", "-k", "survey")
+            again.assert_outcomes(passed=1, deselected=1)
+            known = json.loads((project.path / RECORD).read_text())["counterexamples"]
+            assert [(entry["where"], entry["minimal"]) for entry in known] == [
+                ("Gr(1,3): (2) * (2) -> (1), q^(1)", True),
+                (FAULT, False),
+            ], "recorded anew as the message says"
+            project.run().assert_outcomes(passed=2)
         else:
             result.assert_outcomes(passed=2)
+
+
+def test_the_coverage_of_a_rule_that_agrees(project):
+    """What a survey compared is put on record, and not changed by another run; after a change of the rule the report calls it stale."""
+    project.write("conjectures/powers.py", PROJECTIVE.format(name="powers"))
+    record = project.path / "conjectures/records/powers.json"
+    project.run("-k", "survey").assert_outcomes(passed=1, deselected=1)
+    assert not record.exists(), "nothing is recorded without being asked for"
+    project.run("--conjcheck-record").assert_outcomes(passed=2)
+    text = record.read_text()
+    data = json.loads(text)
+    assert (data["status"], data["counterexamples"]) == ("open", [])
+    entries = data["coverage"]
+    assert [(entry["space"], entry["seen"]) for entry in entries] == [("Gr(1,3)", 9), ("Gr(1,4)", 16)]
+    assert all(entry["seen"] == entry["of"] == entry["rows"] == entry["nonzero"] for entry in entries)
+    assert not any(entry["failing"] for entry in entries)
+    project.run("--conjcheck-record", "-k", "survey")
+    assert record.read_text() == text
+
+    project.write("conjectures/powers.py", PROJECTIVE.format(name="powers") + "\n# another version\n")
+    words = "coverage of 2 spaces, 25 rows, was computed for another version of the rule and counts no more"
+    result = project.run("-k", "survey", "-rP")
+    result.assert_outcomes(passed=1, deselected=1)
+    result.stdout.fnmatch_lines([f"note         {words}"])
+    project.run("--conjcheck-record", "-k", "survey", "-rP").stdout.no_fnmatch_line("*another version*")
+    anew = json.loads(record.read_text())
+    assert anew["rule"] != data["rule"]
+    assert [entry["space"] for entry in anew["coverage"]] == ["Gr(1,3)", "Gr(1,4)"]
+    project.run("-k", "survey", "-rP").stdout.no_fnmatch_line("*another version*")
 
 
 def test_damaged(project):

@@ -65,6 +65,19 @@ def test_refuted(refuted):
     assert list(found)[-1] == "environment"
 
 
+def test_the_choice_is_shown():
+    """Where a rule has variants, the report says which one it speaks about, and how many others there are."""
+
+    @candidate(on=Varieties(Gr(1, 3)), variants={"shift": (0, 1), "words": ("a",)})
+    def rule(X, u, v, *, shift, words):
+        return {}
+
+    found = entries(text_report(Examination(rule).survey()))
+    assert found["choice"] == "shift=0, words='a'; 1 other variant"
+    found = entries(text_report(Examination(rule.variant(shift=1)).survey()))
+    assert found["choice"] == "shift=1, words='a'; 1 other variant"
+
+
 def test_the_replay_line_is_for_a_shell(refuted):
     """The replay line splits into the words of a command, and its case parses back."""
     (line,) = [line for line in text_report(refuted, replay="pytest 'a b.py::rule'").splitlines() if line.startswith("replay")]

@@ -1,0 +1,71 @@
+"""``conjcheck board``: all conjectures of a repository in one table, as a page and in Markdown."""
+
+from __future__ import annotations
+
+import os
+from pathlib import Path
+
+import click
+
+from conjcheck.cli.common import FAILED, Stop
+
+__all__ = ["command"]
+
+
+@click.command("board")
+@click.argument("folder", type=click.Path(exists=True, file_okay=False, path_type=Path), metavar="FOLDER")
+@click.option(
+    "-o", "--output", type=click.Path(dir_okay=False, path_type=Path), metavar="FILE", help="The page.  [default: board.html]"
+)
+@click.option(
+    "--markdown",
+    type=click.Path(dir_okay=False, allow_dash=True, path_type=Path),
+    metavar="FILE",
+    help="A table in Markdown; - prints it. No page is written then, unless -o asks for one.",
+)
+@click.pass_context
+def command(context: click.Context, folder: Path, output: Path | None, markdown: Path | None) -> None:
+    """Put all conjectures in FOLDER, with what is on record about them, on one page that can be sorted and searched.
+
+    \b
+    For each: status, what was compared, counterexample, date, and whether
+    what is on record was computed for another version of the rule (stale).
+    Plug-ins and records that cannot be used have a row that says why.
+
+    Names link to the pages that lie beside FILE (pytest --conjcheck-report DIR, conjcheck page -o DIR). The plug-ins are imported; no
+    rule is called.
+
+    \b
+    Examples:
+      pytest conjectures --conjcheck-report pages
+      conjcheck board conjectures -o pages/board.html
+      conjcheck board conjectures --markdown -
+
+    Exit status: 0 all conjectures are on the board; 1 they are, but a plug-in or a record cannot be used; 2 wrong usage.
+    """  # noqa: D301  # click knows the character, not the two letters
+    from conjcheck.report.board import board_of_folder, board_page, board_table
+
+    page = output or (None if markdown else Path("board.html"))
+    beside = page.parent if page else folder
+    rows = board_of_folder(folder, beside=beside)
+    if page:
+        _write(page, board_page(rows, folder.resolve().name))
+        click.echo(str(page), err=str(markdown) == "-")
+    if markdown:
+        dash = str(markdown) == "-"
+        way = os.path.relpath(beside, "." if dash else markdown.parent)
+        text = board_table(rows, base="" if way == "." else f"{Path(way).as_posix()}/")
+        if dash:
+            click.echo(text, nl=False)
+        else:
+            _write(markdown, text)
+            click.echo(str(markdown))
+    context.exit(FAILED if any(row["status"] in ("broken", "unreadable") for row in rows) else 0)
+
+
+def _write(path: Path, text: str) -> None:
+    try:
+        path.parent.mkdir(parents=True, exist_ok=True)
+        path.write_text(text, encoding="utf-8", newline="\n")
+    except OSError as error:
+        raise Stop(f"expected a file that can be written, got {path}: {error}") from error

@@ -1,0 +1,163 @@
+"""What a diagnosis says: frozen values without any computing, for all outputs."""
+
+from dataclasses import dataclass
+from typing import Any
+
+from conjcheck.geometry.case import Case, Row
+
+__all__ = ["Condition", "Diagnosis", "Suggestion"]
+
+
+@dataclass(frozen=True, slots=True)
+class Condition:
+    """A short condition on cases, and at how many of those looked at it holds.
+
+    Attributes:
+        words: the condition.
+        expression: it as a Python expression in X, u, v, w, d; empty if there is no short one.
+        failing: the failing cases at which it holds.
+        agreeing: the agreeing cases at which it holds.
+        informative: those of them at which the rule or the constant is not 0.
+        others: other conditions, in words, that hold at the same cases.
+    """
+
+    words: str
+    expression: str
+    failing: int
+    agreeing: int
+    informative: int
+    others: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Suggestion:
+    """A premise under which the rule may be right. It was compared again on fresh rows; that is no proof.
+
+    Attributes:
+        words: the premise.
+        expression: it as a Python expression in X, u, v (and w, d); empty if there is no short one.
+        on_rows: whether it can be decided from X, u, v alone.
+        cases: the cases inside it that were compared; all of them agree.
+        informative: those of them at which the rule or the constant is not 0.
+        fresh: the cases of them that were compared only after the premise had been chosen; 0 if no row was left.
+        where: the spaces of these fresh cases.
+        narrows: whether the conjecture has a premise already, to which this one would be added.
+    """
+
+    words: str
+    expression: str
+    on_rows: bool
+    cases: int
+    informative: int
+    fresh: int
+    where: str
+    narrows: bool = False
+
+    @property
+    def premise(self) -> str:
+        """What to write into the declaration, or to add to the premise there; empty if there is no short expression."""
+        arguments = "X, u, v" if self.on_rows else "X, u, v, w, d"
+        return f"premise=lambda {arguments}: {self.expression}" if self.expression else ""
+
+
+@dataclass(frozen=True, slots=True)
+class Diagnosis:
+    """What the failures of a refuted conjecture have in common, and where it is right, as far as looked at.
+
+    Attributes:
+        failing, agreeing: the cases looked at; in large rows all nonzero values and a fixed sample of the zeros.
+        informative: the agreeing cases at which the rule or the constant is not 0.
+        where: the spaces they lie in.
+        signs: sentences about the errors as such.
+        firsts: in each direction the smallest failure: words such as ``"smallest n: 5"``, and the case.
+        conditions: the best conditions, best first; each of the first kind holds at every failure.
+        suggestion: a premise that stood a fresh comparison, ``None`` if none did.
+        refused: how many premises were tried on fresh rows and failed there.
+        unusable: features of the user that could not be used, and why.
+    """
+
+    failing: int
+    agreeing: int
+    informative: int
+    where: str
+    signs: tuple[str, ...] = ()
+    firsts: tuple[tuple[str, Case | Row], ...] = ()
+    conditions: tuple[Condition, ...] = ()
+    suggestion: Suggestion | None = None
+    refused: int = 0
+    unusable: tuple[str, ...] = ()
+
+    @property
+    def scope(self) -> str:
+        """What was looked at, in words."""
+        failures = f"{self.failing:,} failing {'case' if self.failing == 1 else 'cases'}"
+        return (
+            f"{failures} and {self.agreeing:,} agreeing ones, {self.informative:,} of these not 0, were looked at in {self.where}"
+        )
+
+    @property
+    def suggested(self) -> str:
+        """The suggestion in words, or that there is none."""
+        one = self.suggestion
+        if one is None:
+            tried = f"; {self.refused} that seemed possible failed there" if self.refused else ""
+            return f"none: no short premise stood a comparison on fresh rows{tried}"
+        inside = f"it agrees at all {one.cases:,} cases inside that were compared, {one.informative:,} of them not 0"
+        fresh = (
+            f"among them {one.fresh:,} fresh ones in {one.where}" if one.fresh else "and there are no fresh rows to compare it on"
+        )
+        narrows = ", inside its premise," if one.narrows else ""
+        return f"the rule may hold{narrows} when {one.words}; {inside}, {fresh}; this is no proof"
+
+    def counts(self, condition: Condition) -> str:
+        """At how many failures and agreements a condition holds, in words."""
+        failures = f"all {self.failing:,}" if condition.failing == self.failing else f"{condition.failing:,} of {self.failing:,}"
+        if condition.failing == self.failing == 1:
+            failures = "the one"
+        ending = "failure" if self.failing == 1 else "failures"
+        everywhere = condition.failing == self.failing
+        zeros = condition.agreeing - condition.informative
+        if not condition.agreeing:
+            exactly = ": exactly then it fails" if everywhere else ""
+            return f"holds at {failures} {ending} and at none of {self.agreeing:,} agreements{exactly}"
+        if not condition.informative:
+            return f"holds at {failures} {ending}; of {self.agreeing:,} agreements only at {zeros:,} where both sides are 0"
+        return (
+            f"holds at {failures} {ending}, and at {condition.informative:,} of {self.informative:,} agreements that are not 0 and "
+            f"{zeros:,} of {self.agreeing - self.informative:,} that are"
+        )
+
+    def as_json(self) -> dict[str, Any]:
+        """The diagnosis in JSON types."""
+        found: dict[str, Any] = {
+            "failing": self.failing,
+            "agreeing": self.agreeing,
+            "informative": self.informative,
+            "where": self.where,
+            "signs": list(self.signs),
+            "firsts": {words: str(case) for words, case in self.firsts},
+            "conditions": [
+                {
+                    "words": condition.words,
+                    "expression": condition.expression,
+                    "failing": condition.failing,
+                    "agreeing": condition.agreeing,
+                    "informative": condition.informative,
+                    "others": list(condition.others),
+                }
+                for condition in self.conditions
+            ],
+            "refused": self.refused,
+        }
+        if self.suggestion:
+            found["suggestion"] = {
+                "words": self.suggestion.words,
+                "premise": self.suggestion.premise,
+                "cases": self.suggestion.cases,
+                "informative": self.suggestion.informative,
+                "fresh": self.suggestion.fresh,
+                "where": self.suggestion.where,
+            }
+        if self.unusable:
+            found["unusable"] = list(self.unusable)
+        return found

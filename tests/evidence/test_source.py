@@ -1,0 +1,170 @@
+"""What a rule is: the hash of its file and of all that it imports from its repository."""
+
+import re
+import shutil
+
+import pytest
+
+from conjcheck.errors import RecordError
+from conjcheck.evidence.source import rule_hash, source_files
+
+FILES = {
+    "pyproject.toml": "",
+    "conjectures/rule.py": (
+        "import math\nfrom _direct import f\nimport pack.inner\nfrom shared import tools\n\n\ndef rule(X, u, v):\n    from _late import g\n"
+        "    return f(g(u))\n"
+    ),
+    "conjectures/_direct.py": "from _second import h\n\n\ndef f(x):\n    return h(x)\n",
+    "conjectures/_second.py": "def h(x):\n    return 1\n",
+    "conjectures/_late.py": "def g(x):\n    return 2\n",
+    "conjectures/pack/__init__.py": "ONE = 1\n",
+    "conjectures/pack/inner.py": "from . import TWO\nfrom .near import THREE\nfrom ..aside import FOUR\n",
+    "conjectures/pack/near.py": "THREE = 3\n",
+    "conjectures/aside.py": "FOUR = 4\n",
+    "shared/__init__.py": "from .starred import *\n",
+    "shared/tools.py": "import importlib\n\nFIVE = importlib.import_module('by_name')\nSIX = __import__('built_in')\n",
+    "shared/starred/__init__.py": "from .part import *\n",
+    "shared/starred/part.py": "SEVEN = 7\n",
+    "by_name.py": "FIVE = 5\n",
+    "built_in.py": "SIX = 6\n",
+}
+UNRELATED = {
+    "conjectures/_other.py": "x = 1\n",
+    "conjectures/other.py": "from rule import rule\n",
+    "conjectures/records/rule.json": "{}",
+    "README.md": "hello\n",
+    "shared/unused.py": "y = 1\n",
+    "by_names.py": "z = 1\n",
+}
+
+
+@pytest.fixture
+def repository(tmp_path):
+    """A repository with a rule and its helpers; its rule file."""
+    for name, text in FILES.items():
+        path = tmp_path / "here" / name
+        path.parent.mkdir(parents=True, exist_ok=True)
+        path.write_text(text)
+    return tmp_path / "here"
+
+
+def test_its_shape(repository):
+    """It is ``sha256:`` and 64 hexadecimal digits, and the same every time."""
+    found = rule_hash(repository / "conjectures/rule.py")
+    assert re.fullmatch("sha256:[0-9a-f]{64}", found)
+    assert rule_hash(str(repository / "conjectures/../conjectures/rule.py")) == found
+
+
+@pytest.mark.parametrize("name", [name for name in FILES if name.endswith(".py")])
+def test_one_character(repository, name):
+    """One character more in the rule, a helper, its helper, a package, its ``__init__``, or what is imported late changes it."""
+    before = rule_hash(repository / "conjectures/rule.py")
+    (repository / name).write_text(FILES[name] + "#")
+    assert rule_hash(repository / "conjectures/rule.py") != before
+    (repository / name).write_text(FILES[name])
+    assert rule_hash(repository / "conjectures/rule.py") == before
+
+
+@pytest.mark.parametrize("name", UNRELATED)
+def test_unrelated_files(repository, name):
+    """Files that the rule does not import play no part."""
+    before = rule_hash(repository / "conjectures/rule.py")
+    (repository / name).parent.mkdir(exist_ok=True)
+    (repository / name).write_text(UNRELATED[name])
+    assert rule_hash(repository / "conjectures/rule.py") == before
+
+
+def test_the_place_of_the_repository(repository, tmp_path):
+    """A copy elsewhere has the same hash."""
+    shutil.copytree(repository, tmp_path / "very" / "far" / "away")
+    assert rule_hash(tmp_path / "very/far/away/conjectures/rule.py") == rule_hash(repository / "conjectures/rule.py")
+
+
+def test_the_name_of_a_file(repository):
+    """A file under another name is another rule: its name can be asked by the program."""
+    before = rule_hash(repository / "conjectures/rule.py")
+    (repository / "conjectures/rule.py").rename(repository / "conjectures/rules.py")
+    assert rule_hash(repository / "conjectures/rules.py") != before
+
+
+@pytest.mark.parametrize("end", [b"\r\n", b"\r"])
+def test_line_ends(repository, end):
+    """Line ends of other systems play no part."""
+    before = rule_hash(repository / "conjectures/rule.py")
+    for name, text in FILES.items():
+        (repository / name).write_bytes(text.encode().replace(b"\n", end))
+    assert rule_hash(repository / "conjectures/rule.py") == before
+
+
+@pytest.mark.parametrize("odd", ["\x0b", "\x0c", "\x1c", "\x85", "\u2028"])
+def test_only_line_ends_are_made_equal(repository, odd):
+    """What some programs take for a line end, and Python does not, counts as it stands."""
+    path = repository / "conjectures/rule.py"
+    path.write_text('TEXT = """a\nb"""\n')
+    before = rule_hash(path)
+    path.write_text(f'TEXT = """a{odd}b"""\n', encoding="utf-8")
+    assert rule_hash(path) != before
+
+
+def test_a_byte_order_mark(repository):
+    """Helpers are seen behind a byte order mark, too."""
+    path = repository / "conjectures/rule.py"
+    path.write_bytes(b"\xef\xbb\xbf" + path.read_bytes())
+    before = rule_hash(path)
+    (repository / "conjectures/_second.py").write_text("def h(x):\n    return 3\n")
+    assert rule_hash(path) != before
+
+
+def test_a_folder_for_sources(repository):
+    """A package in the folder ``src`` of the repository is found."""
+    (repository / "src/far").mkdir(parents=True)
+    (repository / "src/far/__init__.py").write_text("A = 1\n")
+    path = repository / "conjectures/rule.py"
+    path.write_text("from far import A\n")
+    before = rule_hash(path)
+    (repository / "src/far/__init__.py").write_text("A = 2\n")
+    assert rule_hash(path) != before
+
+
+def test_a_circle(tmp_path):
+    """Files that import each other come once each, the plug-in first."""
+    (tmp_path / "a.py").write_text("import b\n")
+    (tmp_path / "b.py").write_text("import a\n")
+    assert source_files(tmp_path / "a.py") == [(tmp_path / "a.py").resolve(), (tmp_path / "b.py").resolve()]
+    assert rule_hash(tmp_path / "a.py") != rule_hash(tmp_path / "b.py")
+
+
+def test_texts_cannot_flow_into_each_other(tmp_path):
+    """Moving text from one file to the next changes it."""
+    (tmp_path / "a.py").write_text("import b\nx = 1\n")
+    (tmp_path / "b.py").write_text("y = 1\n")
+    before = rule_hash(tmp_path / "a.py")
+    (tmp_path / "a.py").write_text("import b\n")
+    (tmp_path / "b.py").write_text("x = 1\ny = 1\n")
+    assert rule_hash(tmp_path / "a.py") != before
+
+
+@pytest.mark.parametrize("content", [b"def broken(:\n", b"x = 1\x00\n"])
+def test_what_does_not_parse(tmp_path, content):
+    """A file that is no Python is hashed as text."""
+    (tmp_path / "a.py").write_bytes(content)
+    before = rule_hash(tmp_path / "a.py")
+    (tmp_path / "a.py").write_bytes(content + b"#")
+    assert rule_hash(tmp_path / "a.py") != before
+
+
+@pytest.mark.parametrize("name", ["a.py", "b.py"])
+def test_not_utf_8(tmp_path, name):
+    """A file that is not UTF-8, the rule or a helper, is refused by name."""
+    (tmp_path / "a.py").write_text("import b\n")
+    (tmp_path / "b.py").write_text("")
+    (tmp_path / name).write_bytes(b"# -*- coding: latin-1 -*-\n# \xe9\n")
+    with pytest.raises(RecordError, match=rf"{name}: expected a readable Python file in UTF-8, got"):
+        rule_hash(tmp_path / "a.py")
+
+
+def test_no_file(tmp_path):
+    """A missing file, or a folder, is refused by name."""
+    for path in (tmp_path / "none.py", tmp_path):
+        with pytest.raises(RecordError, match=f"{path.name}: expected a readable Python file in UTF-8, got"):
+            rule_hash(path)

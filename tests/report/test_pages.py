@@ -1,0 +1,91 @@
+"""Pages as files: names that every file system takes, and nothing that overwrites anything."""
+
+import json
+
+import pytest
+from page_samples import NAMES, TAGS, document, outcomes
+
+from conjcheck.evidence.source import rule_hash
+from conjcheck.report.html import page
+from conjcheck.report.pages import documents_of, now, page_name, record_beside, write_pages
+
+
+@pytest.mark.parametrize(
+    ("file", "name", "expected"),
+    [
+        ("conjectures/rim_hooks.py", "rim_hooks", "rim_hooks"),
+        ("conjectures/bounds.py", "at_most", "bounds.at_most"),
+        ("records/at_most.json", "another", "at_most"),
+        ("", "x/../../y", "x_.._.._y"),
+        ("", "..", "_"),
+        ("", "\u05e9", "\u05e9"),
+    ],
+)
+def test_names(file, name, expected):
+    """A page is named after its file and conjecture, without anything that leads elsewhere."""
+    assert page_name(file, name) == expected
+
+
+def test_names_are_not_too_long():
+    """A name of thousands of letters is cut."""
+    assert len(page_name("", "x" * 5000)) < 200
+
+
+def test_every_page_gets_a_file(tmp_path):
+    """Documents of one name get files of their own, an index is never overwritten, each document lies beside its page."""
+    twice = [document("agrees"), document("agrees"), document("agrees") | {"file": "", "name": "index"}, *map(document, NAMES)]
+    pages = write_pages(tmp_path / "new" / "folder", twice)
+    assert len(set(pages)) == len(twice)
+    assert "index.html" not in {path.name for path in pages}
+    for path, made in zip(pages, twice, strict=True):
+        assert path.read_text(encoding="utf-8").startswith("<!doctype html>")
+        assert json.loads((path.parent / f"{path.name.removesuffix('.html')}.json").read_text(encoding="utf-8")) == made
+
+
+def test_outcomes_of_one_conjecture_belong_together():
+    """Outcomes are grouped by file and name, in the order in which they came; each document knows the hash of its rule."""
+    mixed = [part for pair in zip(outcomes("agrees"), outcomes("agrees"), strict=True) for part in pair] + outcomes("lantern")
+    made = documents_of(mixed, made="now")
+    assert [(d["name"], len(d["parts"])) for d in made] == [("powers", 2 * len(outcomes("agrees"))), ("lantern_rule", 1)]
+    assert made[1]["rule"] == rule_hash(outcomes("lantern")[0]["file"])
+    assert made[1]["record"]["status"] == "refuted"
+    assert made[0]["record"] is None
+    assert documents_of([outcomes("agrees")[0] | {"file": "/nowhere/x.py"}])[0]["rule"] == ""
+
+
+def test_the_record_beside(tmp_path):
+    """A record is found beside the plug-in; one that is no JSON object is not taken for none; no name leads elsewhere."""
+    (tmp_path / "records").mkdir()
+    (tmp_path / "records" / "a.json").write_text('{"x": 1}')
+    (tmp_path / "records" / "b.json").write_text("{{{")
+    file = str(tmp_path / "rule.py")
+    assert record_beside(file, "a") == {"x": 1}
+    assert record_beside(file, "b") == {}
+    assert record_beside(file, "c") is None
+    assert record_beside(file, "../records/a") is None
+    assert record_beside(file, TAGS) is None
+
+
+def test_now_sorts():
+    """The date begins with the year."""
+    assert now()[:2] == "20"
+    assert now().endswith(" UTC")
+
+
+def test_a_stale_record_is_said_to_be_stale(tmp_path):
+    """Coverage on record that was computed for another version of the rule counts no more, and the page says so; a record that is none, too."""
+    (tmp_path / "rule.py").write_text("x = 1")
+    (tmp_path / "records").mkdir()
+    covered = {"space": "Gr(1,3)", "rows": 9, "seen": 9, "of": 9, "cases": 9, "nonzero": 9, "failing": 0, "seconds": 1}
+    plain = {"format": "conjcheck-record", "version": 1, "conjecture": "powers", "status": "open", "counterexamples": []}
+    run = [outcomes("agrees")[0] | {"file": str(tmp_path / "rule.py")}]
+    path = tmp_path / "records" / "powers.json"
+    for rule, stale in (("sha256:" + "0" * 64, True), (rule_hash(tmp_path / "rule.py"), False)):
+        path.write_text(json.dumps(plain | {"rule": rule, "coverage": [covered | {"engine": "e", "conjcheck": "0"}]}))
+        (made,) = documents_of(run)
+        assert ("another version of the rule" in made["record"]["stale"]) == stale
+        assert ("another version of the rule" in page(made)) == stale
+    path.write_text("{{{")
+    (made,) = documents_of(run)
+    assert made["record"]["problem"]
+    assert "The record cannot be read" in page(made)

@@ -1,0 +1,374 @@
+"""Diagnosis: planted faults are found again, counts are exact, suggestions stand, and nothing a rule does breaks it."""
+
+import importlib
+import json
+import sys
+from itertools import combinations
+from pathlib import Path
+
+import faulty
+import numpy as np
+import pytest
+
+from conjcheck import CompleteFlags, Grassmannians, ProjectiveSpaces, Varieties, candidate, claim, product, simple_roots
+from conjcheck.geometry.case import Case, Row
+from conjcheck.oracle.guard import Watch, watched
+from conjcheck.report.text import text_report
+from conjcheck.testing.bank import TestBank
+from conjcheck.testing.compare import Comparer
+from conjcheck.testing.diagnose import diagnose
+from conjcheck.testing.examine import EFFORTS, Examination
+from conjcheck.testing.features import FEATURES, Feature
+from conjcheck.testing.gather import gather, place
+from conjcheck.testing.minimise import Minimum, layer_of
+from conjcheck.testing.search import search
+from conjcheck.testing.survey import survey
+
+BUNDLED = Path(__file__).parents[2] / "conjectures"
+
+
+def bundled(name):
+    """A bundled conjecture."""
+    if str(BUNDLED) not in sys.path:
+        sys.path.append(str(BUNDLED))
+    return getattr(importlib.import_module(name), name)
+
+
+def worked_out(conjecture, *, budget=1.0):
+    """The diagnosis of a false conjecture whose survey finds the failure, and the comparer."""
+    comparer = Comparer(conjecture)
+    finding = survey(comparer, budget=60).finding
+    layer = layer_of(comparer, finding, budget=0.3)
+    return diagnose(comparer, Minimum(finding, True, 0), layer, budget=budget), comparer
+
+
+def right(u, v):
+    """The right product, as a rule under test may know it."""
+    return faulty.terms(u, v)
+
+
+# -- the search in the bank -------------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_the_bank_finds_what_brute_force_finds(seed):
+    """Of all single tests and pairs that hold at every failure, the best one is as good as the best found by trying all; counts are exact."""
+    chooser = np.random.default_rng(seed)
+    K = 300
+    values = [
+        (Feature(f"f{k}", f"not f{k}", "row", lambda cases: None, "", int(k % 3)), chooser.random(K) < 0.8) for k in range(9)
+    ] + [(Feature(f"the number g{k}", "", "case", lambda cases: None, "", 1), chooser.integers(0, 4, K)) for k in range(3)]
+    fails = values[0][1] & values[1][1] & (chooser.random(K) < 0.4)
+    informative = chooser.random(K) < 0.5
+    bank = TestBank(values, fails, informative, (5, 2))
+    by_feature = dict(values)
+    vectors = {test: test.holds(by_feature[test.feature]) for test in bank.tests}
+
+    def counts(vector):
+        return tuple(int((vector & part).sum()) for part in (fails, ~fails & informative, ~fails & ~informative))
+
+    found = bank.covering()
+    for one in found:
+        parts = [vectors[test] for test in one.tests]
+        vector = np.logical_and.reduce(parts) if one.join == "and" else np.logical_or.reduce(parts)
+        assert counts(vector) == (one.failing, one.informative, one.zeros)
+        assert one.failing == fails.sum()
+
+    def saved(vector, oddity, price):
+        total = (~fails & informative).sum(), (~fails & ~informative).sum()
+        _, i, z = counts(vector)
+        return 5 * np.log2((total[0] + 1) / (i + 1)) + 2 * np.log2((total[1] + 1) / (z + 1)) - oddity - price
+
+    best = max(
+        [saved(vector, test.oddity, 0) for test, vector in vectors.items() if vector[fails].all()]
+        + [
+            saved(vectors[a] & vectors[b], a.oddity + b.oddity, 10)
+            for a, b in combinations(vectors, 2)
+            if (vectors[a] & vectors[b])[fails].all()
+        ]
+        + [
+            saved(vectors[a] | vectors[b], a.oddity + b.oddity, 11)
+            for a, b in combinations(vectors, 2)
+            if (vectors[a] | vectors[b])[fails].all()
+        ]
+    )
+    assert bank.score(found[0]) == pytest.approx(best)
+
+
+def test_opposites():
+    """The opposite of a test and of a condition holds exactly where it does not, and so do their words and expressions."""
+    cases = gather(Comparer(faulty.planted(faulty.FAULTS[0])), [faulty.FlagVariety("Gr(2,5)")], deadline=np.inf, most_rows=60)[
+        0
+    ].cases
+    comparer = Comparer(faulty.planted(faulty.FAULTS[0]))
+    found = search(comparer, [survey(comparer, budget=9).finding.row], budget=1)
+    for one in found.conditions:
+        assert (one.of(cases) == ~one.opposite.of(cases)).all()
+        assert one.words != one.opposite.words
+        assert one.opposite.opposite.words == one.words
+
+
+# -- planted faults ----------------------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(
+    "name",
+    ["only d > 0", "u not vexillary", "u after v", "two hooks", "l(u) + l(v) > dim"],
+)
+def test_planted_faults_are_named(name):
+    """A condition equivalent to the planted one on all nonzero constants looked at is shown, and on the next n, not looked at, as well."""
+    fault = next(fault for fault in faulty.FAULTS if fault.name == name)
+    measured = faulty.measure(fault, budget=1.2, seconds=0.4)
+    assert measured.named
+    assert measured.still
+    if measured.found.premise:
+        assert measured.holds
+
+
+@pytest.mark.slow
+def test_how_many_planted_faults_are_found(capsys):
+    """Of the 24 planted faults at least 22 are named, and at least 20 suggested premises hold at the next n; the figures are printed."""
+    lines, (named, still, holds) = faulty.figures(faulty.FAULTS, budget=4)
+    strange, (_, _, strange_holds) = faulty.figures(faulty.STRANGE, budget=4)
+    with capsys.disabled():
+        print("", *lines, f"named {named}, at the next n {still}, premises that hold there {holds}, of {len(lines)}", sep="\n")
+        print("conditions that no feature says:", *strange, f"premises that hold {strange_holds} of {len(strange)}", sep="\n")
+    assert named >= 22
+    assert still >= 22
+    assert holds >= 20
+
+
+def test_a_bound_on_the_space_is_no_premise():
+    """A rule that is wrong from n = 4 on is said to be so, but no premise with a bound on n is suggested."""
+    measured = faulty.measure(next(fault for fault in faulty.FAULTS if fault.name == "n >= 4"), budget=1, seconds=0.4)
+    assert measured.found.conditions[0].words == "n >= 4"
+    assert measured.found.conditions[0].informative == 0
+    assert measured.found.premise is None
+
+
+# -- bundled false rules ------------------------------------------------------------------------------------------------
+
+
+def test_the_lantern_rule():
+    """The lantern rule fails exactly at d = 1 where v has an empty row, as far as anything is not 0; elsewhere it holds."""
+    found, comparer = worked_out(bundled("lantern_rule"), budget=2.5)
+    assert found.signs == ("always too large, always by 1", "only at d > 0")
+    texts = [condition.words for condition in found.conditions[:2]]
+    assert any("the number of empty rows of v is at least 1" in text and ("d > 0" in text or "|d| = 1" in text) for text in texts)
+    assert found.conditions[0].informative == 0
+    assert found.conditions[0].failing == found.failing > 10
+    assert found.suggestion is not None
+    assert found.suggestion.narrows
+    assert found.suggestion.fresh > 20
+    holds = eval(found.suggestion.premise.removeprefix("premise="))
+    tables = gather(comparer, [faulty.FlagVariety("Gr(4,9)")], deadline=np.inf, most_rows=150)
+    for table in tables:
+        for k in np.flatnonzero(table.fails):
+            case = place(table, int(k))
+            assert not holds(case.X, case.u, case.v, case.w, case.d)
+    assert sum(table.fails.sum() for table in tables) > 5
+
+
+def test_step_puzzles():
+    """The step puzzles give one too few, at three steps at least; a sub-class is suggested on which they are right."""
+    rule = bundled("step_puzzles")
+    comparer = Comparer(rule)
+    row = Row.parse("Fl(1,2,3;5): [14325] * [21534]")
+    finding = comparer.row(row).finding
+    found = diagnose(comparer, Minimum(finding, True, 0), layer_of(comparer, finding, budget=0.5), budget=4)
+    assert found.signs == ("always too small, always by 1",)
+    assert found.failing >= 3
+    assert all(condition.failing == found.failing for condition in found.conditions[:1])
+    assert found.suggestion is not None
+    assert found.suggestion.cases > 500
+
+
+# -- counts, claims, rings ---------------------------------------------------------------------------------------------
+
+
+def test_counts_are_exact():
+    """The counts of a condition are those of its expression, case by case, and failing and agreeing cases are all cases looked at."""
+    fault = next(fault for fault in faulty.FAULTS if fault.name == "l(u) + l(v) > dim")
+    comparer = Comparer(faulty.planted(fault))
+    rows = [survey(comparer, budget=9).finding.row]
+    found = search(comparer, rows, budget=1)
+    said = diagnose(comparer, Minimum(comparer.row(rows[0]).finding, True, 0), budget=1)
+    assert said.failing + said.agreeing > 300
+    assert said.agreeing > said.informative > 0
+    for one in found.conditions:
+        if not one.expression:
+            continue
+        failing = informative = zeros = 0
+        for table in found.tables:
+            for k in range(len(table)):
+                case = place(table, k)
+                truth = right(case.u, case.v).get((case.w, case.d), 0)
+                wrong = truth + (truth > 0 and case.u.length + case.v.length > case.X.dim)
+                assert table.fails[k] == (wrong != truth)
+                assert table.errors[k] == wrong - truth
+                assert table.informative[k] == (truth > 0)
+                names = {name: getattr(case, name) for name in "Xuvwd"} | {"combinations": combinations}
+                if eval(one.expression, names):
+                    failing += wrong != truth
+                    informative += wrong == truth != 0
+                    zeros += wrong == truth == 0
+        assert (failing, informative, zeros) == (one.failing, one.informative, one.zeros)
+
+
+def test_signs_and_first_failures():
+    """Too small and too large errors are counted, and in each direction the smallest failure is given."""
+
+    @candidate(on=Grassmannians())
+    def off(X, u, v, w, d):
+        true = right(u, v).get((w, d), 0)
+        return true and (true + 2 if d[0] > 1 else 0 if d == (1,) and X.n >= 4 else true)
+
+    found, _ = worked_out(off)
+    assert found.signs[0].startswith("too small at ")
+    assert found.signs[0].endswith("by 1 to 2")
+    assert found.signs[1] == "only at d > 0"
+    firsts = dict(found.firsts)
+    assert str(firsts["n = 4"]).startswith("Gr(1,4): ")
+    assert firsts["|d| = 1"].d == (1,)
+    assert found.conditions[0].words in ("d > 0 (some q occurs); and n >= 4", "n >= 4; and d > 0 (some q occurs)", "deg q^d >= 4")
+
+
+def test_claims():
+    """A claim about constants and a claim about rows are diagnosed as well; there are no signs of errors."""
+
+    @claim(on=Grassmannians())
+    def no_q(X, u, v, w, d, N):
+        return sum(d) == 0 or N(u, v, w, d) == 0
+
+    found, _ = worked_out(no_q)
+    assert found.signs == ("only at d > 0",)
+    assert found.conditions[0].words == "d > 0 (some q occurs)"
+    assert found.conditions[0].informative == 0
+
+    @claim(on=Grassmannians())
+    def few_terms(X, u, v, N):
+        return u.length < 2 or v.length < 2 or len(N.product(u, v)) == 0
+
+    found, _ = worked_out(few_terms)
+    assert found.signs == ()
+    assert found.conditions[0].words == "the smaller of l(u) and l(v) is at least 2"
+    assert found.conditions[0].agreeing == 0
+    assert found.suggestion is not None
+    assert found.suggestion.on_rows
+    assert isinstance(found.firsts[0][1], Row)
+
+
+def test_equivariant_rings():
+    """In an equivariant ring there are conditions, but no sizes of errors."""
+
+    @candidate(on=ProjectiveSpaces(), ring="equivariant")
+    def unit_only(X, u, v):
+        return {v: simple_roots(X)[0] * 0 + 1} if u.length == 0 else {}
+
+    found, _ = worked_out(unit_only)
+    assert found.signs == ()
+    assert found.failing > 0
+    assert found.conditions[0].informative == 0
+
+
+def test_features_of_the_user_take_part():
+    """A user's feature that says the planted condition is found and makes the premise; unusable ones are reported, and nothing breaks."""
+
+    @candidate(
+        on=CompleteFlags(),
+        ring="classical",
+        features={
+            "l(u) is even": lambda X, u, v, w, d: u.length % 2 == 0,
+            "broken": lambda X, u, v, w, d: {}[d],
+            "asks": lambda X, u, v, w, d: len(product(u, v)) > 1,
+        },
+    )
+    def even(X, u, v):
+        return {w: n + (u.length % 2 == 0) for (w, d), n in right(u, v).items() if not any(d)}
+
+    found, _ = worked_out(even, budget=1.5)
+    assert found.conditions[0].words == "l(u) is even"
+    assert found.conditions[0].informative == 0
+    assert found.suggestion.words == "not: l(u) is even"
+    assert [text.split(":")[0] for text in found.unusable] == ["broken", "asks"]
+    assert "KeyError" in found.unusable[0]
+    assert "oracle" in found.unusable[1]
+
+
+def test_a_rule_that_misbehaves_elsewhere():
+    """A rule that raises, or gives no count, at other rows is diagnosed by the rows where it answers."""
+
+    @candidate(on=Grassmannians())
+    def moody(X, u, v, w, d):
+        if X.n == 5 and u.length == 2:
+            raise SystemExit
+        if X.n == 6 and v.length == 3:
+            return -1
+        return right(u, v).get((w, d), 0) * (not any(d) or X.n < 3)
+
+    found, _ = worked_out(moody)
+    assert found.failing > 0
+    assert found.signs[0].startswith("always too small")
+    assert found.signs[1] == "only at d > 0"
+
+
+def test_nothing_to_compare_with():
+    """A rule that is wrong everywhere has no diagnosis: there is no agreement."""
+
+    @candidate(on=Varieties("Gr(1,2)"), ring="classical", premise=lambda X, u, v: v.length == 0)
+    def never(X, u, v, w):
+        return 7
+
+    found, _ = worked_out(never)
+    assert found is None
+
+
+def test_a_whole_family_looked_at():
+    """Where no fresh row is left a premise is still suggested, and it is said that there was nothing to compare it on."""
+
+    @candidate(on=Varieties("Gr(2,4)"))
+    def bad(X, u, v, w, d):
+        return right(u, v).get((w, d), 0) * (not any(d))
+
+    found, _ = worked_out(bad)
+    assert found.suggestion.words == "d = 0 (classical)"
+    assert found.suggestion.fresh == 0
+    assert "there are no fresh rows" in found.suggested
+
+
+# -- the pipeline ---------------------------------------------------------------------------------------------------------
+
+
+def test_reports():
+    """The outcome of a refuted rule carries the diagnosis into the text and into JSON."""
+    fault = next(fault for fault in faulty.FAULTS if fault.name == "only d > 0")
+    outcome = Examination(faulty.planted(fault), EFFORTS["quick"]).survey()
+    assert outcome.status == "refuted"
+    text = text_report(outcome)
+    lines = text.splitlines()
+    assert any(line.startswith("errors       always too large, always by 1; only at d > 0") for line in lines)
+    assert any(line.startswith("failures     ") for line in lines)
+    assert any(line.startswith("suggestion   the rule may hold when d = 0 (classical)") for line in lines)
+    assert "premise=lambda X, u, v, w, d: not any(d)" in text
+    plain = json.loads(json.dumps(outcome.as_json()))["diagnosis"]
+    assert plain["conditions"][0]["words"] == "d > 0 (some q occurs)"
+    assert plain["conditions"][0]["failing"] == plain["failing"]
+    assert plain["suggestion"]["premise"].startswith("premise=")
+    assert Case.parse(plain["firsts"]["n = 2"])
+
+
+def test_the_guard_is_left_as_it_was():
+    """After a diagnosis nobody is watched any more."""
+    worked_out(faulty.planted(faulty.FAULTS[1]), budget=1)
+    with watched(watch := Watch(forbidding=False)):
+        pass
+    assert not watch.asked
+    X = faulty.FlagVariety("Gr(2,4)")
+    assert product(X.identity, X.identity)
+
+
+def test_names_in_the_bank_are_features():
+    """Every feature of the list has words that a condition can be made of."""
+    for feature in FEATURES:
+        assert feature.yes
+        assert feature.needs in ("space", "row", "case")
