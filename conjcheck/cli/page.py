@@ -84,8 +84,8 @@ def command(context: click.Context, targets: tuple[str, ...], folder: Path, late
 
 def _documents(target: str, effort: str, seed: int | None) -> Iterator[dict[str, Any]]:
     """The documents of one target."""
-    from conjcheck.report.document import document_of_record, is_outcome, unreadable
-    from conjcheck.report.pages import documents_of, now
+    from conjcheck.report.document import is_outcome, unreadable
+    from conjcheck.report.pages import document_of_record_file, documents_of, now
 
     if target.partition("::")[0].endswith(".py"):
         yield from documents_of(_examined(target, effort, seed), made=now())
@@ -104,7 +104,7 @@ def _documents(target: str, effort: str, seed: int | None) -> Iterator[dict[str,
     if outcomes and all(is_outcome(outcome) for outcome in outcomes):
         yield from documents_of(outcomes, made=now())
     else:
-        yield document_of_record(data, file=target, made=now())
+        yield document_of_record_file(data, file=target, made=now())
 
 
 def _examined(target: str, effort: str, seed: int | None) -> list[dict[str, Any]]:

@@ -8,7 +8,8 @@ from pathlib import Path
 from types import CodeType, ModuleType
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.errors import DeclarationError
+from conjcheck.errors import DeclarationError, RecordError
+from conjcheck.evidence.source import source_files
 
 __all__ = ["GROUP", "conjectures_in", "conjectures_in_file", "installed_files", "prefer_helpers_of"]
 
@@ -30,6 +31,11 @@ def conjectures_in_file(path: Path) -> list[Conjecture]:
     """
     if not path.is_file() or path.suffix != ".py":
         raise DeclarationError(f"expected a plug-in file such as conjectures/my_rule.py, got {path}")
+    try:
+        for helper in source_files(path):
+            _import_from_source(helper.parent)
+    except RecordError as error:
+        raise DeclarationError(str(error)) from None
     prefer_helpers_of(path.parent.resolve())
     name = f"conjcheck_file_{path.stem}"  # a name that hides no other module
     spec = spec_from_file_location(name, path.resolve(), loader=_FromSource(name, str(path.resolve())))
@@ -62,11 +68,15 @@ class _FromSource(SourceFileLoader):
         return code
 
 
+def _import_from_source(folder: Path) -> None:
+    """Let modules in a folder be compiled anew."""
+    loaders = (ExtensionFileLoader, EXTENSION_SUFFIXES), (_FromSource, SOURCE_SUFFIXES)
+    sys.path_importer_cache[str(folder)] = FileFinder(str(folder), *loaders)
+
+
 def prefer_helpers_of(folder: Path) -> None:
     """Let plug-ins import the files beside them, and not files of the same name beside other plug-ins."""
-    sys.path_importer_cache[str(folder)] = FileFinder(
-        str(folder), (ExtensionFileLoader, EXTENSION_SUFFIXES), (_FromSource, SOURCE_SUFFIXES)
-    )
+    _import_from_source(folder)
     if str(folder) in sys.path:
         sys.path.remove(str(folder))
     sys.path.insert(0, str(folder))

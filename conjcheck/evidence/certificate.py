@@ -25,6 +25,9 @@ __all__ = ["certificate_of", "write_certificate"]
 
 Vector = tuple[int, ...]
 
+_FEW_CLASSES = 400
+"""On G/B with so few classes the relations of the recursion cost nothing; on D4 they are sometimes shorter."""
+
 
 def certificate_of(
     case: Case | Row, *, rule_value: object, conjecture_name: str, rule_hash: str, ring: str = "quantum", version: str = ""
@@ -125,13 +128,14 @@ def _laid_out(certificate: dict[str, Any]) -> str:
 
 
 def _steps(group: recheck.WeylGroup, x: Vector, top: Vector) -> list[dict[str, Any]]:
-    """Steps to an element, in JSON types: a short list if the search finds one, else that of the recursion."""
+    """Steps to an element, in JSON types: a short list if the search finds one, else the recursion's; on small G/B the shorter one."""
     terms: Any = group.terms
     word: Any = group.word
     length: Any = group.length
     steps = expression(terms, group.identity, x, top, length, complete=True)
-    if steps is None:
-        steps = by_relations(terms, group.identity, x, top, partial(_parts, group))
+    if steps is None or (group.letter != "A" and FlagVariety(f"{group.letter}{group.rank}/B").number_of_classes <= _FEW_CLASSES):
+        other = by_relations(terms, group.identity, x, top, partial(_parts, group))
+        steps = min(filter(None, (steps, other)), key=len, default=[])
     if len(steps) > recheck.MOST_STEPS:
         raise OutOfReach(f"expected at most {recheck.MOST_STEPS} steps, got {len(steps):,}")
     return [

@@ -220,7 +220,7 @@ def board_page(rows: Sequence[Mapping[str, Any]], title: str) -> str:
 
 @cache
 def _script() -> str:
-    text = files("conjcheck.report").joinpath("templates", "board.js").read_text(encoding="utf-8")
+    text = files("conjcheck.report").joinpath("board.js").read_text(encoding="utf-8")
     assert "</" not in text, "it stands inside an element"
     return text
 
@@ -228,7 +228,7 @@ def _script() -> str:
 def _summary(rows: Sequence[Mapping[str, Any]]) -> str:
     """``22 conjectures: 16 open, 6 refuted``."""
     counts = Counter(row["status"] for row in rows)
-    parts = ", ".join(f"{count} {WORDS.get(status, status)}" for status, count in counts.items())
+    parts = ", ".join(f"{count} {status}" for status, count in sorted(counts.items()))
     return f"{len(rows)} {'conjecture' if len(rows) == 1 else 'conjectures'}{f': {parts}' if parts else ''}"
 
 

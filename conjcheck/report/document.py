@@ -70,7 +70,7 @@ def document_of_outcomes(
         "replay": _text(main.get("replay")),
         "environment": _text(main.get("environment")),
         "seed": next((part["seed"] for part in parts if part["seed"]), ""),
-        "failure": _failure(main) if failed else None,
+        "failure": _failure(main) if failed and "detail" in main else None,
         "diagnosis": main.get("diagnosis"),
     }
     if record is not None:
@@ -95,7 +95,7 @@ def document_of_record(data: object, *, file: str = "", made: str = "") -> dict[
         "verdict": f"refuted at {_text(first['where'])}, as it stands on record" if first and refuted else f"open: {scope}",
         "scope": scope,
         "about": _about(data | {"premise": data.get("premise") is True}),
-        "notes": ["from the record alone: nothing was computed again for this page but the pictures"],
+        "notes": ["from the record alone: the rule was not asked again"],
         "spaces": [*spaces, *(_space(sample) | {"drawn": True} for sample in _list(data.get("samples")))],
         "record": _record(data),
     }

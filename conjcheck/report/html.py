@@ -13,7 +13,7 @@ from pathlib import PurePosixPath, PureWindowsPath
 from typing import Any
 
 from jinja2 import Environment, PackageLoader, StrictUndefined
-from markupsafe import Markup
+from markupsafe import Markup, escape
 
 from conjcheck.errors import ConjcheckError
 from conjcheck.evidence.derivation import derivation
@@ -89,14 +89,25 @@ def rendered(template: str, view: Mapping[str, Any], *, script: str = "") -> str
 
 @cache
 def _templates() -> Environment:
-    return Environment(
-        loader=PackageLoader("conjcheck.report"), autoescape=True, undefined=StrictUndefined, trim_blocks=True, lstrip_blocks=True
+    made = Environment(
+        loader=PackageLoader("conjcheck.report", "."),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
     )
+    made.filters["breakable"] = _breakable
+    return made
+
+
+def _breakable(text: str) -> Markup:
+    """A name, escaped, that may be broken after an underscore."""
+    return escape(text).replace("_", Markup("_<wbr>"))
 
 
 @cache
 def _asset(name: str) -> str:
-    text = files("conjcheck.report").joinpath("templates", name).read_text(encoding="utf-8")
+    text = files("conjcheck.report").joinpath(name).read_text(encoding="utf-8")
     assert "</" not in text, "it stands inside an element"
     return text
 

@@ -8,12 +8,16 @@ from pathlib import Path
 from typing import Any
 
 from conjcheck.errors import ConjcheckError, RecordError
-from conjcheck.evidence.record import read_record_file, stale_words
+from conjcheck.evidence.record import parse_place, read_record_file, stale_words
 from conjcheck.evidence.source import rule_hash
-from conjcheck.report.document import document_of_outcomes, visible
+from conjcheck.geometry.case import Case
+from conjcheck.oracle import Product, product
+from conjcheck.report.document import document_of_outcomes, document_of_record, visible
 from conjcheck.report.html import page
+from conjcheck.testing.answer import plain_value
+from conjcheck.testing.outcome import plain_product
 
-__all__ = ["documents_of", "now", "page_name", "record_beside", "write_pages"]
+__all__ = ["document_of_record_file", "documents_of", "now", "page_name", "record_beside", "write_pages"]
 
 _LONGEST_NAME = 120
 
@@ -42,6 +46,29 @@ def documents_of(outcomes: Iterable[Mapping[str, Any]], *, made: str = "") -> li
                 document["record"] = {"problem": visible(str(error))}
         found.append(document)
     return found
+
+
+def document_of_record_file(data: object, *, file: str, made: str = "") -> dict[str, Any]:
+    """The document of a record, with the oracle's product at its first counterexample, computed now, where that is quick.
+
+    A value on record that is not the oracle's is said to be so: a record is not believed.
+    """
+    document = document_of_record(data, file=file, made=made)
+    failure = document["failure"]
+    if not failure or document["about"]["ring"].startswith("equivariant"):
+        return document
+    try:
+        place = parse_place(failure["where"])
+        terms = product(place.u, place.v)
+    except ConjcheckError:
+        return document
+    if document["about"]["ring"] == "classical":
+        terms = Product({(w, d): count for (w, d), count in terms.items() if not any(d)})
+    failure["products"] = {"rule": None, "oracle": plain_product(terms), "partial": False}
+    document["notes"].append("the product by the oracle was computed for this page")
+    if isinstance(place, Case) and failure["oracle"] not in (None, true := plain_value(terms.get((place.w, place.d), 0))):
+        document["notes"].append(f"the record is wrong: the oracle gives {true} there, not {failure['oracle']}")
+    return document
 
 
 def record_beside(file: str, name: str) -> dict[str, Any] | None:

@@ -99,6 +99,7 @@ def _work_and_end(work: Callable[[], Any], sender: int, shared: tuple[Any, ...])
         nothing = os.open(os.devnull, os.O_RDWR)
         for stream in (0, 1, 2):
             os.dup2(nothing, stream)
+        sys.stdout = sys.stderr = os.fdopen(nothing, "w")
         try:
             found = True, work()
         except ConjcheckError as error:

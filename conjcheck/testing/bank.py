@@ -8,7 +8,7 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from conjcheck.testing.conditions import Found, Test, tests_of
+from conjcheck.testing.conditions import Found, Test, iter_tests
 from conjcheck.testing.features import Feature, Values
 from conjcheck.testing.traits import Bools
 
@@ -17,7 +17,7 @@ __all__ = ["TestBank"]
 Places = NDArray[np.int64]
 
 _MOST_IN_PAIRS = 400
-_NEAR = 2
+_NEAR = 1
 
 
 class TestBank:
@@ -47,7 +47,7 @@ class TestBank:
         order = np.concatenate(groups)
         self._sizes = [len(group) for group in groups]
         kept: dict[bytes, tuple[list[Test], NDArray[np.uint8]]] = {}
-        tests = [(test, column) for feature, column in values for test in tests_of(feature, column)]
+        tests = [(test, column) for feature, column in values for test in iter_tests(feature, column)]
         for test, column in sorted(tests, key=lambda pair: pair[0].oddity):
             bits = np.packbits(test.holds(column)[order])
             kept.setdefault(bits.tobytes(), ([], bits))[0].append(test)

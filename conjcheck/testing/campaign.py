@@ -324,6 +324,7 @@ def _check(conjecture: Conjecture, spaces: list[FlagVariety]) -> None:
 
 def _plans(conjecture: Conjecture, spaces: list[FlagVariety], rule: str, terms: Terms) -> Iterator[_Plan]:
     """All chunks in order."""
+    library = library_mark()
     for place, X in enumerate(spaces):
         for first, last in chunks(conjecture, X) if terms.draws is None else sample_chunks(terms.draws):
             chunk = Chunk(
@@ -339,8 +340,9 @@ def _plans(conjecture: Conjecture, spaces: list[FlagVariety], rule: str, terms: 
                 terms.call_limit,
                 terms.memory,
                 terms.cross_check,
+                library,
             )
-            yield _Plan(place, chunk, ChunkKey(rule, conjecture.name, library_mark(), X.name, terms.part, first, last))
+            yield _Plan(place, chunk, ChunkKey(rule, conjecture.name, library, X.name, terms.part, first, last))
 
 
 def _stale(kept: Ledger | None, conjecture: Conjecture, rule: str) -> tuple[str, ...]:

@@ -37,6 +37,7 @@ class Chunk:
         every: whether to go on after a failure.
         call_limit, memory: seconds and bytes that a call of the rule may take.
         cross_check: compute every product in two ways.
+        library: the mark that the library must have where it is compared; empty for any.
     """
 
     file: str
@@ -51,6 +52,7 @@ class Chunk:
     call_limit: float = 10.0
     memory: int = 2 << 30
     cross_check: bool = False
+    library: str = ""
 
     @property
     def rings(self) -> dict[str, bool]:

@@ -9,7 +9,7 @@ import numpy as np
 from conjcheck.testing.features import Cases, Feature, Values, bracketed
 from conjcheck.testing.traits import Bools
 
-__all__ = ["Found", "Test", "tests_of"]
+__all__ = ["Found", "Test", "iter_tests"]
 
 _MOST_THRESHOLDS = 24
 _MOST_WORDS = 12
@@ -175,7 +175,7 @@ class Found:
         )
 
 
-def tests_of(feature: Feature, values: Values) -> Iterator[Test]:
+def iter_tests(feature: Feature, values: Values) -> Iterator[Test]:
     """The tests of a feature that hold at some cases and not at others, by its values."""
     if values.dtype == bool:
         if values.any() and not values.all():

@@ -13,7 +13,7 @@ from conjcheck.testing.gather import Table, place
 from conjcheck.testing.minimise import Layer, Minimum
 from conjcheck.testing.search import Looked, Search, inside, search
 
-__all__ = ["diagnose"]
+__all__ = ["diagnose", "worded"]
 
 
 def diagnose(comparer: Comparer, minimum: Minimum, layer: Layer | None = None, *, budget: float) -> Diagnosis | None:
@@ -30,10 +30,10 @@ def diagnose(comparer: Comparer, minimum: Minimum, layer: Layer | None = None, *
     """
     rows = dict.fromkeys(finding.row for finding in (minimum.finding, *(layer.findings if layer else ())))
     found = search(comparer, list(rows), budget=budget)
-    return None if found is None else _worded(comparer, found)
+    return None if found is None else worded(comparer, found)
 
 
-def _worded(comparer: Comparer, found: Search) -> Diagnosis:
+def worded(comparer: Comparer, found: Search) -> Diagnosis:
     """Everything in the words of a report."""
     looked = Looked(found.tables)
     return Diagnosis(

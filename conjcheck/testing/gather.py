@@ -26,6 +26,7 @@ _MOST_IN_ROW = 400
 _ZEROS_IN_ROW = 15
 _SMALL_ROW = 60
 _CHUNK = 25
+_QUICK = 0.05
 _LARGEST_VALUE = 2**62
 
 
@@ -211,11 +212,12 @@ def _judge(
             yield 0, comparer.case(Case(row.X, row.u, row.v, *key)) is not None, key in truth, key not in truth
         return
     counting = not comparer.conjecture.is_equivariant
-    for start in range(0, len(keys), _CHUNK):
-        part = keys[start : start + _CHUNK]
-        if perf_counter() > deadline:
-            return
+    start, size = 0, 1
+    while start < len(keys) and (began := perf_counter()) <= deadline:
+        part = keys[start : start + size]
         values = asked if asked is not None else comparer.values(row, part)
+        start += size
+        size = min(2 * size, _CHUNK) if perf_counter() - began < _QUICK else 1
         for key in part:
             rule, true = values.get(key, 0), truth.get(key, 0)
             fails = bool(rule != true)

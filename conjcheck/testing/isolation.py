@@ -27,16 +27,18 @@ from conjcheck.testing.worker import Marks
 __all__ = ["close_all", "isolated"]
 
 _GRACE = 10.0
+_FROM_OUTSIDE = (1, 2, 9, 15)
+"""SIGHUP, SIGINT, SIGKILL, SIGTERM: signals that others send."""
 _MOST_DEATHS = 3
 """A chunk whose process dies this often, each time in a row that is innocent when compared alone, is given up."""
 
 
 class _Died(Exception):
-    """The process ended in the middle of a chunk: how, and where it was (``Marks``)."""
+    """The process ended in the middle of a chunk: how, where it was (``Marks``), and whether somebody else may have ended it."""
 
-    def __init__(self, how: str, row: int, outcome: int, *, slow: bool) -> None:
+    def __init__(self, how: str, row: int, outcome: int, *, slow: bool, outside: bool) -> None:
         super().__init__(how)
-        self.how, self.row, self.outcome, self.slow = how, row, outcome, slow
+        self.how, self.row, self.outcome, self.slow, self.outside = how, row, outcome, slow, outside
 
 
 class _Closed(Exception):
@@ -107,7 +109,9 @@ class _Process:
                 self._child.wait(0.5)
             _end_group(self._child)
             _, row, outcome = self._marks.read()
-            raise _Died(_ending(self._child.wait(), chunk, slow=slow), row, outcome, slow=slow) from None
+            code = self._child.wait()
+            outside = not slow and -code in _FROM_OUTSIDE
+            raise _Died(_ending(code, chunk, slow=slow), row, outcome, slow=slow, outside=outside) from None
         if answer["again"]:
             raise _Full
         return result
@@ -251,7 +255,7 @@ def _survived(chunk: Chunk) -> ChunkResult:
 def _alone(chunk: Chunk) -> ChunkResult | None:
     """What a row gives when it is compared alone in a fresh process: a finding if that dies again, ``None`` if the row is innocent.
 
-    An end that may have come from outside must happen twice at the same place.
+    An end that may have come from outside must happen twice more at the same place.
     """
     places = set()
     for _ in range(2):
@@ -266,7 +270,7 @@ def _alone(chunk: Chunk) -> ChunkResult | None:
         places.add((again.row, again.outcome))
         if again.row == Marks.NOWHERE or len(places) > 1:
             return None
-        if again.slow:
+        if not again.outside:
             break
     (row,) = rows_of_chunk(chunk)
     where: Row | Case = row
@@ -275,7 +279,7 @@ def _alone(chunk: Chunk) -> ChunkResult | None:
         w, d = outcomes(row.X, row.u.length + row.v.length, **chunk.rings)[again.outcome - 1]
         where = Case(row.X, row.u, row.v, w, d)
         try:
-            earlier = _process(fresh=True).run(chunk, until=again.outcome - 1).findings
+            earlier = _process().run(chunk, until=again.outcome - 1).findings if again.outcome > 1 else ()
         except (_Died, _Full):
             return None
     finding = Finding("too-slow" if again.slow else "crashed", where, detail=again.how)

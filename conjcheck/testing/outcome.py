@@ -20,7 +20,7 @@ from conjcheck.testing.explain import Explanation
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer, Minimum
 
-__all__ = ["Outcome", "environment", "no_verdict", "smaller_agree"]
+__all__ = ["Outcome", "environment", "no_verdict", "plain_product", "smaller_agree"]
 
 _MOST_TERMS = 300
 _MOST_IN_CELL = 600
@@ -170,8 +170,8 @@ class Outcome:
                 found["broken_law"] = self.broken_law
         if self.explanation:
             found["products"] = {
-                "rule": _plain_product(self.explanation.by_rule),
-                "oracle": _plain_product(self.explanation.by_oracle),
+                "rule": plain_product(self.explanation.by_rule),
+                "oracle": plain_product(self.explanation.by_oracle),
                 "partial": self.explanation.partial,
             }
         if self.layer:
@@ -193,7 +193,7 @@ class Outcome:
         return found
 
 
-def _plain_product(product: Product | None) -> dict[str, Any] | None:
+def plain_product(product: Product | None) -> dict[str, Any] | None:
     """A product in JSON types: its terms in order, the first few hundred of them, and how many there are more."""
     if product is None:
         return None

@@ -164,9 +164,9 @@ def _first_look(
     upcoming, number = next(coming, []), 0
     for after in coming:
         cases = sum(map(len, tables))
-        if number and (perf_counter() > started + 0.2 * budget or cases > _MOST_CASES // 3):
+        if number and (perf_counter() > started + 0.08 * budget or cases > _MOST_CASES // 6):
             break
-        tables += gather(comparer, upcoming, deadline=started + 0.4 * budget, most_rows=_MOST_ROWS, most_cases=_MOST_CASES - cases)
+        tables += gather(comparer, upcoming, deadline=started + 0.3 * budget, most_rows=_MOST_ROWS, most_cases=_MOST_CASES - cases)
         upcoming, number = after, number + 1
     return tables, upcoming
 
@@ -195,6 +195,8 @@ def _bank(comparer: Comparer, looked: Looked) -> tuple[TestBank, tuple[str, ...]
     values, problems = list[tuple[Feature, Values]](), list[str]()
     for feature in (*own_features(comparer.conjecture.features, comparer.limit), *FEATURES):
         if (by_rows and feature.needs == "case") or (not counting and feature.asks):
+            if feature.name in comparer.conjecture.features:
+                problems.append(f"{feature.name}: it is a feature of cases, and the claim is about whole products")
             continue
         try:
             found = feature_values(feature, cases)

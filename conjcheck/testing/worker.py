@@ -19,6 +19,7 @@ from typing import BinaryIO
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.conjecture.discover import conjectures_in_file
 from conjcheck.errors import ConjcheckError
+from conjcheck.evidence.ledger import library_mark
 from conjcheck.evidence.source import rule_hash
 from conjcheck.geometry.case import Case
 from conjcheck.testing.chunks import Chunk, ChunkResult, compare_chunk, entry_of, rows_of_chunk
@@ -115,6 +116,10 @@ def _conjecture(chunk: Chunk) -> Conjecture:
     """The conjecture of a chunk, with the source that it must have."""
     key = chunk.file, chunk.name, chunk.rule
     if key not in _loaded:
+        if chunk.library and (own := library_mark()) != chunk.library:
+            raise ConjcheckError(
+                f"expected conjcheck {chunk.library} on all machines of a survey, got {own}; install the same everywhere"
+            )
         if (found := rule_hash(chunk.file)) != chunk.rule:
             raise ConjcheckError(
                 f"expected {chunk.file} as it was when the survey began ({chunk.rule[:19]}), got {found[:19]}; start again"

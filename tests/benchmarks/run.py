@@ -17,10 +17,11 @@ import subprocess
 import sys
 from collections.abc import Callable
 from pathlib import Path
-from time import perf_counter
+from time import perf_counter, process_time
 
 HERE = Path(__file__).resolve()
 CONSTANTS_OF_FL_6 = 6_531_372
+CONSTANTS_OF_FL_7 = 1_226_998_416
 
 # --- measurements: each runs alone in a fresh interpreter and returns one number ---
 
@@ -49,6 +50,78 @@ def table_plain() -> float:
     seconds = perf_counter() - began
     assert count == CONSTANTS_OF_FL_6
     return seconds
+
+
+def _rate_ours(n: int, blocks: int | None = None) -> float:
+    """Processor seconds per million constants of the streamed table of Fl(n), set-up included; of so many first blocks, if given."""
+    from itertools import islice
+
+    from conjcheck import Fl, table
+
+    began, count, total = process_time(), 0, 0
+    for block in islice(table(Fl(n)), blocks):
+        count += len(block)
+        total += int(block.N.sum()) + int(block.d.sum()) + int(block.v.sum()) + int(block.w.sum())
+    assert count < total
+    return 1e6 * (process_time() - began) / count
+
+
+def _rate_plain(n: int) -> float:
+    """Processor seconds per million constants of the plain script, left in its matrices."""
+    from plain_scipy import fill
+
+    began = process_time()
+    count = sum(matrix.nnz for matrix in fill(n).matrices)
+    return 1e6 * (process_time() - began) / count
+
+
+def rate_ours_4() -> float:
+    """Fl(4), 1,168 constants: mostly set-up."""
+    return _rate_ours(4)
+
+
+def rate_plain_4() -> float:
+    """The plain script there."""
+    return _rate_plain(4)
+
+
+def rate_ours_5() -> float:
+    """Fl(5), 62,925 constants."""
+    return _rate_ours(5)
+
+
+def rate_plain_5() -> float:
+    """The plain script there."""
+    return _rate_plain(5)
+
+
+def rate_ours_6() -> float:
+    """Fl(6), 6,531,372 constants."""
+    return _rate_ours(6)
+
+
+def rate_plain_6() -> float:
+    """The plain script there."""
+    return _rate_plain(6)
+
+
+def rate_ours_7() -> float:
+    """The first tenth of the blocks of Fl(7)."""
+    return _rate_ours(7, 504)
+
+
+def stream_ours_7() -> float:
+    """Processor seconds for all of Fl(7), extrapolated from the first tenth of its blocks, set-up included, by the number of constants."""
+    return _rate_ours(7, 504) * CONSTANTS_OF_FL_7 / 1e6
+
+
+def stream_plain_7() -> float:
+    """Processor seconds of the plain script for all of Fl(7), extrapolated from all of Fl(6) by the number of constants.
+
+    Fl(7) itself takes it about an hour and tens of gigabytes, and a small share of it hardly less: the operators on all columns alone are
+    13 GB. Its rate may be another one there, so this is an estimate, not a measurement.
+    """
+    return _rate_plain(6) * CONSTANTS_OF_FL_7 / 1e6
 
 
 def _products(n: int, count: int, *, forgetting: bool) -> float:
@@ -275,6 +348,13 @@ Line = tuple[str, str, Measurement, Measurement | None, int]
 
 PARTS: dict[str, list[Line]] = {
     "table": [("whole table of Fl(6), every constant", "s", table_ours, table_plain, 5)],
+    "stream": [
+        ("Fl(4), per million constants, processor", "s", rate_ours_4, rate_plain_4, 3),
+        ("Fl(5), per million constants, processor", "s", rate_ours_5, rate_plain_5, 3),
+        ("Fl(6), per million constants, processor", "s", rate_ours_6, rate_plain_6, 3),
+        ("Fl(7), per million constants, a tenth of its blocks", "s", rate_ours_7, None, 1),
+        ("all of Fl(7), from a tenth | at the rate on Fl(6)", "s", stream_ours_7, stream_plain_7, 1),
+    ],
     "product": [
         ("one product on Fl(6), nothing remembered", "ms", products_6, plain_rows_6, 3),
         ("one product on Fl(7), nothing remembered", "ms", products_7, plain_rows_7, 3),

@@ -20,9 +20,6 @@ ROOT = Path(__file__).parents[2]
 SLOW = re.compile(r"^pytest conjectures |--rank|E6/P1|--seconds 120|--up-to [5-9]|--effort normal|--cluster|Gr\(4,8\)")
 """Examples that take more than a few seconds: they are run with the slow tests."""
 
-STATUS_1 = re.compile(r"^conjcheck (page .*my_rule.py|survey .*my_rule)")
-"""Examples on ``my_rule``, which is refuted."""
-
 
 def help_of(*words):
     """A help text."""
@@ -76,7 +73,7 @@ def run_examples(command, bundled, folder, *, slow):
         done = subprocess.run(
             ["bash", "-c", short], cwd=folder, env=environment(folder), capture_output=True, text=True, timeout=300, check=False
         )
-        assert done.returncode == bool(STATUS_1.search(line)), f"{line}\n{done.stdout}\n{done.stderr}"
+        assert done.returncode == 0, f"{line}\n{done.stdout}\n{done.stderr}"
         assert "Traceback" not in done.stderr
         ran += 1
     return ran
@@ -84,7 +81,7 @@ def run_examples(command, bundled, folder, *, slow):
 
 @pytest.mark.parametrize("command", ["", *COMMANDS])
 def test_examples_run(command, bundled, tmp_path):
-    """Every example in the help of a command is a command line that runs on the bundled conjectures with the status it should have."""
+    """Every example in the help of a command is a command line that ends well on the bundled conjectures."""
     run_examples(command, bundled, tmp_path, slow=False)
     assert examples_in(help_of(command) if command else help_of())
 

@@ -41,7 +41,7 @@ def matches(shown, printed):
 
 def test_there_is_something_of_each_kind():
     """The README has plug-ins, a Python session and commands with output."""
-    assert (len(PLUGINS), len(SESSIONS), len(COMMANDS)) == (2, 1, 7)
+    assert (len(PLUGINS), len(SESSIONS), len(COMMANDS)) == (2, 1, 8)
 
 
 @pytest.mark.parametrize("block", COMMANDS)

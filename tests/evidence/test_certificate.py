@@ -173,3 +173,17 @@ def test_a_rule_may_not_ask():
     """A rule that makes certificates asks the oracle."""
     with pytest.raises(NotIndependent), watched(Watch()):
         certify("Gr(2,4): (1) * (1) -> (2)")
+
+
+@pytest.mark.parametrize(
+    "text", ["Fl(5): [21543] * [34125] -> [54312], q^(0,0,0,0)", "D4/B: [-1.2.3.-4] * [3.1.4.2] -> [1.3.-2.-4], q^(0,1,1,1)"]
+)
+def test_where_the_search_gives_up(text, monkeypatch):
+    """Where no short expression is found the relations of the recursion serve, at more steps; where there are none that is the reason."""
+    short = certify(text)
+    monkeypatch.setattr("conjcheck.evidence.certificate.expression", lambda *given, **options: None)
+    long = certify(text)
+    assert recheck.check(long).split(" (")[0] == recheck.check(short).split(" (")[0]
+    assert len(long["steps"]) >= len(short["steps"])
+    with pytest.raises(OutOfReach, match=r"no short expression was found, and E6/B has 51,840 classes"):
+        certify("E6/P1: <2.5.4.3.1> * <2.5.4.3.1> -> <1.3.5.4.2.6.5.4.3.1>, q^(0)")

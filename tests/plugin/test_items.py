@@ -65,7 +65,7 @@ def test_a_refutation(project):
     failed = [o for values in project.properties().values() for o in values if o["status"] == "refuted"]
     (outcome,) = failed
     assert (outcome["where"], outcome["rule"], outcome["oracle"], outcome["minimal"]) == (FAULT, 2, 1, True)
-    assert outcome["layer"] == {"pairs": 1, "cases": 1, "orbits": 1, "complete": True}
+    assert outcome["layer"].items() >= {"pairs": 1, "cases": 1, "orbits": 1, "complete": True}.items()
 
     replay = next(line for line in lines if line.startswith("replay"))
     words = shlex.split(replay.removeprefix("replay"))

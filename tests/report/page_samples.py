@@ -152,7 +152,7 @@ class Seen(HTMLParser):
 
     def handle_starttag(self, tag, attributes):
         self.tags.append((tag, dict(attributes)))
-        if tag not in ("meta", "br", "input"):
+        if tag not in ("meta", "br", "input", "wbr"):
             self.open.append(tag)
         if re.fullmatch(r"h[1-6]", tag):
             self.headings.append(int(tag[1]))

@@ -12,7 +12,7 @@ from page_samples import HOSTILE, NAMES, TAGS, Seen, document, outcomes
 from conjcheck.report.document import document_of_outcomes
 from conjcheck.report.html import SIGNS, page
 
-STYLE = files("conjcheck.report").joinpath("templates", "look.css").read_text(encoding="utf-8")
+STYLE = files("conjcheck.report").joinpath("look.css").read_text(encoding="utf-8")
 
 
 @pytest.fixture(scope="module")

@@ -3,11 +3,12 @@
 import json
 
 import pytest
-from page_samples import NAMES, TAGS, document, outcomes
+from page_samples import CONJECTURES, NAMES, TAGS, Seen, document, hostile_record, outcomes, powers
 
 from conjcheck.evidence.source import rule_hash
 from conjcheck.report.html import page
-from conjcheck.report.pages import documents_of, now, page_name, record_beside, write_pages
+from conjcheck.report.pages import document_of_record_file, documents_of, now, page_name, record_beside, write_pages
+from conjcheck.testing.outcome import no_verdict
 
 
 @pytest.mark.parametrize(
@@ -73,7 +74,7 @@ def test_now_sorts():
 
 
 def test_a_stale_record_is_said_to_be_stale(tmp_path):
-    """Coverage on record that was computed for another version of the rule counts no more, and the page says so; a record that is none, too."""
+    """Coverage of another version of the rule counts no more, and the page says so; a record that is none, too."""
     (tmp_path / "rule.py").write_text("x = 1")
     (tmp_path / "records").mkdir()
     covered = {"space": "Gr(1,3)", "rows": 9, "seen": 9, "of": 9, "cases": 9, "nonzero": 9, "failing": 0, "seconds": 1}
@@ -89,3 +90,36 @@ def test_a_stale_record_is_said_to_be_stale(tmp_path):
     (made,) = documents_of(run)
     assert made["record"]["problem"]
     assert "The record cannot be read" in page(made)
+
+
+@pytest.mark.parametrize("name", ["lantern_rule", "step_puzzles", "cayley_plane_constants_at_most_three"])
+def test_a_record_gets_the_product_of_the_oracle(name):
+    """The page of a record shows the true product, computed now; in a classical ring without powers of q; and nothing by the rule."""
+    data = json.loads((CONJECTURES / "records" / f"{name}.json").read_text(encoding="utf-8"))
+    made = document_of_record_file(data, file="x.json")
+    products = made["failure"]["products"]
+    examined = {"lantern_rule": "lantern", "step_puzzles": "puzzles"}.get(name, "cayley")
+    assert products["oracle"] == document(examined)["failure"]["products"]["oracle"]
+    assert products["rule"] is None
+    assert not [note for note in made["notes"] if "wrong" in note]
+
+
+def test_a_record_is_not_believed():
+    """A value on record that is not the oracle's is said to be wrong."""
+    found = {"where": "Gr(3,5): (2) * (2,1) -> (), q^(1)", "rule": 1, "oracle": 5, "minimal": True}
+    data = hostile_record() | {"counterexamples": [found]}
+    made = document_of_record_file(data, file="x.json")
+    assert "the record is wrong: the oracle gives 0 there, not 5" in made["notes"]
+    assert "the record is wrong" in Seen(page(made)).text
+
+
+def test_a_part_without_verdict_has_no_counterexample():
+    """A part that ended without a verdict says why, and shows no place where anything failed."""
+    line = no_verdict(powers, "survey", "RecordError: stale record")
+    (made,) = documents_of([*outcomes("agrees"), line])
+    text = Seen(page(made)).text
+    assert made["failure"] is None
+    assert "no verdict" in text
+    assert "RecordError: stale record" in text
+    assert "Where it went wrong" not in text
+    assert "Agreement is not a proof" not in text

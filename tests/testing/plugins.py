@@ -75,30 +75,16 @@ def load(path, name=None):
     return next(c for c in found if name in (None, c.name))
 
 
-def processes(*words):
-    """The ids of all processes whose command line, or environment, holds some words."""
-    found = []
-    for folder in Path("/proc").iterdir():
-        if folder.name.isdigit() and int(folder.name) != os.getpid():
-            try:
-                text = (folder / "cmdline").read_bytes().replace(b"\0", b" ").decode(errors="replace")
-                state = (folder / "stat").read_text().rsplit(")", 1)[1].split()[0]
-            except OSError:
-                continue
-            if state != "Z" and all(word in text for word in words):
-                found.append(int(folder.name))
-    return found
-
-
 def marked(mark):
     """The ids of all processes with ``CONJCHECK_TEST_MARK=mark`` in the environment they were started with."""
     found = []
     for folder in Path("/proc").iterdir():
         if folder.name.isdigit() and int(folder.name) != os.getpid():
             try:
-                if f"CONJCHECK_TEST_MARK={mark}\0".encode() in (folder / "environ").read_bytes() + b"\0":
-                    if (folder / "stat").read_text().rsplit(")", 1)[1].split()[0] != "Z":
-                        found.append(int(folder.name))
+                tracker = b"resource_tracker" in (folder / "cmdline").read_bytes()  # of multiprocessing: it ends with this process
+                ours = f"CONJCHECK_TEST_MARK={mark}\0".encode() in (folder / "environ").read_bytes() + b"\0"
+                if ours and not tracker and (folder / "stat").read_text().rsplit(")", 1)[1].split()[0] != "Z":
+                    found.append(int(folder.name))
             except OSError:
                 continue
     return found

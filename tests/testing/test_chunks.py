@@ -1,5 +1,6 @@
 """Chunks: every row once, in order, whatever else; samples that depend on seed and place alone."""
 
+import itertools
 import json
 from collections import Counter
 from dataclasses import asdict, fields, replace
@@ -50,7 +51,7 @@ def test_every_row_once(conjecture, name):
     X = FlagVariety(name)
     found = list(chunks(conjecture, X))
     assert found[0][0] == 0
-    assert all(left[1] == right[0] for left, right in zip(found, found[1:], strict=False))
+    assert all(left[1] == right[0] for left, right in itertools.pairwise(found))
     assert found[-1][1] == X.number_of_classes**2
     assert all(0 < last - first <= 512 for first, last in found)
     assert found == list(chunks(conjecture, X))
@@ -139,7 +140,12 @@ GOOD = ChunkResult(5, 4, 60, 9, 1, 2, 30, 0.5, (FOUND, FOUND))
 
 def test_a_result_as_json():
     """A result goes to JSON text and comes back."""
-    for result in (ChunkResult(), GOOD, ChunkResult(problem="x"), ChunkResult(failing_rows=1, failing=1, findings=(FOUND,), ended=True)):
+    for result in (
+        ChunkResult(),
+        GOOD,
+        ChunkResult(problem="x"),
+        ChunkResult(failing_rows=1, failing=1, findings=(FOUND,), ended=True),
+    ):
         assert ChunkResult.parse(json.loads(json.dumps(result.as_json()))) == result
 
 
@@ -218,7 +224,7 @@ def test_adding_up(faults, cuts, kind, every):
     marks = []
     whole = compare_chunk(comparer, chunk_of(X, every=every), marks.append)
     total, places = ChunkResult(), [0, *sorted(cuts), 36]
-    for first, last in zip(places, places[1:], strict=False):
+    for first, last in itertools.pairwise(places):
         if not total.ended:
             total += compare_chunk(comparer, chunk_of(X, every=every).part(first, last))
     assert replace(total, seconds=0.0) == replace(whole, seconds=0.0)
@@ -231,9 +237,9 @@ def test_adding_up(faults, cuts, kind, every):
     else:
         assert (whole.failing, whole.failing_rows, whole.ended) == (1, 1, True)
         assert marks == list(range(whole.seen + 1))
-    assert [e["where"] for e in whole.findings] == [f"{X}: {u} * {v} -> {w}, q^({','.join(map(str, d))})" for X, u, v, w, d in faults][
-        : None if every else 1
-    ]
+    assert [e["where"] for e in whole.findings] == [
+        f"{X}: {u} * {v} -> {w}, q^({','.join(map(str, d))})" for X, u, v, w, d in faults
+    ][: None if every else 1]
     first_row = faults[0][1:3]
     below = [c for c in cases_of(X) if key_of(c) < key_of(faults[0]) and c[1:3] != first_row]
     assert whole.before == len(below)

@@ -7,6 +7,7 @@ import numpy as np
 import pytest
 
 from conjcheck import LG, Fl, FlagVariety, Gr, product
+from conjcheck.errors import NotIndependent
 from conjcheck.testing.features import FEATURES, Cases, feature_values
 from conjcheck.testing.limits import CallLimit
 from conjcheck.testing.own_features import UnusableFeature, own_features
@@ -183,6 +184,13 @@ def test_features_of_the_user():
     """A user's feature gives its values; one that raises, mixes types or asks the oracle is unusable, with the reason."""
     cases = some_cases(Gr(2, 4))
     limit = CallLimit(5)
+
+    def secretly(X, u, v, w, d):
+        try:
+            return len(product(u, v))
+        except NotIndependent:
+            return 0
+
     functions = {
         "l(u) is even": lambda X, u, v, w, d: u.length % 2 == 0,
         "how long": lambda X, u, v, w, d: u.length,
@@ -191,12 +199,19 @@ def test_features_of_the_user():
         "mixed": lambda X, u, v, w, d: "a" if u.length else 0,
         "half": lambda X, u, v, w, d: 0.5,
         "asks": lambda X, u, v, w, d: len(product(u, v)),
+        "asks secretly": secretly,
     }
     found = dict(zip(functions, own_features(functions, limit), strict=True))
     assert found["l(u) is even"].of(cases).tolist() == [X_u % 2 == 0 for X_u in trait_values(trait("length"), cases.X)[cases.u]]
     assert found["how long"].of(cases).dtype == np.int64
     assert found["first step"].of(cases).tolist() == ["2"] * len(cases)
     assert found["l(u) is even"].no == "not: l(u) is even"
-    for name, reason in (("broken", "ZeroDivisionError"), ("mixed", "the same everywhere"), ("half", "float"), ("asks", "oracle")):
+    for name, reason in (
+        ("broken", "ZeroDivisionError"),
+        ("mixed", "the same everywhere"),
+        ("half", "float"),
+        ("asks", "oracle"),
+        ("asks secretly", "oracle"),
+    ):
         with pytest.raises(UnusableFeature, match=reason):
             found[name].of(cases)

@@ -86,3 +86,22 @@ def test_in_another_thread():
     thread.join()
     assert ended == [thread]
     assert perf_counter() - began < 2
+
+
+def test_ticks():
+    """The alarm tells that the interpreter is alive, a few times a second, until a call is over its limit."""
+    ticks = []
+    with CallLimit(0.35, lambda: ticks.append(perf_counter())) as limit:
+        spin(0.5)
+        assert 2 <= len(ticks) <= 6
+        limit.started = began = perf_counter()
+        swallowed = 0
+        while swallowed < 3:
+            try:
+                spin(5)
+            except CallInterrupted:
+                swallowed += 1
+        assert max(ticks) - began < 0.45
+    after = len(ticks)
+    spin(0.3)
+    assert len(ticks) == after
