@@ -66,6 +66,7 @@ __all__ = ["command"]
     help="Memory a process may take beyond its start.",
 )
 @click.option("--cross-check", is_flag=True, help="Compute every product of the oracle in two ways.")
+@click.option("--report", type=click.Path(file_okay=False, path_type=Path), metavar="DIR", help="Also write a page to DIR.")
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON document instead of the report.")
 @click.pass_context
 def command(
@@ -85,6 +86,7 @@ def command(
     call_limit: float,
     memory: float,
     cross_check: bool,
+    report: Path | None,
     as_json: bool,
 ) -> None:
     """Compare a conjecture with the oracle on every row of the spaces named, zeros included, smallest first.
@@ -136,6 +138,10 @@ def command(
         context.exit(130)
     except ConjcheckError as error:
         raise Stop(str(error)) from error
+    if report:
+        from conjcheck.report.pages import documents_of, write_pages
+
+        write_pages(report, documents_of([outcome.as_json()]))
     if as_json:
         echo_json(_document(done, outcome, record))
     else:
@@ -225,7 +231,7 @@ def _document(done: Campaign, outcome: Outcome, record: Path | None) -> dict[str
     return {
         **outcome.as_json(),
         "rule_hash": done.rule,
-        "spaces": [{"space": str(s.X), "of": s.of, "engine": s.engine, **s.result.as_json()} for s in done.spaces],
+        "surveyed": [{"space": str(s.X), "of": s.of, "engine": s.engine, **s.result.as_json()} for s in done.spaces],
         "resumed": done.resumed,
         "stale": list(done.stale),
         "record": str(record) if record else None,

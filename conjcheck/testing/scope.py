@@ -24,9 +24,11 @@ def survey_spaces(coverage: Coverage) -> str:
         parts.append(f"all of {spaces[0].X}")
     elif spaces:
         parts.append(f"all {len(spaces)} spaces from {spaces[0].X} to {spaces[-1].X}")
-    for last in coverage.spaces:
-        if last.rows_seen and not last.complete:
-            parts.append(f"the first {last.rows_seen:,} of {len(last.X.classes) ** 2:,} rows of {last.X}")
+    parts += [
+        f"the first {space.rows_seen:,} of {space.X.number_of_classes**2:,} rows of {space.X}"
+        for space in coverage.spaces
+        if space.rows_seen and not space.complete
+    ]
     return " and ".join(parts)
 
 

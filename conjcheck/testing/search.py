@@ -24,7 +24,7 @@ from conjcheck.testing.own_features import UnusableFeature, own_features
 from conjcheck.testing.survey import in_reach
 from conjcheck.testing.traits import Bools
 
-__all__ = ["Looked", "Search", "inside", "search"]
+__all__ = ["Looked", "Search", "inside", "premises", "search"]
 
 _MOST_CLASSES = 800
 _MOST_SPACES = 60
@@ -110,7 +110,7 @@ def search(comparer: Comparer, rows: Sequence[Row], *, budget: float) -> Search 
         left = started + budget - perf_counter()
         if left <= 0 or refused >= _ROUNDS:
             break
-        tried = next(iter(_premises(bank, conditions, looked.known)), None)
+        tried = next(iter(premises(bank, conditions, looked.known)), None)
         if tried is None:
             break
         until = perf_counter() + 0.6 * left
@@ -221,7 +221,7 @@ def _pairs(table: Table, chosen: Bools) -> int:
     return len(set(zip(np.minimum(u, v).tolist(), np.maximum(u, v).tolist(), strict=True)))
 
 
-def _premises(bank: TestBank, conditions: Sequence[Found], known: int) -> list[Found]:
+def premises(bank: TestBank, conditions: Sequence[Found], known: int) -> list[Found]:
     """What is left outside conditions that hold at every failure, as premises: the best conditions first, those on rows before others.
 
     A premise on cases comes first only if its condition is better than that of any premise on rows by the price of two tests.

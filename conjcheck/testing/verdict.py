@@ -196,7 +196,15 @@ def _agreement(campaign: Campaign, part: str, coverage: Coverage) -> Outcome:
         coverage.nonzero,
         seconds=campaign.seconds,
         note=_totals(campaign),
+        spaces=_spaces(campaign),
     )
+
+
+def _spaces(campaign: Campaign) -> tuple[dict[str, Any], ...]:
+    """How far each space was compared, in JSON types; of a sample, that rows were drawn."""
+    if campaign.terms.draws is None:
+        return tuple(space.as_json() for space in _coverage(campaign).spaces)
+    return tuple({"space": s.X.name, "drawn": True} for s in campaign.spaces)
 
 
 def _totals(campaign: Campaign) -> str:

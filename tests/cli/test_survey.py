@@ -81,7 +81,7 @@ def test_json(tmp_path):
     document = json.loads(done.stdout)
     assert (document["status"], document["where"], document["minimal"]) == ("refuted", "Gr(1,3): (1) * (1) -> (2), q^(0)", True)
     assert re.fullmatch("sha256:[0-9a-f]{64}", document["rule_hash"])
-    assert [(s["space"], s["of"], s["seen"], s["failing"]) for s in document["spaces"]] == [
+    assert [(s["space"], s["of"], s["seen"], s["failing"]) for s in document["surveyed"]] == [
         ("Gr(1,2)", 4, 4, 0),
         ("Gr(1,3)", 9, 9, 2),
         ("Gr(1,4)", 16, 16, 1),
@@ -113,9 +113,9 @@ def test_up_to(tmp_path):
     """--up-to N takes the spaces of the family with n up to N, --most-classes only the small ones of them."""
     path = write(tmp_path, POWERS)
     found = json.loads(run(path, "--up-to", "5", "--json", "--no-record").stdout)
-    assert [s["space"] for s in found["spaces"]] == ["Gr(1,2)", "Gr(1,3)", "Gr(1,4)", "Gr(1,5)"]
+    assert [s["space"] for s in found["surveyed"]] == ["Gr(1,2)", "Gr(1,3)", "Gr(1,4)", "Gr(1,5)"]
     found = json.loads(run(path, "--up-to", "5", "--most-classes", "3", "--json", "--no-record", "Gr(1,8)").stdout)
-    assert [s["space"] for s in found["spaces"]] == ["Gr(1,2)", "Gr(1,3)", "Gr(1,8)"]
+    assert [s["space"] for s in found["surveyed"]] == ["Gr(1,2)", "Gr(1,3)", "Gr(1,8)"]
 
 
 @pytest.mark.parametrize(

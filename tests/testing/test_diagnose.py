@@ -6,6 +6,7 @@ import sys
 from itertools import combinations
 from pathlib import Path
 from time import perf_counter, sleep
+from types import SimpleNamespace
 
 import faulty
 import numpy as np
@@ -24,7 +25,7 @@ from conjcheck.testing.features import FEATURES, Feature
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.gather import gather, place
 from conjcheck.testing.minimise import Minimum, layer_of
-from conjcheck.testing.search import inside, search
+from conjcheck.testing.search import inside, premises, search
 from conjcheck.testing.survey import survey
 
 BUNDLED = Path(__file__).parents[2] / "conjectures"
@@ -186,6 +187,21 @@ def test_a_premise_that_fails_on_fresh_rows_is_refused():
     assert found.suggestion is None
     assert found.refused >= 1
     assert "failed there" in found.suggested
+    assert ",5)" in found.where  # what failed there is looked at, too
+
+
+def test_premises_that_are_passed_over():
+    """Premises that bound the space, ask the oracle, or keep nothing are passed over; premises on rows come before others as good."""
+    n, on_rows, on_cases, asking = (
+        Feature("n", "", "space", lambda cases: None, grows=True),
+        Feature("on rows", "not", "row", lambda cases: None),
+        Feature("on cases", "not", "case", lambda cases: None),
+        Feature("asking", "not", "row", lambda cases: None, asks=True),
+    )
+    tests = (Test(n, ">=", 4), Test(asking, "is"), Test(on_cases, "is"), Test(on_rows, "is"))
+    conditions = [*(Found((test,), "and", 5, 0, 9) for test in tests), Found((Test(n, "<=", 2),), "and", 5, 10, 10)]
+    found = premises(SimpleNamespace(score=lambda condition: 1.0), conditions, 10)
+    assert [premise.tests for premise in found] == [(Test(on_rows, "is not"),), (Test(on_cases, "is not"),)]
 
 
 def test_a_premise_does_not_ask_the_oracle():
