@@ -9,14 +9,15 @@ from conjcheck.errors import RecordError
 __all__ = ["rule_hash", "source_files"]
 
 _ROOT_MARKS = (".git", "pyproject.toml", "setup.py", "setup.cfg", "pytest.ini", "tox.ini")
+_LONGEST_NAME = 200
 
 
 def rule_hash(file: str | Path) -> str:
     """``sha256:`` and 64 hexadecimal digits: the same on every machine, another one after any change.
 
     Hashed are the texts (line ends made equal) and the names of the plug-in file and of all files of its repository that it imports,
-    directly or not; also inside functions, and by ``import_module("name")``. Data files that a rule reads are not seen, nor are modules
-    whose name is made up while it runs.
+    directly or not, also inside functions, and by ``import_module("name")``; and the bytes of files that these name in a string, by the
+    path from their own folder, such as ``"table.json"``. Files and modules whose name is made up while the rule runs are not seen.
 
     Raises:
         RecordError: no such file, or not UTF-8.
@@ -26,6 +27,8 @@ def rule_hash(file: str | Path) -> str:
     for path in sorted(source_files(main), key=lambda path: (path == main, _label(path, main))):
         text = _text(path)
         digest.update(f"{_label(path, main)}\0{len(text)}\0{text}\0".encode())
+    for path in sorted(_named_files(source_files(main)), key=lambda path: _label(path, main)):
+        digest.update(f"{_label(path, main)}\0data\0{_bytes_hash(path)}\0".encode())
     return f"sha256:{digest.hexdigest()}"
 
 
@@ -60,6 +63,37 @@ def _text(path: Path) -> str:
         raise RecordError(f"{path}: expected a readable Python file in UTF-8, got {error}") from None
 
 
+def _named_files(sources: list[Path]) -> set[Path]:
+    """The files that strings in some sources name."""
+    found = set()
+    for source in sources:
+        for node in ast.walk(_tree(source)):
+            if isinstance(node, ast.Constant) and isinstance(node.value, str) and 0 < len(node.value) < _LONGEST_NAME:
+                try:
+                    place = source.parent / node.value
+                    if not Path(node.value).is_absolute() and place.is_file():
+                        found.add(place.resolve())
+                except (OSError, ValueError):  # no name of a file
+                    continue
+    return found - set(sources)
+
+
+def _bytes_hash(path: Path) -> str:
+    try:
+        return hashlib.sha256(path.read_bytes()).hexdigest()
+    except OSError as error:
+        raise RecordError(f"{path}: expected a readable file, since the rule names it, got {error}") from None
+
+
+def _tree(path: Path) -> ast.Module:
+    """The program in a file, an empty one if it is none."""
+    text = _text(path)
+    try:
+        return ast.parse(text)
+    except (SyntaxError, ValueError):  # ValueError: a null byte
+        return ast.Module([], [])
+
+
 def _places(main: Path) -> list[Path]:
     """Where imports are looked up: beside the plug-in, then upwards to the top of its repository, and in the folder src there."""
     above = [main.parent, *main.parent.parents]
@@ -69,12 +103,8 @@ def _places(main: Path) -> list[Path]:
 
 def _imported(path: Path) -> list[tuple[str, int]]:
     """The modules that a file imports anywhere, as ``(dotted name, number of leading dots)``."""
-    try:
-        tree = ast.parse(_text(path))
-    except (SyntaxError, ValueError):  # ValueError: a null byte
-        return []
     found: list[tuple[str, int]] = []
-    for node in ast.walk(tree):
+    for node in ast.walk(_tree(path)):
         if isinstance(node, ast.Import):
             found += [(alias.name, 0) for alias in node.names]
         elif isinstance(node, ast.ImportFrom):

@@ -58,22 +58,19 @@ class SpaceResult:
     Attributes:
         X: the space.
         of: how many rows it has, or how many were to be drawn.
+        engine: the engine that answers there.
         result: the sum of its chunks, up to the smallest failure if that ended it.
     """
 
     X: FlagVariety
     of: int
+    engine: str
     result: ChunkResult = field(default_factory=ChunkResult)
 
     @property
     def complete(self) -> bool:
         """Whether every row was compared."""
         return self.result.seen == self.of and not self.result.problem
-
-    @property
-    def engine(self) -> str:
-        """The engine that answers there."""
-        return engines_for(self.X)[0].name
 
 
 @dataclass(frozen=True, slots=True)
@@ -161,7 +158,8 @@ def run_campaign(
     try:
         stale = _stale(kept, conjecture, rule)
         plans = _plans(conjecture, chosen, rule, terms)
-        results = [SpaceResult(X, terms.draws or X.number_of_classes**2) for X in chosen]
+        engines = ["localisation" if conjecture.is_equivariant else engines_for(X)[0].name for X in chosen]
+        results = [SpaceResult(X, terms.draws or X.number_of_classes**2, name) for X, name in zip(chosen, engines, strict=True)]
         pool = executor or ThreadPoolExecutor(jobs, thread_name_prefix="conjcheck")
         walk = _Walk(results, kept, terms, watching)
         try:

@@ -120,4 +120,5 @@ def _suggestion(comparer: Comparer, premise: Found, looked: Looked, fresh: tuple
         new,
         _where(fresh),
         comparer.conjecture.premise is not None,
+        "X, u, v" if premise.on_rows else "X, u, v, w" if comparer.conjecture.is_classical else "X, u, v, w, d",
     )

@@ -42,6 +42,7 @@ class Suggestion:
         fresh: the cases of them that were compared only after the premise had been chosen; 0 if no row was left.
         where: the spaces of these fresh cases.
         narrows: whether the conjecture has a premise already, to which this one would be added.
+        arguments: what a premise of this kind is a function of.
     """
 
     words: str
@@ -52,12 +53,12 @@ class Suggestion:
     fresh: int
     where: str
     narrows: bool = False
+    arguments: str = "X, u, v, w, d"
 
     @property
     def premise(self) -> str:
         """What to write into the declaration, or to add to the premise there; empty if there is no short expression."""
-        arguments = "X, u, v" if self.on_rows else "X, u, v, w, d"
-        return f"premise=lambda {arguments}: {self.expression}" if self.expression else ""
+        return f"premise=lambda {self.arguments}: {self.expression}" if self.expression else ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -107,7 +108,8 @@ class Diagnosis:
             f"among them {one.fresh:,} fresh ones in {one.where}" if one.fresh else "and there are no fresh rows to compare it on"
         )
         narrows = ", inside its premise," if one.narrows else ""
-        return f"the rule may hold{narrows} when {one.words}; {inside}, {fresh}; this is no proof"
+        needs = "; the expression needs: from itertools import combinations" if "combinations(" in one.expression else ""
+        return f"the rule may hold{narrows} when {one.words}; {inside}, {fresh}; this is no proof{needs}"
 
     def counts(self, condition: Condition) -> str:
         """At how many failures and agreements a condition holds, in words."""

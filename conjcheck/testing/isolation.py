@@ -59,7 +59,7 @@ class _Process:
         self._path = Path(name)
         self._marks = Marks(self._path)
         self._child = subprocess.Popen(  # noqa: S603  # ourselves
-            [sys.executable, "-P", "-m", "conjcheck.testing.worker", name],
+            [sys.executable, "-P", "-m", "conjcheck.testing.worker", name, str(os.getpid())],
             stdin=subprocess.PIPE,
             stdout=subprocess.PIPE,
             stderr=subprocess.DEVNULL,

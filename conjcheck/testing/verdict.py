@@ -23,6 +23,7 @@ from conjcheck.testing.outcome import Outcome
 from conjcheck.testing.recording import counterexample
 from conjcheck.testing.scope import survey_scope, survey_spaces
 from conjcheck.testing.survey import Coverage, SpaceCoverage, in_reach
+from conjcheck.testing.worker import limit_memory
 
 __all__ = ["campaign_outcome", "campaign_record", "survey", "write_campaign"]
 
@@ -117,7 +118,8 @@ def campaign_outcome(campaign: Campaign, *, effort: Effort = EFFORTS["normal"]) 
 
 
 def _worked_out(campaign: Campaign, coverage: Coverage, part: str, entry: dict[str, Any], before: int, effort: Effort) -> Outcome:
-    """The outcome for a row that was refuted, compared once more."""
+    """The outcome for a row that was refuted, compared once more, in this process, which is a copy."""
+    limit_memory(campaign.terms.memory)
     examination = Examination(campaign.conjecture, effort, call_limit=campaign.terms.call_limit, coverage=coverage)
     place = parse_place(entry["where"])
     row = place.row if isinstance(place, Case) else place

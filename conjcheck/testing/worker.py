@@ -26,7 +26,7 @@ from conjcheck.testing.chunks import Chunk, ChunkResult, compare_chunk, entry_of
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.limits import CallLimit
 
-__all__ = ["Marks", "main", "run_chunk"]
+__all__ = ["Marks", "limit_memory", "main", "run_chunk"]
 
 
 class Marks:
@@ -133,7 +133,7 @@ def _conjecture(chunk: Chunk) -> Conjecture:
     return _loaded[key]
 
 
-def _limit_memory(most: int) -> None:
+def limit_memory(most: int) -> None:
     """Let the process have that many bytes more than it has now; only on POSIX systems."""
     try:
         import resource
@@ -146,10 +146,12 @@ def _limit_memory(most: int) -> None:
         return
 
 
-def _end_with_parent() -> None:
+def _end_with_parent(parent: int) -> None:
     """Let the system end this process when its parent ends, even if the rule hangs where no signal is looked at; only on Linux."""
     with contextlib.suppress(OSError, AttributeError):
         ctypes.CDLL(None).prctl(1, int(signal.SIGKILL))  # PR_SET_PDEATHSIG
+    if os.getppid() != parent:  # it has ended before
+        os._exit(0)
 
 
 def _serve(tasks: BinaryIO, answers: BinaryIO, marks: Marks) -> None:
@@ -158,7 +160,7 @@ def _serve(tasks: BinaryIO, answers: BinaryIO, marks: Marks) -> None:
         task = json.loads(line)
         chunk = Chunk(**task["chunk"])
         if not served:
-            _limit_memory(chunk.memory)
+            limit_memory(chunk.memory)
         try:
             result = run_chunk(chunk, marks, careful=task["careful"], until=task["until"])
         except MemoryError:
@@ -180,8 +182,7 @@ def _serve(tasks: BinaryIO, answers: BinaryIO, marks: Marks) -> None:
 
 
 def main() -> None:
-    """Serve until the input ends."""
-    _end_with_parent()
+    """Serve until the input ends: ``worker FILE_OF_MARKS PID_OF_PARENT``."""
     answers = os.fdopen(os.dup(1), "wb")
     silence = os.open(os.devnull, os.O_WRONLY)
     os.dup2(silence, 1)
@@ -191,6 +192,7 @@ def main() -> None:
     marks = Marks(path)
     with contextlib.suppress(OSError):  # it stays readable for those who have it open, and nothing is left of it afterwards
         path.unlink()
+    _end_with_parent(int(sys.argv[2]))
     _serve(tasks, answers, marks)
 
 

@@ -128,7 +128,11 @@ def test_up_to(tmp_path):
         (["Gr(1,2)", "--sample", "0"], "--sample"),
         (["Gr(1,2)", "--jobs", "0"], "--jobs"),
         (["Gr(1,2)", "--call-limit", "0"], "--call-limit"),
-        (["Gr(1,2)", "--cluster", "tcp://127.0.0.1:1"], "expected a scheduler at tcp://127.0.0.1:1, got"),
+        pytest.param(
+            ["Gr(1,2)", "--cluster", "tcp://127.0.0.1:1"],
+            "expected a scheduler at tcp://127.0.0.1:1, got",
+            marks=pytest.mark.slow,
+        ),
     ],
 )
 def test_wrong_usage(tmp_path, words, message):

@@ -1,11 +1,12 @@
 """Where conjectures are found."""
 
+import os
 import sys
 import types
 
 import pytest
 
-from conjcheck.conjecture.discover import GROUP, conjectures_in, installed_files
+from conjcheck.conjecture.discover import GROUP, conjectures_in, conjectures_in_file, installed_files
 from conjcheck.errors import DeclarationError
 
 
@@ -74,3 +75,58 @@ def test_entry_points_without_a_file(tmp_path, monkeypatch, value):
     offered(tmp_path, monkeypatch, f"broken = {value}")
     with pytest.raises(DeclarationError, match=f"the entry point 'broken' of conjcheck.conjectures, got '{value}'"):
         installed_files()
+
+
+@pytest.mark.parametrize("name", ["rule.py", "helper.py", "pack/__init__.py", "pack/part.py"])
+def test_what_the_file_says_now(tmp_path, monkeypatch, name):
+    """A file, its helpers and packages are compiled anew, though cached bytecode bears the same second and length."""
+    monkeypatch.setattr(sys, "path", [*sys.path])
+    monkeypatch.setattr(sys, "dont_write_bytecode", False)
+    texts = {
+        "rule.py": HEADER + "import helper\nfrom pack import P, part\n" + RULE.format("found") + "MARK = helper.H, P, part.Q, 1\n",
+        "helper.py": "H = 1\n",
+        "pack/__init__.py": "P = 1\n",
+        "pack/part.py": "Q = 1\n",
+    }
+    (tmp_path / "pack").mkdir()
+    seen = []
+    for digit in "12":
+        for other, text in texts.items():
+            (tmp_path / other).write_text(text.replace("1\n", f"{digit}\n") if other == name else text)
+            os.utime(tmp_path / other, (1e9, 1e9))
+        for module in ("helper", "pack", "pack.part"):
+            sys.modules.pop(module, None)
+        (conjecture,) = conjectures_in_file(tmp_path / "rule.py")
+        seen.append(vars(sys.modules[conjecture.rule.__module__])["MARK"])
+    for module in ("helper", "pack", "pack.part"):
+        del sys.modules[module]
+    assert seen[0] == (1, 1, 1, 1)
+    assert sorted(seen[1]) == [1, 1, 1, 2]
+
+
+@pytest.mark.parametrize(
+    ("source", "words"),
+    [
+        ("raise ValueError('lantern')", "cannot be imported: ValueError: lantern"),
+        ("import sys\nsys.exit(0)", "cannot be imported: SystemExit: 0"),
+        ("def broken(:", "cannot be imported: SyntaxError"),
+        ("x = 1\n", "expected at least one @candidate or @claim, got none"),
+        ("# \udce9", "expected a readable Python file in UTF-8"),
+    ],
+)
+def test_files_that_cannot_be_used(tmp_path, monkeypatch, source, words):
+    """A file that raises, ends, is no Python, or holds no conjecture is refused by name."""
+    monkeypatch.setattr(sys, "path", [*sys.path])
+    path = tmp_path / "rule.py"
+    path.write_text(source, encoding="utf-8", errors="surrogateescape")
+    with pytest.raises(DeclarationError, match=words) as caught:
+        conjectures_in_file(path)
+    assert "rule.py" in str(caught.value)
+
+
+def test_no_such_file(tmp_path):
+    """What is no Python file is refused."""
+    (tmp_path / "rule.txt").touch()
+    for path in (tmp_path / "rule.py", tmp_path / "rule.txt", tmp_path):
+        with pytest.raises(DeclarationError, match="expected a plug-in file such as conjectures"):
+            conjectures_in_file(path)

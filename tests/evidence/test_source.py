@@ -126,6 +126,24 @@ def test_a_folder_for_sources(repository):
     assert rule_hash(path) != before
 
 
+def test_files_that_are_named(tmp_path):
+    """A file that a rule or its helper names in a string is part of it, byte by byte; other files beside it are not."""
+    (tmp_path / "data").mkdir()
+    (tmp_path / "rule.py").write_text(
+        "import pathlib\nimport helper\nT = pathlib.Path(__file__).with_name('table.json').read_text()\n"
+    )
+    (tmp_path / "helper.py").write_text("open('data/more.bin')\nX = ('', '.', 'none.txt', 'a\\0b', '/etc/hostname', 'x' * 9999)\n")
+    hashes = [rule_hash(tmp_path / "rule.py")]
+    for name, data in (("table.json", b"[1]"), ("table.json", b"[2]"), ("data/more.bin", b"\xff"), ("data/more.bin", b"\xfe")):
+        (tmp_path / name).write_bytes(data)
+        hashes.append(rule_hash(tmp_path / "rule.py"))
+    assert len(set(hashes)) == 5
+    (tmp_path / "data" / "other.bin").write_bytes(b"1")
+    assert rule_hash(tmp_path / "rule.py") == hashes[-1]
+    shutil.copytree(tmp_path, tmp_path / "elsewhere")
+    assert rule_hash(tmp_path / "elsewhere" / "rule.py") == hashes[-1]
+
+
 def test_a_circle(tmp_path):
     """Files that import each other come once each, the plug-in first."""
     (tmp_path / "a.py").write_text("import b\n")

@@ -418,6 +418,19 @@ def test_variants(tmp_path):
     assert run_campaign(conjecture.variant(last=1), [Gr(1, 3)]).spaces[0].complete
 
 
+def test_the_engine(tmp_path):
+    """The engine named is the one that answers: localisation for equivariant constants."""
+    source = """
+    @candidate(on=ProjectiveSpaces(), ring="equivariant quantum", premise=lambda X, u, v: u.length == 0)
+    def unit(X, u, v, w, d):
+        return int(v == w and d == (0,))
+    """
+    done = run_campaign(load(write(tmp_path, source)), [Gr(1, 3)])
+    assert [(s.engine, s.complete, s.result.rows, s.result.findings) for s in done.spaces] == [("localisation", True, 3, ())]
+    done = run_campaign(load(write(tmp_path, POWERS, "other.py")), [Gr(1, 3)])
+    assert [s.engine for s in done.spaces] == ["vafa-intriligator"]
+
+
 def test_every_entry_is_a_finding(tmp_path):
     """What a campaign keeps of a failure is what the comparison in this process finds."""
     conjecture = plugin(tmp_path, faults_in([Gr(2, 4)], 3), "by_case")

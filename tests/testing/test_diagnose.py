@@ -453,6 +453,23 @@ def test_reports():
     assert Case.parse(plain["firsts"]["n = 2"])
 
 
+@pytest.mark.parametrize(("name", "arguments"), [("w Grassmannian", "X, u, v, w"), ("u not vexillary", "X, u, v")])
+def test_a_suggestion_can_be_declared(name, arguments):
+    """The suggested text is a premise that a declaration takes, and with it the rule agrees where it was refuted."""
+    fault = next(fault for fault in faulty.FAULTS if fault.name == name)
+    rule = faulty.planted(fault)
+    found, _ = worked_out(rule)
+    text = found.suggestion.premise
+    assert text.startswith(f"premise=lambda {arguments}: ")
+    assert ("from itertools import combinations" in found.suggested) == ("combinations(" in text)
+    premise = eval(text.removeprefix("premise="), {"combinations": combinations})
+    declared = candidate(on=Varieties("Fl(3)", "Fl(4)"), ring="classical", premise=premise)(rule.rule)
+    done = survey(Comparer(declared), budget=30)
+    assert done.finding is None
+    assert done.coverage.whole_family
+    assert done.coverage.nonzero > 50
+
+
 def test_the_guard_is_left_as_it_was():
     """After a diagnosis nobody is watched any more."""
     worked_out(faulty.planted(faulty.FAULTS[1]), budget=1)

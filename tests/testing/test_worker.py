@@ -88,7 +88,10 @@ def started(tmp_path):
     path.write_bytes(b"\0" * Marks.SIZE)
     marks = Marks(path)
     process = subprocess.Popen(
-        [sys.executable, "-m", "conjcheck.testing.worker", path], stdin=subprocess.PIPE, stdout=subprocess.PIPE, text=True
+        [sys.executable, "-m", "conjcheck.testing.worker", path, str(os.getpid())],
+        stdin=subprocess.PIPE,
+        stdout=subprocess.PIPE,
+        text=True,
     )
     return process, marks, path
 
@@ -125,3 +128,13 @@ def test_it_ends_with_its_parent(tmp_path, monkeypatch, body):
     os.kill(parent.pid, signal.SIGKILL)
     parent.wait()
     assert none_left(tmp_path.name, 5.0)
+
+
+def test_it_does_not_begin_without_its_parent(tmp_path):
+    """If whoever started it is gone when it is ready, it does nothing."""
+    path = tmp_path / "marks.of.process"
+    path.write_bytes(b"\0" * Marks.SIZE)
+    command = [sys.executable, "-m", "conjcheck.testing.worker", path, "1"]
+    done = subprocess.run(command, input=task(1, chunk_of(write(tmp_path, POWERS))), capture_output=True, text=True, check=True)
+    assert done.stdout == ""
+    assert not path.exists()
