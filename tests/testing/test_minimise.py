@@ -51,7 +51,8 @@ FAULTS = st.one_of(
 
 def minimality(below):
     """What a certified outcome says."""
-    return f"minimal: all {below:,} smaller cases agree" if below else "minimal: there is no smaller case"
+    words = {0: "there is no smaller case", 1: "the one smaller case agrees"}
+    return f"minimal: {words.get(below, f'all {below:,} smaller cases agree')}"
 
 
 def reported(case):
