@@ -1,15 +1,19 @@
 """What the sections of a page show, as plain values: products term by term, failures by feature, the layer, the coverage."""
 
+import re
 from collections.abc import Mapping
 from typing import Any
 
 from conjcheck.errors import ConjcheckError
 from conjcheck.geometry.case import Case, Row, parse_class
+from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.report.document import visible
 
 __all__ = ["cells", "diagnosis", "layer_words", "products"]
 
 _MOST_TERMS = 24
+_MOST_MAPPED = 120
+_MOST_DEGREES = 9
 
 
 def products(data: Mapping[str, Any], place: Case | Row | None) -> dict[str, Any]:
@@ -117,9 +121,10 @@ def cells(document: Mapping[str, Any], place: Case | Row | None) -> list[dict[st
         named.add(name)
         if drawn:
             rows = f"{space['rows']:,} rows" if space["rows"] else "rows drawn among these spaces"
-            found.append({"kind": "drawn", "space": name, "state": "drawn at random", "count": rows})
+            found.append({"kind": "drawn", "space": name, "state": "drawn at random", "count": rows, "degrees": ""})
         elif space["out_of_reach"]:
-            found.append({"kind": "out", "space": name, "state": "not compared", "count": "out of reach of the oracle"})
+            out = "out of reach of the oracle"
+            found.append({"kind": "out", "space": name, "state": "not compared", "count": out, "degrees": ""})
         else:
             whole = space["seen"] == space["of"]
             kind, state = ("whole", "agreed, complete") if whole else ("partly", "agreed, in part")
@@ -128,7 +133,26 @@ def cells(document: Mapping[str, Any], place: Case | Row | None) -> list[dict[st
             if failed or space["failing"]:
                 kind, state = "failed", "≠ fails here"
             count = f"all {space['of']:,} rows" if whole else f"{space['seen']:,} of {space['of']:,} rows"
-            found.append({"kind": kind, "space": name, "state": state, "count": f"{count}, {space['cases']:,} cases"})
+            degrees = _degrees(document, name, whole=whole, failed=failed) if space["cases"] and len(found) < _MOST_MAPPED else ""
+            found.append(
+                {"kind": kind, "space": name, "state": state, "count": f"{count}, {space['cases']:,} cases", "degrees": degrees}
+            )
     if failing is not None and failing not in named:
-        found.append({"kind": "failed", "space": failing, "state": "≠ fails here", "count": "the first failure known"})
+        first = "the first failure known"
+        found.append({"kind": "failed", "space": failing, "state": "≠ fails here", "count": first, "degrees": ""})
     return found
+
+
+def _degrees(document: Mapping[str, Any], name: str, *, whole: bool, failed: bool) -> str:
+    """The total degrees |d| that cases of a space have, each with a sign: nothing fails, something does, or not compared to the end."""
+    try:
+        X = FlagVariety(name)
+    except ConjcheckError:
+        return ""
+    most = 0 if document["about"]["ring"] in ("classical", "equivariant") else 2 * X.dim // min(X.q_degrees)
+    layer = document["failure"] and document["failure"]["layer"]
+    failures = layer["failures"] if failed and layer else []
+    bad = {sum(map(int, d[1].split(","))) for item in failures if (d := re.search(r"q\^\(([\d,]{1,99})\)$", item["where"]))}
+    rest = "=" if (layer["complete"] if failed and layer else whole and not failed) else "?"
+    signs = [f"\N{NOT EQUAL TO}{k}" if k in bad else f"{rest}{k}" for k in range(min(most, _MOST_DEGREES) + 1)]
+    return " ".join([*signs, "..."] if most > _MOST_DEGREES else signs)

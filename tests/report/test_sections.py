@@ -41,11 +41,32 @@ def test_words_of_a_layer():
 def test_a_failing_space_is_never_called_agreed():
     """The space of the failure fails, whatever its numbers; and it has a cell even if no survey came there."""
     whole = {"space": "Gr(2,4)", "seen": 36, "of": 36, "rows": 36, "cases": 9, "drawn": False, "out_of_reach": False, "failing": 0}
-    document = {"status": "refuted", "spaces": [whole]}
+    plain = {"about": {"ring": "quantum"}, "failure": None}
+    document = {"status": "refuted", "spaces": [whole], **plain}
     assert [cell["kind"] for cell in cells(document, PLACE)] == ["failed"]
-    assert [(cell["space"], cell["kind"]) for cell in cells({"status": "refuted", "spaces": []}, PLACE)] == [("Gr(2,4)", "failed")]
-    assert [cell["kind"] for cell in cells({"status": "agrees", "spaces": [whole]}, None)] == ["whole"]
-    assert [cell["kind"] for cell in cells({"status": "agrees", "spaces": [whole | {"failing": 1}]}, None)] == ["failed"]
+    assert [(cell["space"], cell["kind"]) for cell in cells({"status": "refuted", "spaces": [], **plain}, PLACE)] == [
+        ("Gr(2,4)", "failed")
+    ]
+    assert [cell["kind"] for cell in cells({"status": "agrees", "spaces": [whole], **plain}, None)] == ["whole"]
+    assert [cell["kind"] for cell in cells({"status": "agrees", "spaces": [whole | {"failing": 1}], **plain}, None)] == ["failed"]
+
+
+def test_the_map_by_degree():
+    """On Gr(2,4), |d| goes up to 2: a complete space agrees at all, a failing one fails where the layer says, a part is open."""
+    about, layer = {"ring": "quantum"}, {"failures": [{"where": "Gr(2,4): (2) * (2) -> (), q^(1)"}], "complete": True}
+    space = {"space": "Gr(2,4)", "seen": 36, "of": 36, "rows": 36, "cases": 9, "drawn": False, "out_of_reach": False, "failing": 0}
+
+    def signs(document, place=None):
+        return [cell["degrees"] for cell in cells({"about": about, "failure": None, **document}, place)]
+
+    assert signs({"status": "agrees", "spaces": [space]}) == ["=0 =1 =2"]
+    assert signs({"status": "agrees", "spaces": [space | {"seen": 35}]}) == ["?0 ?1 ?2"]
+    refuted = {"status": "refuted", "spaces": [space]}
+    assert signs({**refuted, "failure": {"layer": layer}}, PLACE) == ["=0 \N{NOT EQUAL TO}1 =2"]
+    assert signs({**refuted, "failure": {"layer": layer | {"complete": False}}}, PLACE) == ["?0 \N{NOT EQUAL TO}1 ?2"]
+    assert signs({**refuted, "failure": {"layer": None}}, PLACE) == ["?0 ?1 ?2"]
+    assert signs({"status": "agrees", "spaces": [space], "about": {"ring": "classical"}}) == ["=0"]
+    assert signs({"status": "agrees", "spaces": [space | {"space": "no space"}]}) == [""]
 
 
 def test_a_diagnosis_of_any_shape():
