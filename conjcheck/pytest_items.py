@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import json
+import shlex
 import traceback
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
+from functools import partial
 from time import perf_counter
 from typing import Any
 
@@ -13,27 +15,30 @@ import pytest
 from hypothesis import settings
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.conjecture.discover import prefer_helpers_of
-from conjcheck.errors import ConjcheckError, RecordError
-from conjcheck.evidence.record import Record, current_record, parse_place, read_record, stale_words, write_record
+from conjcheck.conjecture.discover import declared_twice, prefer_helpers_of
+from conjcheck.errors import ConjcheckError, NotationError, RecordError
+from conjcheck.evidence.record import Record, parse_place, read_record, stale_words
+from conjcheck.evidence.rerun import ask_afresh
 from conjcheck.evidence.source import rule_hash
-from conjcheck.geometry.case import Row
+from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.oracle.guard import Watch, watched
 from conjcheck.pytest_state import STATE, seconds
 from conjcheck.report.text import replay_line, text_report
-from conjcheck.testing.answer import plain_value
+from conjcheck.testing.answer import plain_value, shown_value
 from conjcheck.testing.covered import covered
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.limits import CallInterrupted, CallLimit
 from conjcheck.testing.outcome import Outcome, no_verdict
 from conjcheck.testing.probe import Check, ProbeCount, gravest, level_name, probe_test
-from conjcheck.testing.recording import counterexample
+from conjcheck.testing.recording import asked_again, counterexample, recording, write_recording
 
 __all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
 
 _IMPORT_LIMIT = 60.0
+_RETIRING = "a counterexample to an earlier version of the rule refutes no more: the survey takes it off the record"
+_NOT_REACHED = "on record as refuted; the budget ended before the counterexample"
 
 
 class Verdict(Exception):
@@ -49,6 +54,8 @@ class PluginFile(pytest.Module):
         if problem:
             yield BrokenFile.from_parent(self, name="import", problem=problem)
             return
+        if twice := declared_twice(self.path):
+            yield BrokenFile.from_parent(self, name="import", problem=twice)
         found = list(super().collect())
         if not found:
             text = (
@@ -133,7 +140,10 @@ class ConjectureNode(pytest.Collector):
             yield BrokenFile.from_parent(self, name="record", problem=str(error))
             return
         if record.counterexamples:
-            yield self._plain_item("recorded", lambda examination: recorded(examination, record), expected=record)
+            renewing = bool(config.getoption("--conjcheck-record"))
+            yield self._plain_item(
+                "recorded", lambda examination: recorded(examination, record, renewing=renewing), expected=record
+            )
         if record.status == "refuted":
             yield self._plain_item("survey", lambda examination: examination.survey(), expected=record)
             return
@@ -229,23 +239,39 @@ class ConjectureNode(pytest.Collector):
         return self.conjecture.file, self.conjecture.line - 1, self.name
 
 
-def recorded(examination: Examination, record: Record) -> Outcome:
+def recorded(examination: Examination, record: Record, *, renewing: bool = False) -> Outcome:
     """Compute the counterexamples on record again, by the rule and by the oracle.
+
+    Args:
+        examination: that of the conjecture.
+        record: its record.
+        renewing: the record is going to be written: those of another version of the rule may refute no more, or with other values.
 
     Raises:
         RecordError: one of them refutes no more, or with other values.
     """
-    outcome = None
+    outcome = gone = None
+    version = rule_hash(examination.conjecture.file) if renewing else None
     for known in record.counterexamples:
-        outcome = examination.case(known.where)
+        earlier = renewing and known.rule_hash != version
+        try:
+            outcome = examination.case(known.where)
+        except NotationError as error:  # the place is outside the family or the premise now
+            if not earlier:
+                raise
+            gone = gone or Outcome(examination.conjecture, "recorded", "agrees", str(error), note=_RETIRING)
+            continue
         found = outcome.finding
+        if earlier and (found is None or found.status == "refuted"):
+            gone = gone or (replace(outcome, note=_RETIRING) if found is None else None)
+            continue
         if found is None or found.status != "refuted":
             what = (
                 "the rule and the oracle agree there now" if found is None else f"the rule is {found.status} there: {found.detail}"
             )
             raise RecordError(
                 f"stale record: expected {examination.conjecture.name} to be refuted at {known.where}, but {what}; "
-                "if the rule was repaired, remove the counterexample from its record"
+                "if the rule was repaired, record it anew with --conjcheck-record"
             )
         values = plain_value(found.rule), plain_value(found.oracle)
         recorded_values = known.rule, known.oracle
@@ -254,6 +280,7 @@ def recorded(examination: Examination, record: Record) -> Outcome:
                 f"stale record: expected rule {known.rule} and oracle {known.oracle} at {known.where}, "
                 f"got rule {values[0]} and oracle {values[1]}; record it anew with --conjcheck-record"
             )
+    outcome = gone or outcome
     assert outcome is not None, "a record is only verified when it holds a counterexample"
     return replace(outcome, part="recorded", scope=f"{len(record.counterexamples)} recorded counterexamples")
 
@@ -309,35 +336,57 @@ class PartItem(pytest.Function):
             self._draw(examination, self._make_draws())
         outcome = self.outcome
         assert outcome is not None, "every part ends in an outcome"
+        if outcome.status == "refuted" and self.expected is None:
+            outcome = self._asked_afresh(outcome)
         if self._make_draws is not None:
             outcome = replace(outcome, seed=str(self.config.stash[STATE]["seed"]))
         expected = self.expected is not None and outcome.status == "refuted" and self.expected.status == "refuted"
-        recording = bool(self.config.getoption("--conjcheck-record"))
-        if expected and self.name == "survey" and not recording:
+        on_record = bool(self.config.getoption("--conjcheck-record"))
+        if expected and self.name == "survey" and not on_record:
             _hold_to_minimal(self.expected, outcome)
         if expected:
             outcome = replace(outcome, note="on record as refuted: this is the expected verdict")
         elif self.expected is not None and self.expected.status == "refuted" and outcome.status == "agrees":
-            outcome = replace(outcome, note="on record as refuted; the budget ended before the counterexample")
+            outcome = replace(outcome, note=outcome.note or _NOT_REACHED)
             expected = True
         if getattr(self.node.parent, "asked_oracle", False) and self.node.conjecture.role == "candidate":
             warning = (
                 "the file asked the oracle while it was imported: the verdict is no more independent than the use made of that"
             )
             outcome = replace(outcome, note=f"{outcome.note}; {warning}" if outcome.note else warning)
-        if self.name == "survey" and not recording and (stale := self._stale()):
+        if self.name == "survey" and not on_record and (stale := self._stale()):
             outcome = replace(outcome, note=f"{outcome.note}; {stale}" if outcome.note else stale)
+        if on_record and (self.name == "survey" or outcome.minimum) and outcome.status in ("agrees", "refuted"):
+            outcome = self._record(outcome)
         self.outcome = outcome
-        replay = f"pytest '{self.node.nodeid}'"
+        replay = f"pytest {shlex.quote(self._place())}"
         whole = replay_line(replay, outcome.finding) if outcome.finding else replay
         self.user_properties.append(("conjcheck", json.dumps(outcome.as_json() | {"replay": whole})))
         text = text_report(outcome, replay=replay)
         if outcome.status == "agrees" or expected:
             self.add_report_section("call", "conjcheck", text)
-        if recording and (self.name == "survey" or outcome.minimum) and outcome.status in ("agrees", "refuted"):
-            self._record(outcome)
         if outcome.status != "agrees" and not expected:
             raise Verdict(text)
+
+    def _asked_afresh(self, outcome: Outcome) -> Outcome:
+        """A refutation, unless the rule says something else when it is asked there first, in another process: then it is unstable."""
+        finding, conjecture = outcome.finding, self.node.conjecture
+        if finding is None or not isinstance(finding.where, Case):
+            return outcome
+        answer = ask_afresh(f"{conjecture.file}::{conjecture.name}", finding.where)
+        if answer is None or (answer["status"], answer["rule"]) == ("refuted", plain_value(finding.rule)):
+            return outcome
+        here = "False" if finding.rule is None else shown_value(finding.rule)
+        there = f"{answer['status']}, value {answer['rule']}" if finding.rule is not None else answer["status"]
+        detail = f"expected one answer for one case, got {here} in this run, and in a process that asks nothing else: {there}"
+        found = Finding("unstable", finding.where, detail=detail)
+        return replace(outcome, status="unstable", finding=found, layer=None, explanation=None, derivation=None, diagnosis=None)
+
+    def _place(self) -> str:
+        """The node as pytest takes it where the user is, whatever the root directory."""
+        here, (_, *names) = self.config.invocation_params.dir, self.node.nodeid.split("::")
+        path = self.path.relative_to(here) if self.path.is_relative_to(here) else self.path
+        return "::".join([str(path), *names])
 
     def _draw(self, examination: Examination, draws: Draws) -> None:
         """Run the Hypothesis test of this item."""
@@ -383,16 +432,23 @@ class PartItem(pytest.Function):
         if self.outcome is None:
             pytest.skip("no row inside the premise was drawn: nothing compared")
 
-    def _record(self, outcome: Outcome) -> None:
-        """Put on record how far the survey got, and the counterexample if there is one."""
+    def _record(self, outcome: Outcome) -> Outcome:
+        """Put on record how far the survey got, and the counterexample if there is one; a failure to do so is a note on the verdict."""
         finding, examination = outcome.finding, self.node.examination
         entries = covered(examination.coverage, examination.conjecture, cross_check=examination.cross_check)
-        record = current_record(examination.conjecture).with_coverage(entries)
-        if finding is not None:
-            minimal = outcome.minimum is not None and outcome.minimum.certified
-            found = counterexample(finding, examination.conjecture, minimal=minimal, confirmed_by=outcome.confirmed_by)
-            record = record.with_counterexample(found)
-        write_record(examination.conjecture, record)
+        conjecture, found = examination.conjecture, None
+        try:
+            if finding is not None:
+                minimal = outcome.minimum is not None and outcome.minimum.certified
+                found = counterexample(finding, conjecture, minimal=minimal, confirmed_by=outcome.confirmed_by)
+            made = recording(conjecture, partial(asked_again, examination.comparer), coverage=entries, found=found)
+            write_recording(conjecture, made)
+            notes = [made.note]
+            if made.record.status == "open":
+                outcome = replace(outcome, note=outcome.note.removeprefix(_NOT_REACHED).removeprefix("; "))
+        except RecordError as error:
+            notes = [f"not recorded: {error}"]
+        return replace(outcome, note="; ".join(filter(None, [outcome.note, *notes])))
 
     def _stale(self) -> str:
         """What on record was computed for another version of the rule."""

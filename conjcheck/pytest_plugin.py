@@ -192,13 +192,13 @@ def pytest_sessionfinish(session: pytest.Session) -> None:
 
 def pytest_terminal_summary(terminalreporter: Any, config: pytest.Config) -> None:
     """One line per conjecture; nothing if none ran."""
-    lines = config.stash[LINES]
-    if not lines:
+    lines, broken = config.stash[LINES], config.stash[STATE].get("broken", [])
+    if not lines and not broken:
         return
     from conjcheck.report.text import summary_table
 
     terminalreporter.section("conjectures")
-    for line in summary_table(lines):
+    for line in summary_table(lines, broken):
         terminalreporter.write_line(line)
     if pages := config.stash[STATE].get("pages"):
         terminalreporter.write_line(pages)

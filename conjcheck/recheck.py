@@ -425,7 +425,7 @@ def read(path: str | Path) -> Any:
     """Read a certificate; nothing in it is believed.
 
     Raises:
-        Unusable: no regular file, or not readable.
+        Unusable: no regular file, or not readable, or a record.
         Rejected: not JSON in UTF-8 with integers only, keys once, and of a bounded size.
     """
     try:
@@ -437,6 +437,10 @@ def read(path: str | Path) -> Any:
         raise Unusable(f"expected a readable file, got {error}") from None
     if len(raw) > MOST_BYTES:
         raise Rejected(f"expected at most {MOST_BYTES:,} bytes, got more")
+    if raw.lstrip(b"{ \r\n\t").startswith(b'"format": "conjcheck-record"'):
+        named = sorted({_shown(name)[1:-1] for name in re.findall('"certificate": "([^"]+)"', raw.decode("utf-8", "replace"))})
+        which = f"its certificates are, beside it, {', '.join(named[:20])}" if named else "it names no certificate"
+        raise Unusable(f"expected a certificate, got {_shown(str(path))}: a record, no certificate; {which}")
 
     def once(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
         found = dict(pairs)
@@ -473,7 +477,7 @@ def rule_again(data: dict[str, Any], target: str) -> tuple[bool, str]:
         raise Unusable(f"expected the rule to answer within {RULE_SECONDS} seconds, got no answer") from None
     except (OSError, ValueError, LookupError, TypeError):
         last = (done.stderr.strip().splitlines() or ["no answer"])[-1]
-        hint = "; --rule needs an installed conjcheck: pip install conjcheck" if "No module named" in last else ""
+        hint = "; --rule needs an installed conjcheck: in its clone, pip install -e ." if "No module named" in last else ""
         raise Unusable(f"expected conjcheck to ask the rule {target!r}, got {_shown(last)}{hint}") from None
     file = f"its file {'is unchanged' if same_file else 'has changed since'}"
     if answer["status"] not in ("agrees", "refuted"):

@@ -2,6 +2,7 @@
 
 import os
 import traceback
+from difflib import get_close_matches
 from importlib import import_module
 from typing import Any
 
@@ -28,6 +29,14 @@ class _Commands(click.Group):
         found = import_module(f"conjcheck.cli.{cmd_name}").command
         assert isinstance(found, click.Command), "every room offers one command"
         return found
+
+    def resolve_command(self, ctx: click.Context, args: list[str]) -> tuple[str | None, click.Command | None, list[str]]:
+        """A command that there is not is answered by the one that was meant, if one is close."""
+        word = args[0]
+        if word not in COMMANDS and not word.startswith("-") and not ctx.resilient_parsing:
+            close = get_close_matches(word.lower(), COMMANDS, n=1)
+            ctx.fail(f"expected one of {', '.join(COMMANDS)}, got {word!r}" + (f"; did you mean {close[0]}?" if close else ""))
+        return super().resolve_command(ctx, args)
 
     def invoke(self, ctx: click.Context) -> Any:
         """In every command Ctrl-C is status 130, and an error that nobody foresaw 2: 1 is kept for what was found out."""

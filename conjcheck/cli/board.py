@@ -32,8 +32,9 @@ def command(context: click.Context, folder: Path, output: Path | None, markdown:
     what is on record was computed for another version of the rule (stale).
     Plug-ins and records that cannot be used have a row that says why.
 
-    Names link to the pages that lie beside FILE (pytest --conjcheck-report DIR, conjcheck page -o DIR). The plug-ins are imported; no
-    rule is called.
+    What counts is the newest evidence about the rule as it stands, from its record or from the page of its last run (the row says which);
+    what is refuted on record stays refuted. Pages (pytest --conjcheck-report DIR, conjcheck page -o DIR) are looked for in the folder of
+    the page given with -o, else in the folder pages, and names link to them. The plug-ins are imported; no rule is called.
 
     \b
     Examples:
@@ -46,21 +47,26 @@ def command(context: click.Context, folder: Path, output: Path | None, markdown:
     from conjcheck.report.board import board_of_folder, board_page, board_table
 
     page = output or (None if markdown else Path("board.html"))
-    beside = page.parent if page else folder
+    beside = output.parent if output else Path("pages")
     rows = board_of_folder(folder, beside=beside)
     if page:
-        _write(page, board_page(rows, folder.resolve().name))
+        _write(page, board_page(rows, folder.resolve().name, base=_way(beside, page.parent)))
         click.echo(str(page), err=str(markdown) == "-")
     if markdown:
         dash = str(markdown) == "-"
-        way = os.path.relpath(beside, "." if dash else markdown.parent)
-        text = board_table(rows, base="" if way == "." else f"{Path(way).as_posix()}/")
+        text = board_table(rows, base=_way(beside, Path() if dash else markdown.parent))
         if dash:
             click.echo(text, nl=False)
         else:
             _write(markdown, text)
             click.echo(str(markdown))
     context.exit(FAILED if any(row["status"] in ("broken", "unreadable") for row in rows) else 0)
+
+
+def _way(to: Path, start: Path) -> str:
+    """The way from one folder to another, in a link."""
+    way = os.path.relpath(to, start)
+    return "" if way == "." else f"{Path(way).as_posix()}/"
 
 
 def _write(path: Path, text: str) -> None:

@@ -15,6 +15,8 @@ if TYPE_CHECKING:
 
 __all__ = ["command"]
 
+_EXPECTED = "expected a record such as conjectures/records/NAME.json, saved outcomes (JSON) or a plug-in (.py)"
+
 
 @click.command("page")
 @click.argument("targets", nargs=-1, required=True, metavar="TARGET...", shell_complete=complete_file)
@@ -63,6 +65,8 @@ def command(context: click.Context, targets: tuple[str, ...], folder: Path, late
     chosen = [target for target in targets if not target.endswith(".certificate.json")]
     if len(chosen) < len(targets):
         click.echo("certificates have no page of their own: left out", err=True)
+    if not chosen:
+        raise Stop(f"{_EXPECTED}, got certificates only; the record that names them has a page")
     documents = [document for target in chosen for document in _documents(target, effort, seed)]
     if latex:
         from conjcheck.report.latex import latex_snippet
@@ -94,10 +98,12 @@ def _documents(target: str, effort: str, seed: int | None) -> Iterator[dict[str,
     try:
         text = path.read_text(encoding="utf-8", errors="replace")
     except OSError as error:
-        raise Stop(f"expected a record, saved outcomes or a plug-in (.py), got {target}: {error}") from error
+        raise Stop(f"{_EXPECTED}, got {target}: {error}") from error
     try:
         data = json.loads(text)
     except (ValueError, RecursionError) as error:
+        if path.suffix != ".json":
+            raise Stop(f"{_EXPECTED}, got {target}, a file of another kind") from error
         yield unreadable(text, f"expected JSON, got {error}", file=target, made=now())
         return
     outcomes = data if isinstance(data, list) else [data]

@@ -4,7 +4,9 @@ from __future__ import annotations
 
 import ast
 import keyword
+import shlex
 import sys
+import tomllib
 from difflib import get_close_matches
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -19,6 +21,8 @@ if TYPE_CHECKING:
 
 __all__ = ["command"]
 
+_IGNORED = ".ledger.sqlite*"
+_PLACE = "./conjcheck"
 _VIEWS = ("partition", "permutation", "string", "signed", "word", "descents")
 _LOOKED_AT = 6
 
@@ -61,18 +65,24 @@ on: [push, pull_request]
 permissions:
   contents: read
 
+env:
+  # The place of your clone of conjcheck, as pip takes it: a folder of this repository (a submodule, say), or git+https://.../conjcheck.git
+  CONJCHECK: {place}
+
 jobs:
   examine:
     runs-on: ubuntu-latest
     steps:
       - uses: actions/checkout@v4
+        with:
+          submodules: true
       - uses: actions/setup-python@v5
         with:
           python-version: "3.12"
       - name: Install
-        run: {install}
+        run: python -m pip install "$CONJCHECK"{too}
       - name: Examine
-        run: pytest {folder} --conjcheck-report report --junitxml report/conjectures.xml
+        run: pytest {quoted} --conjcheck-report report --junitxml report/conjectures.xml
       - name: Keep the report
         if: always()
         uses: actions/upload-artifact@v4
@@ -159,7 +169,25 @@ def command(
             raise Stop(f"expected a file that can be written, got {path}: {error.strerror}") from error
         click.echo(f"wrote {path}")
     if name is not None:
-        click.echo(f"next: pytest {folder / name}.py --conjcheck-effort quick")
+        if ignored := _ignore_ledger(folder):
+            click.echo(f"wrote {ignored}")
+        click.echo(f"next: pytest {shlex.quote(f'{folder / name}.py')} --conjcheck-effort quick")
+    if workflow and f"CONJCHECK: {_PLACE}" in pages[workflow_folder / "conjectures.yml"]:
+        click.echo(f"next: in {workflow_folder / 'conjectures.yml'}, put the place of your clone of conjcheck at CONJCHECK")
+
+
+def _ignore_ledger(folder: Path) -> Path | None:
+    """See to it that the ledger of a survey in this folder is not committed; the file that was written to, if one had to be."""
+    path = folder / ".gitignore"
+    try:
+        text = path.read_text(encoding="utf-8") if path.exists() else ""
+        if any(line.strip().startswith(".ledger.sqlite") for line in text.splitlines()):
+            return None
+        with path.open("a", encoding="utf-8") as file:
+            file.write(("\n" if text and not text.endswith("\n") else "") + f"{_IGNORED}\n")
+    except (OSError, UnicodeDecodeError) as error:
+        raise Stop(f"expected a file that can be written, got {path}: {error}; write the line {_IGNORED} yourself") from error
+    return path
 
 
 def _check_name(name: str, folder: Path) -> None:
@@ -212,7 +240,7 @@ def _page(name: str, about: tuple[str, ...], path: Path, *, claim: bool, product
         arguments, returns = f"{pair}, w: SchubertClass, d: tuple[int, ...]", "int"
     text = _PAGE.format(
         name=name,
-        path=path.as_posix(),
+        path=shlex.quote(path.as_posix()),
         imports=", ".join(sorted({"FlagVariety", "SchubertClass", imported, role}, key=_import_key)),
         role=role,
         family=code,
@@ -302,5 +330,11 @@ def _quoted(text: str) -> str:
 
 def _workflow(folder: Path) -> str:
     """The text of a workflow file for a repository with this folder of conjectures."""
-    install = "python -m pip install ." if Path("pyproject.toml").is_file() else "python -m pip install conjcheck"
-    return _WORKFLOW.format(folder=folder.as_posix(), install=install)
+    try:
+        here = tomllib.loads(Path("pyproject.toml").read_text(encoding="utf-8"))
+    except (OSError, ValueError):
+        here = {}
+    project = here.get("project", {})
+    own = isinstance(project, dict) and project.get("name") == "conjcheck"
+    too = " ." if not own and ("project" in here or "build-system" in here) else ""  # the repository is a package, too
+    return _WORKFLOW.format(quoted=shlex.quote(folder.as_posix()), place="." if own else _PLACE, too=too)

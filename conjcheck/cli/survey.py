@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import sys
 from contextlib import ExitStack, contextmanager
+from dataclasses import replace
 from pathlib import Path
 from time import monotonic
 from typing import TYPE_CHECKING, Any
@@ -12,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from conjcheck.cli.common import FAILED, USAGE, Stop, complete_conjecture, complete_space, conjecture_named, echo_json, spaces_named
-from conjcheck.errors import ConjcheckError
+from conjcheck.errors import ConjcheckError, RecordError
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
@@ -108,7 +109,8 @@ def command(
       conjcheck survey conjectures/rim_hooks.py --up-to 5 --jobs 2
       conjcheck survey conjectures/rim_hooks.py "Gr(4,8)" --sample 200
 
-    Exit status: 0 agrees; 1 refuted, crashed, too slow ...; 2 wrong usage, or not finished; 130 interrupted.
+    Exit status: 0 agrees; 1 refuted, crashed, too slow ...; 2 wrong usage, not finished, or agrees and could not be recorded;
+    130 interrupted.
     """  # noqa: D301  # click knows the character, not the two letters
     conjecture = conjecture_named(target)
     chosen = _spaces(conjecture, spaces, up_to, most_classes)
@@ -132,7 +134,13 @@ def command(
                 watching=watching,
             )
         outcome = campaign_outcome(done)
-        record = None if no_record else write_campaign(done, outcome)
+        record, problem = None, ""
+        if not no_record:
+            try:
+                record, note = write_campaign(done, outcome)
+                outcome = replace(outcome, note="; ".join(filter(None, [outcome.note, note])))
+            except RecordError as error:  # the verdict is not lost for that
+                problem = str(error)
     except KeyboardInterrupt:
         click.echo("interrupted" + (f"; finished chunks are in {kept}, the same command goes on" if kept else ""), err=True)
         context.exit(130)
@@ -150,7 +158,9 @@ def command(
             click.echo(line)
         if record:
             click.echo(f"recorded in {record}")
-    status = 0 if outcome.status == "agrees" else USAGE if outcome.finding is None else FAILED
+    if problem:
+        click.echo(f"Error: {problem}", err=True)
+    status = (USAGE if problem else 0) if outcome.status == "agrees" else USAGE if outcome.finding is None else FAILED
     context.exit(status)
 
 

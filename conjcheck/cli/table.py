@@ -39,7 +39,9 @@ __all__ = ["command"]
     help="cases: smallest first, as everywhere in conjcheck. blocks: u as the engine has it, which is much quicker.",
 )
 @click.option("--half", is_flag=True, help="Only u <= v in the order of classes; the rest follows from commutativity.")
-@click.option("--output", type=click.Path(dir_okay=False, path_type=Path), metavar="FILE", help="Write there instead of printing.")
+@click.option(
+    "-o", "--output", type=click.Path(dir_okay=False, path_type=Path), metavar="FILE", help="Write there instead of printing."
+)
 def command(space: str, form: str, notation: str, order: str, output: Path | None, *, half: bool) -> None:
     """Write all nonzero structure constants of one SPACE, with a head that states every convention.
 

@@ -1,5 +1,6 @@
 """Where conjectures are found: in a module that was imported, in a file, and in installed packages that offer some."""
 
+import ast
 import sys
 from importlib.machinery import EXTENSION_SUFFIXES, SOURCE_SUFFIXES, ExtensionFileLoader, FileFinder, SourceFileLoader
 from importlib.metadata import EntryPoint, entry_points
@@ -11,7 +12,7 @@ from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import DeclarationError, RecordError
 from conjcheck.evidence.source import source_files
 
-__all__ = ["GROUP", "conjectures_in", "conjectures_in_file", "installed_files", "prefer_helpers_of"]
+__all__ = ["GROUP", "conjectures_in", "conjectures_in_file", "declared_twice", "installed_files", "prefer_helpers_of"]
 
 GROUP = "conjcheck.conjectures"
 """The entry-point group: ``[project.entry-points."conjcheck.conjectures"]`` with ``any_name = "package.module"``."""
@@ -47,10 +48,30 @@ def conjectures_in_file(path: Path) -> list[Conjecture]:
     except (Exception, SystemExit) as error:
         del sys.modules[name]
         raise DeclarationError(f"{path}: cannot be imported: {type(error).__name__}: {error}") from error
+    if twice := declared_twice(path):
+        raise DeclarationError(twice)
     found = [conjecture.called(_name_in(module, conjecture)) for conjecture in conjectures_in(module)]
     if not found:
         raise DeclarationError(f"{path}: expected at least one @candidate or @claim, got none; decorate a function")
     return found
+
+
+def declared_twice(path: Path) -> str:
+    """What to say of a file that declares two conjectures of one name, of which Python keeps the last; empty if none does."""
+    lines: dict[str, int] = {}
+    for node in ast.parse(path.read_bytes()).body:
+        if not isinstance(node, ast.FunctionDef):
+            continue
+        calls = [d.func for d in node.decorator_list if isinstance(d, ast.Call)]
+        if not any((f.attr if isinstance(f, ast.Attribute) else getattr(f, "id", "")) in ("candidate", "claim") for f in calls):
+            continue
+        if node.name in lines:
+            return (
+                f"{path}: expected one conjecture of each name, got {node.name!r} at lines {lines[node.name]} and {node.lineno}; "
+                "rename one of them"
+            )
+        lines[node.name] = node.lineno
+    return ""
 
 
 def _name_in(module: ModuleType, conjecture: Conjecture) -> str:

@@ -3,7 +3,7 @@
 Joining is commutative, associative and idempotent, so that records can be merged in any order, and in pieces.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from decimal import Context, Decimal, localcontext
 from functools import lru_cache, partial
@@ -14,7 +14,10 @@ from conjcheck.errors import RecordError
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 
-__all__ = ["Counterexample", "Covered", "Sample", "failure_bound", "own_version"]
+__all__ = ["FEWEST_ROWS", "Counterexample", "Covered", "Sample", "failure_bound", "own_version", "refuting"]
+
+FEWEST_ROWS = 20
+"""Of fewer rows drawn at random no bound on the failures is stated."""
 
 _THREE_DIGITS = 100
 _MOST_FAILING = 10_000
@@ -30,6 +33,7 @@ class Counterexample:
         minimal: whether all smaller cases were compared when it was recorded.
         certificate: the name of a file beside the record that proves the oracle's value; ``None`` for none.
         instead: what stands in place of a certificate, in words; ``None`` for nothing.
+        rule_hash: the hash of the rule that it refuted, see ``evidence.source``; ``None`` if not known.
     """
 
     where: Case | Row
@@ -38,6 +42,7 @@ class Counterexample:
     minimal: bool
     certificate: str | None = None
     instead: str | None = None
+    rule_hash: str | None = None
 
     @property
     def key(self) -> str:
@@ -53,8 +58,13 @@ class Counterexample:
         """One entry from two at the same place: what one of them does not know is filled in from the other.
 
         Raises:
-            RecordError: two different values.
+            RecordError: two different values, or two versions of the rule.
         """
+        if None not in (self.rule_hash, other.rule_hash) and self.rule_hash != other.rule_hash:
+            raise RecordError(
+                f"expected one version of the rule at counterexample {self.where}, got {self.rule_hash} and {other.rule_hash}; "
+                "record the rule as it stands anew on both sides, with pytest --conjcheck-record or conjcheck survey"
+            )
         values = []
         for name in ("rule", "oracle"):
             mine, its = getattr(self, name), getattr(other, name)
@@ -66,7 +76,8 @@ class Counterexample:
             values.append(its if mine is None else mine)
         certificate = min(filter(None, (self.certificate, other.certificate)), default=None)
         instead = None if certificate else min(filter(None, (self.instead, other.instead)), default=None)
-        return Counterexample(self.where, values[0], values[1], self.minimal or other.minimal, certificate, instead)
+        minimal, version = self.minimal or other.minimal, self.rule_hash or other.rule_hash
+        return Counterexample(self.where, values[0], values[1], minimal, certificate, instead, version)
 
     def as_json(self) -> dict[str, Any]:
         """The entry in the file."""
@@ -77,7 +88,20 @@ class Counterexample:
             "minimal": self.minimal,
             "certificate": self.certificate,
             "instead": self.instead,
+            "rule_hash": self.rule_hash,
         }
+
+
+def refuting(known: Sequence[Counterexample], recorded: str | None, rule: str | None) -> list[Counterexample]:
+    """Those of the counterexamples of a record that refute one version of the rule, and not an earlier one.
+
+    Args:
+        known: the counterexamples.
+        recorded: the hash of the rule in the record; where it names none, a counterexample that names none is believed.
+        rule: the hash of the version asked about; ``None`` for that of the record.
+    """
+    version = recorded if rule is None else rule
+    return [c for c in known if version is None or c.rule_hash == version or (recorded is None and c.rule_hash is None)]
 
 
 @dataclass(frozen=True, slots=True)
@@ -173,6 +197,11 @@ class Sample:
     @property
     def bound(self) -> str:
         """What the sample says about all rows, in words; see :func:`failure_bound`."""
+        return "too few rows for a bound on the failures" if self.rows < FEWEST_ROWS else self.share
+
+    @property
+    def share(self) -> str:
+        """The bound of a sample of any size, in words."""
         share = failure_bound(self.rows, self.failing)
         return f"at 95 % the share of failing rows inside the premise, weighted as drawn, is at most {share}"
 

@@ -17,7 +17,7 @@ VERSION = 1
 RINGS = ("", "quantum", "classical", "equivariant quantum", "equivariant")
 
 _NEEDED = {"format", "version", "conjecture", "status", "counterexamples"}
-_KEYS = _NEEDED | {"statement", "ring", "premise", "rule", "coverage", "samples"}
+_KEYS = _NEEDED | {"file", "statement", "ring", "premise", "rule", "coverage", "samples"}
 _HASH = re.compile(r"sha256:[0-9a-f]{64}")
 _FILE_NAME = re.compile(r"[^/\\\0.][^/\\\0]*")
 
@@ -34,7 +34,10 @@ def contents(data: object) -> dict[str, Any]:
         RecordError: it is no record; the message names the entry, but not the file.
     """
     if not isinstance(data, dict) or data.get("format") != FORMAT:
-        raise RecordError(f'expected an object with "format": "{FORMAT}"; this is not a record')
+        what = "this is a certificate, not a record" if _format(data) == "conjcheck-certificate" else "this is not a record"
+        raise RecordError(
+            f'expected an object with "format": "{FORMAT}"; {what}, which is a file such as conjectures/records/NAME.json'
+        )
     if type(data.get("version")) is not int or data["version"] != VERSION:
         raise RecordError(f"expected version {VERSION}, got {data.get('version')!r}; use the conjcheck that wrote it")
     _known_keys(data, _KEYS, "the record")
@@ -45,6 +48,9 @@ def contents(data: object) -> dict[str, Any]:
     rule, statement = data.get("rule"), data.get("statement", "")
     if rule is not None and not (isinstance(rule, str) and _HASH.fullmatch(rule)):
         raise RecordError(f'expected null, or "sha256:" and 64 hexadecimal digits, under "rule", got {rule!r}')
+    file = data.get("file")
+    if file is not None and not (isinstance(file, str) and _FILE_NAME.fullmatch(file)):
+        raise RecordError(f'expected null or the name of the plug-in file under "file", got {file!r}')
     if not isinstance(statement, str):
         raise RecordError(f'expected a text under "statement", got {statement!r}')
     if data.get("ring", "") not in RINGS:
@@ -54,6 +60,7 @@ def contents(data: object) -> dict[str, Any]:
     found = {
         "conjecture": data["conjecture"],
         "status": data["status"],
+        "file": file,
         "statement": statement,
         "ring": data.get("ring", ""),
         "premise": data.get("premise"),
@@ -67,6 +74,10 @@ def contents(data: object) -> dict[str, Any]:
     if rule is None and (found["coverage"] or found["samples"]):
         raise RecordError('expected the hash of the rule under "rule", since there is coverage or a sample, got none')
     return found
+
+
+def _format(data: object) -> object:
+    return data.get("format") if isinstance(data, dict) else None
 
 
 def _entries(data: object, key: str, name: str, read: Callable[[Any, str], Any]) -> tuple[Any, ...]:
@@ -85,7 +96,10 @@ def _known_keys(data: dict[str, Any], known: set[str], what: str) -> None:
 def _counterexample(entry: Any, what: str) -> Counterexample:
     if not isinstance(entry, dict) or not isinstance(entry.get("where"), str):
         raise RecordError(f'expected an object with a text under "where" as {what}, got {entry!r}')
-    _known_keys(entry, {"where", "rule", "oracle", "minimal", "certificate", "instead"}, what)
+    _known_keys(entry, {"where", "rule", "oracle", "minimal", "certificate", "instead", "rule_hash"}, what)
+    version = entry.get("rule_hash")
+    if version is not None and not (isinstance(version, str) and _HASH.fullmatch(version)):
+        raise RecordError(f'expected null, or "sha256:" and 64 hexadecimal digits, under "rule_hash" of {what}, got {version!r}')
     for key in ("rule", "oracle"):
         value = entry.get(key)
         if value is not None and not isinstance(value, str) and (type(value) is not int or value < 0):
@@ -107,7 +121,8 @@ def _counterexample(entry: Any, what: str) -> Counterexample:
         where = parse_place(entry["where"])
     except ConjcheckError as error:
         raise RecordError(f"{what}: {error}") from None
-    return Counterexample(where, entry.get("rule"), entry.get("oracle"), entry.get("minimal", False), certificate, instead)
+    values = entry.get("rule"), entry.get("oracle")
+    return Counterexample(where, *values, entry.get("minimal", False), certificate, instead, version)
 
 
 def _covered(entry: Any, what: str) -> Covered:
@@ -138,7 +153,7 @@ def _sample(entry: Any, what: str) -> Sample:
     _at_most(entry, "rows", "cases", what)
     if cases and not rows:
         raise RecordError(f'expected no "cases" without "rows" in {what}, got {cases}')
-    if entry.get("bound") != sample.bound:
+    if entry.get("bound") not in (sample.bound, sample.share):  # the share was once stated of few rows, too
         raise RecordError(
             f'expected {sample.bound!r} under "bound" of {what}, which follows from "rows" and "failing", got {entry.get("bound")!r}'
         )

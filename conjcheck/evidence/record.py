@@ -8,16 +8,18 @@ record is believed: a recorded counterexample is computed again, by the rule and
 import json
 import os
 import shutil
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any, TypeVar
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import RecordError
-from conjcheck.evidence.entries import Counterexample, Covered, Sample
+from conjcheck.evidence.entries import Counterexample, Covered, Sample, refuting
 from conjcheck.evidence.reading import FORMAT, VERSION, contents, parse_place
 from conjcheck.evidence.source import rule_hash
+from conjcheck.wording import counted
 
 __all__ = [
     "Counterexample",
@@ -25,6 +27,7 @@ __all__ = [
     "Record",
     "Sample",
     "current_record",
+    "hold_to_file",
     "merge",
     "parse_place",
     "read_record",
@@ -47,12 +50,13 @@ class Record:
     Attributes:
         conjecture: its name.
         status: ``"open"`` or ``"refuted"``.
-        counterexamples: the known ones; they are computed again at every run, whatever the rule.
+        counterexamples: the known ones, each with the version of the rule that it refuted; they are computed again at every run.
         statement, ring: as declared, the statement in LaTeX; empty if not known.
         premise: whether the conjecture has a premise, so that only rows and cases inside it count; ``None`` if not known.
         rule: the hash of the rule that coverage and samples speak about, see ``evidence.source``; ``None`` if there are none.
         coverage: how far spaces were compared in order, one entry per space.
         samples: rows drawn at random.
+        file: the name of the plug-in file; ``None`` if not known.
 
     Raises:
         RecordError: entries that contradict each other; the message names them.
@@ -67,6 +71,7 @@ class Record:
     rule: str | None = None
     coverage: tuple[Covered, ...] = ()
     samples: tuple[Sample, ...] = ()
+    file: str | None = None
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "counterexamples", _in_order(self.counterexamples))
@@ -92,7 +97,7 @@ class Record:
         others = []
         for known in self.counterexamples:
             if known.key == found.key:
-                same = (known.rule, known.oracle) == (found.rule, found.oracle)
+                same = (known.rule, known.oracle, known.rule_hash) == (found.rule, found.oracle, found.rule_hash)
                 if same and found.certificate is None and found.instead is None:
                     found = replace(found, certificate=known.certificate, instead=known.instead)
             elif known.minimal and known.where.sort_key > found.where.sort_key:
@@ -124,6 +129,10 @@ class Record:
         """Whether it holds coverage or samples of another version of the rule."""
         return bool(self.coverage or self.samples) and self.rule != rule
 
+    def refuting(self, rule: str | None = None) -> list[Counterexample]:
+        """The counterexamples to one version of the rule, if the status is refuted; without a hash to that on record."""
+        return refuting(self.counterexamples, self.rule, rule) if self.status == "refuted" else []
+
     def renewed(self, rule: str) -> "Record":
         """The record of this version of the rule: coverage and samples of another one are dropped, counterexamples stay."""
         return self if self.rule == rule else replace(self, rule=rule, coverage=(), samples=())
@@ -145,17 +154,13 @@ def stale_words(record: Record, rule: str) -> str:
     parts = []
     if record.coverage:
         parts.append(
-            f"coverage of {_counted(len(record.coverage), 'space')}, {_counted(sum(c.rows for c in record.coverage), 'row')}"
+            f"coverage of {counted(len(record.coverage), 'space')}, {counted(sum(c.rows for c in record.coverage), 'row')}"
         )
     if record.samples:
-        parts.append(f"{_counted(len(record.samples), 'sample')}, {_counted(sum(s.rows for s in record.samples), 'row')}")
+        parts.append(f"{counted(len(record.samples), 'sample')}, {counted(sum(s.rows for s in record.samples), 'row')}")
     many = len(parts) > 1 or (not record.coverage and len(record.samples) > 1)
     was, counts = ("were", "count") if many else ("was", "counts")
     return f"{', and '.join(parts)}, {was} computed for another version of the rule and {counts} no more"
-
-
-def _counted(count: int, what: str) -> str:
-    return f"{count:,} {what}{'' if count == 1 else 's'}"
 
 
 def merge(first: Record, second: Record) -> Record:
@@ -187,6 +192,7 @@ def merge(first: Record, second: Record) -> Record:
         statement=one("statement", "statement"),
         ring=one("ring", "ring"),
         premise=one("answer to whether there is a premise", "premise"),
+        file=one("plug-in file", "file"),
         rule=one("hash of the rule", "rule"),
         coverage=first.coverage + second.coverage,
         samples=first.samples + second.samples,
@@ -201,7 +207,7 @@ def record_path(conjecture: Conjecture) -> Path:
 def record_text(record: Record) -> str:
     """The text of the file: sorted, one line per space and sample, a block of lines per counterexample; the same for the same record."""
     head: dict[str, Any] = {"format": FORMAT, "version": VERSION, "conjecture": record.conjecture, "status": record.status}
-    head |= {key: getattr(record, key) for key in ("statement", "ring", "premise", "rule")}
+    head |= {key: getattr(record, key) for key in ("file", "statement", "ring", "premise", "rule")}
     lines = [f'  "{key}": {_json(value)}' for key, value in head.items()]
     for key, entries in (("coverage", record.coverage), ("samples", record.samples)):
         body = ",\n".join(f"    {_json(entry.as_json())}" for entry in entries)
@@ -219,7 +225,7 @@ def read_record(conjecture: Conjecture) -> Record:
     """The record of a conjecture; an empty, open one if there is no file.
 
     Raises:
-        RecordError: the file is no record of this conjecture; the message names the file and the entry.
+        RecordError: the file is no record of this conjecture, but, say, of one in another file; the message names the file and the entry.
     """
     path = record_path(conjecture)
     if not path.exists() and not path.is_symlink():
@@ -227,7 +233,21 @@ def read_record(conjecture: Conjecture) -> Record:
     record = read_record_file(path)
     if record.conjecture != conjecture.name:
         raise RecordError(f"{path}: expected the record of {conjecture.name!r}, got that of {record.conjecture!r}")
+    hold_to_file(path, record.file, Path(conjecture.file).name, conjecture.name)
     return record
+
+
+def hold_to_file(path: str | Path, recorded: str | None, file: str | None, name: str) -> None:
+    """Two conjectures of one name in two files of a folder would share one record: refuse that.
+
+    Raises:
+        RecordError: the file that the record at ``path`` names is not that of the conjecture; ``None`` is any.
+    """
+    if None not in (recorded, file) and recorded != file:
+        raise RecordError(
+            f"{path}: expected the record of {name} in {file}, got that of {name} in {recorded}; one folder keeps one record for a name: "
+            f'rename one of the two functions, or, if {recorded} itself was renamed, write "{file}" under "file" in the record'
+        )
 
 
 def current_record(conjecture: Conjecture) -> Record:
@@ -241,6 +261,7 @@ def current_record(conjecture: Conjecture) -> Record:
         statement=conjecture.statement,
         ring=conjecture.ring,
         premise=conjecture.premise is not None,
+        file=Path(conjecture.file).name,
     )
     return record.renewed(rule_hash(conjecture.file))
 
@@ -258,7 +279,13 @@ def read_record_file(path: str | Path) -> Record:
     except RecordError as error:
         raise RecordError(f"{path}: {error}") from None
     except (ValueError, RecursionError) as error:
-        raise RecordError(f"{path}: expected JSON in UTF-8, got {error}; restore the file or delete it") from None
+        if Path(path).suffix != ".json":
+            raise RecordError(
+                f"{path}: expected a record such as conjectures/records/NAME.json, got a file of another kind"
+            ) from None
+        raise RecordError(
+            f"{path}: expected JSON in UTF-8, got {error}; restore the file, or move it away and record anew with --conjcheck-record"
+        ) from None
     try:
         return Record(**contents(data))
     except RecordError as error:
@@ -286,33 +313,48 @@ def write_record(conjecture: Conjecture, record: Record) -> Path:
         RecordError: see :func:`write_record_file`.
     """
     path = record_path(conjecture)
-    path.parent.mkdir(exist_ok=True)
+    with _writing(path):
+        path.parent.mkdir(exist_ok=True)
     write_record_file(path, record)
     return path
+
+
+@contextmanager
+def _writing(path: str | Path) -> Iterator[None]:
+    """What the system refuses is told as an error of the record."""
+    try:
+        yield
+    except OSError as error:
+        raise RecordError(f"{path}: expected a file that can be written, got {error}; nothing was recorded") from error
 
 
 def write_record_file(path: str | Path, record: Record) -> None:
     """Write a record in one step: whoever reads the file meanwhile sees the old text or the new one, never a part.
 
     Raises:
-        RecordError: what is there is no record of the same conjecture, or the record would not be read back; nothing is written.
+        RecordError: what is there is no record of the same conjecture, or the record would not be read back, or the folder or the disk
+            takes nothing; nothing is written.
     """
     place = Path(os.path.realpath(path))
     if place.exists():
         try:
-            known = read_record_file(place).conjecture
+            there = read_record_file(place)
         except RecordError as error:
             raise RecordError(f"{error}; nothing was written, lest something is lost") from None
-        if known != record.conjecture:
-            raise RecordError(f"{path}: expected the record of {record.conjecture!r} to write over, got that of {known!r}")
+        if there.conjecture != record.conjecture:
+            raise RecordError(
+                f"{path}: expected the record of {record.conjecture!r} to write over, got that of {there.conjecture!r}"
+            )
+        hold_to_file(path, there.file, record.file, record.conjecture)
     text = record_text(record)
     if (again := Record(**contents(json.loads(text)))) != record:
         raise RecordError(f"{path}: expected a record that is read back as it is, got {record}, which becomes {again}")
     draft = place.with_name(f".{place.name}.{os.getpid()}")
-    try:
-        draft.write_text(text, encoding="utf-8", newline="\n")
-        if place.exists():
-            shutil.copymode(place, draft)
-        draft.replace(place)
-    finally:
-        draft.unlink(missing_ok=True)
+    with _writing(path):
+        try:
+            draft.write_text(text, encoding="utf-8", newline="\n")
+            if place.exists():
+                shutil.copymode(place, draft)
+            draft.replace(place)
+        finally:
+            draft.unlink(missing_ok=True)

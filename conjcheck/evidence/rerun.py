@@ -1,10 +1,11 @@
-"""Ask one rule at one case again: ``python -m conjcheck.evidence.rerun FILE::NAME CASE``, used by the stand-alone checker.
+"""Ask one rule at one case again, in a fresh process: ``python -m conjcheck.evidence.rerun FILE::NAME CASE``.
 
 A process of its own, because a rule is somebody's code: it must not run where a certificate is judged. The last line of the output is
 one JSON object: ``name``, ``hash`` of the rule's file, ``status``, and ``rule``, the value (``null`` for a claim).
 """
 
 import json
+import subprocess
 import sys
 from pathlib import Path
 from typing import Any
@@ -15,7 +16,7 @@ from conjcheck.evidence.source import rule_hash
 from conjcheck.geometry.case import Case
 from conjcheck.testing.compare import Comparer
 
-__all__ = ["ask_again"]
+__all__ = ["ask_afresh", "ask_again"]
 
 
 def ask_again(target: str, text: str) -> dict[str, Any]:
@@ -46,6 +47,17 @@ def ask_again(target: str, text: str) -> dict[str, Any]:
         "status": status,
         "rule": value if value is None or isinstance(value, int) else str(value),
     }
+
+
+def ask_afresh(target: str, case: Case, *, seconds: float = 60.0) -> dict[str, Any] | None:
+    """What the rule at ``FILE::NAME`` says at a case when that is the first thing it is asked; ``None`` if it cannot be asked so."""
+    command = [sys.executable, "-m", "conjcheck.evidence.rerun", target, str(case)]
+    try:
+        done = subprocess.run(command, capture_output=True, text=True, timeout=seconds, check=False)  # noqa: S603  # ourselves
+        answer = json.loads(done.stdout.splitlines()[-1]) if not done.returncode else None
+    except (OSError, ValueError, LookupError, subprocess.TimeoutExpired):
+        return None
+    return answer if isinstance(answer, dict) and {"status", "rule"} <= set(answer) else None
 
 
 if __name__ == "__main__":

@@ -7,6 +7,7 @@ Printed: ``Gr(2,4)``, ``Fl(4)``, ``Fl(1,3;4)`` in type A; ``Q^5`` (quadric in P^
 """
 
 import re
+from difflib import get_close_matches
 from functools import lru_cache
 
 from conjcheck.errors import NotationError
@@ -86,6 +87,7 @@ _NAMES = re.compile(
     | (?P<letter>[A-G])(?P<rank>\d+)/(?P<parabolic>B|P\d+(,\d+)*)""",
     re.VERBOSE,
 )
+_WORDS = {"fl": "Fl", "gr": "Gr", "lg": "LG", "ig": "IG", "og": "OG", "p": "P", "q": "Q"}
 _FORMS = {"LG": lagrangian, "IG": symplectic, "OG": orthogonal}
 
 
@@ -96,7 +98,7 @@ def parse_name(name: str) -> Parabolic:
     if not found:
         raise NotationError(
             "expected a flag variety such as 'Fl(1,3;4)', 'Gr(2,4)', 'Fl(4)', 'P^3', 'LG(3,6)', 'IG(2,6)', 'OG(3,7)', 'Q^5' or "
-            f"'A3/P1,3', got {name!r}"
+            f"'A3/P1,3', got {name!r}{_meant(name)}"
         )
     if found["complete"]:
         n = int(found["complete"])
@@ -119,6 +121,16 @@ def parse_name(name: str) -> Parabolic:
         if not before < node <= kind.rank:
             raise NotationError(f"expected rising nodes between 1 and {kind.rank}, got node {node} in {name!r}")
     return kind, marked
+
+
+def _meant(name: object) -> str:
+    """A question with a name that can be read and differs little, e.g. only in small letters; empty if there is none."""
+    text = "".join(name.split()) if isinstance(name, str) else ""
+    word = re.match("[A-Za-z]*", text)
+    head = word[0] if word else ""
+    close = get_close_matches(head.lower(), _WORDS, n=1)
+    tries = [f"{_WORDS[close[0]]}{text[len(head) :]}"] if close else []
+    return next((f"; did you mean {guess}?" for guess in (*tries, text.upper()) if _NAMES.fullmatch(guess)), "")
 
 
 def name_of(kind: CartanType, marked: tuple[int, ...]) -> str:

@@ -16,11 +16,11 @@ from time import perf_counter
 import numpy as np
 
 from conjcheck.geometry.cartan import automorphisms, cominuscule_nodes
-from conjcheck.geometry.case import Case
+from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import Degree, FlagVariety, orbit_of
 from conjcheck.geometry.weyl import Ints, dual_indices, orbit, reflected_by_word, weight_drops
 
-__all__ = ["Seidel", "count_orbits", "diagram_images", "orbit_of_case", "seidel"]
+__all__ = ["Seidel", "count_orbits", "count_row_orbits", "diagram_images", "orbit_of_case", "seidel"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -113,6 +113,36 @@ def count_orbits(cases: Iterable[Case], *, seidel_too: bool = True, deadline: fl
         start, X = next(iter(left.items()))
         orbits += 1
         for member in _orbit(X, start, seidel_too=seidel_too):
+            left.pop(member, None)
+    return orbits, True
+
+
+def count_row_orbits(
+    rows: Iterable[Row], *, seidel_too: bool = True, diagrams_too: bool = True, deadline: float = float("inf")
+) -> tuple[int, bool]:
+    """The number of orbits that rows of one variety lie in, and whether all were sorted before the ``perf_counter()`` deadline.
+
+    What acts on products: swapping u and v; automorphisms that fix X; Seidel elements on u and on v, which only move the classes and
+    shift the degrees of a product. Leave these out with ``seidel_too=False`` in a classical ring, automorphisms with
+    ``diagrams_too=False`` where they do not fix the coefficients.
+    """
+    left = {(row.u.index, row.v.index): row.X for row in rows}
+    orbits = 0
+    while left:
+        if perf_counter() > deadline:
+            return orbits + 1, False
+        start, X = next(iter(left.items()))
+        orbits += 1
+        images = [f for Y, f, _ in diagram_images(X) if Y is X] if diagrams_too else []
+        moves = list(seidel(X).images[1:]) if seidel_too else []
+        todo, seen = [start], {start}
+        while todo:
+            u, v = todo.pop()
+            near = [(v, u), *((int(f[u]), int(f[v])) for f in images), *((int(g[u]), v) for g in moves)]
+            fresh = set(near) - seen
+            seen |= fresh
+            todo.extend(fresh)
+        for member in seen:
             left.pop(member, None)
     return orbits, True
 

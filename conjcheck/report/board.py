@@ -17,12 +17,13 @@ from urllib.parse import quote
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.conjecture.discover import conjectures_in_file
 from conjcheck.errors import ConjcheckError, RecordError
-from conjcheck.evidence.record import Record, read_record_file, record_path, stale_words
+from conjcheck.evidence.record import Record, read_record, read_record_file, record_path, stale_words
 from conjcheck.evidence.source import rule_hash
-from conjcheck.report.document import WORDS, scope_of_spaces, visible
+from conjcheck.report.document import WORDS, earlier_words, scope_of_spaces, visible
 from conjcheck.report.html import SIGNS, rendered
 from conjcheck.report.pages import documents_of, now, page_name, write_pages
 from conjcheck.testing.limits import CallInterrupted, CallLimit
+from conjcheck.wording import counted
 
 __all__ = ["board_of_documents", "board_of_folder", "board_page", "board_table", "plugin_files", "write_run"]
 
@@ -62,7 +63,10 @@ def board_of_folder(folder: Path, *, beside: Path) -> list[dict[str, Any]]:
             continue
         for conjecture in found:
             known.add(record_path(conjecture).resolve())
-            rows.append(_conjecture_row(conjecture, shown, beside))
+            try:
+                rows.append(_conjecture_row(conjecture, shown, beside))
+            except ConjcheckError as error:  # a file that the rule needs cannot be read, say
+                rows.append(_row(conjecture.name, shown, "broken", scope=str(error)))
     records = [path for path in sorted(folder.rglob("records/*.json")) if not path.name.endswith(".certificate.json")]
     orphans = [path for path in records if path.resolve() not in known]
     return rows + [_orphan(path, path.relative_to(folder).as_posix(), beside) for path in orphans]
@@ -98,50 +102,63 @@ def board_of_documents(documents: Sequence[Mapping[str, Any]], pages: Sequence[P
 
 
 def _row(name: str, file: str, status: str, **given: str) -> dict[str, Any]:
-    row = {"scope": "", "note": "", "counterexample": "", "date": "", "stale": "", "link": ""} | given
+    row = {"scope": "", "note": "", "source": "", "counterexample": "", "date": "", "stale": "", "link": ""} | given
     row |= {"name": name, "file": file, "status": status, "word": WORDS.get(status, status), "sign": SIGNS.get(status, "!")}
     row["link"] = quote(row["link"])
     return {key: visible(value if len(value) <= _LONGEST else f"{value[:_LONGEST]} ...") for key, value in row.items()}
 
 
 def _conjecture_row(conjecture: Conjecture, shown: str, beside: Path) -> dict[str, Any]:
-    """A conjecture: from its record, and from the document of its last run where one lies beside the board."""
+    """A conjecture: the newest evidence about the rule as it stands, from its record or from the document of its last run.
+
+    What its record refutes stays refuted, whatever a run said.
+    """
     path, current = record_path(conjecture), rule_hash(conjecture.file)
     record, date, problem = None, "", ""
     if path.exists() or path.is_symlink():
-        try:
-            record = read_record_file(path)
-            if record.conjecture != conjecture.name:
-                raise RecordError(f"{path.name}: expected the record of {conjecture.name!r}, got that of {record.conjecture!r}")
-        except RecordError as error:
-            record, problem = None, str(error).replace(f"{path.parent}/", "")
         date = _date(path)
+        try:
+            record = read_record(conjecture)
+        except RecordError as error:
+            problem = str(error).replace(f"{path.parent}/", "")
     document, link = _last_run(conjecture, shown, beside)
     if problem:
         return _row(conjecture.name, shown, "unreadable", scope=problem, date=date, link=link)
     row = _of_record(record, current) if record else {"status": "open", "scope": "nothing on record"}
-    if document:
-        same = document.get("rule") == current
-        if row["status"] == "open" and same:
-            where = (document["failure"] or {}).get("where", "")
-            row |= {"status": document["status"], "scope": document["scope"], "counterexample": where}
-        elif same and record and not record.coverage:
-            row["scope"] = document["scope"]
-        elif not same and not row.get("stale"):
-            row["stale"] = "the page is about another version of the rule"
-        date = max(date, document["made"])
+    same = document is not None and document.get("rule") == current and document["status"] != "no verdict"
+    if (
+        document
+        and same
+        and row["status"] != "refuted"
+        and (not record or document["made"] >= date or not _is_about(record, current))
+    ):
+        where = (document["failure"] or {}).get("where", "")
+        row |= {"status": document["status"], "scope": document["scope"], "counterexample": where}
+        row |= {"source": "from its last run", "stale": ""}
+        date = document["made"]
+    elif document and not same and not row.get("stale"):
+        row["stale"] = "the page is about another version of the rule" if document.get("rule") != current else ""
     return _row(conjecture.name, shown, row.pop("status"), **row, date=date, link=link)
 
 
+def _is_about(record: Record, current: str) -> bool:
+    """Whether a record says something about one version of the rule."""
+    return bool(record.refuting(current)) or (record.rule == current and bool(record.coverage or record.samples))
+
+
 def _of_record(record: Record, current: str | None) -> dict[str, str]:
+    """A record, about one version of the rule if that is known, or about its own."""
     scope = scope_of_spaces(covered.as_json() for covered in record.coverage)
     sampled = sum(sample.rows for sample in record.samples)
     words = [scope] if scope else []
-    words += [f"{sampled:,} rows drawn at random"] if sampled else []
+    words += [f"{counted(sampled, 'row')} drawn at random"] if sampled else []
+    wrong_now = record.refuting(current)
     return {
-        "status": record.status,
+        "status": "refuted" if wrong_now else "open",
         "scope": "; ".join(words) or "nothing on record about what was compared",
-        "counterexample": str(record.counterexamples[0].where) if record.counterexamples else "",
+        "note": earlier_words([known for known in record.counterexamples if known not in wrong_now]),
+        "source": "from its record",
+        "counterexample": str(wrong_now[0].where) if wrong_now else "",
         "stale": stale_words(record, current) if current else "",
     }
 
@@ -155,8 +172,10 @@ def _orphan(path: Path, shown: str, beside: Path) -> dict[str, Any]:
     except RecordError as error:
         return _row(path.stem, shown, "unreadable", scope=str(error).replace(f"{path.parent}/", ""), date=_date(path), link=link)
     row = _of_record(record, None)
-    note = "a record without a conjecture of its name in a plug-in that can be imported"
-    return _row(record.conjecture, shown, row.pop("status"), **row, note=note, date=_date(path), link=link)
+    row["note"] = "; ".join(
+        filter(None, ["a record without a conjecture of its name in a plug-in that can be imported", row["note"]])
+    )
+    return _row(record.conjecture, shown, row.pop("status"), **row, date=_date(path), link=link)
 
 
 def _last_run(conjecture: Conjecture, shown: str, beside: Path) -> tuple[dict[str, Any] | None, str]:
@@ -182,9 +201,9 @@ def _document(path: Path, name: str) -> dict[str, Any] | None:
 
 
 def _date(path: Path) -> str:
-    """The day on which a file was written last, as far as the file system knows."""
+    """When a file was written last, as far as the file system knows, in words that sort."""
     try:
-        return f"{datetime.fromtimestamp(path.stat().st_mtime, UTC):%Y-%m-%d}"
+        return f"{datetime.fromtimestamp(path.stat().st_mtime, UTC):%Y-%m-%d %H:%M} UTC"
     except OSError:
         return ""
 
@@ -211,8 +230,15 @@ def _last_line(text: str) -> str:
 # -- the two outputs -------------------------------------------------------------------------------------------------------
 
 
-def board_page(rows: Sequence[Mapping[str, Any]], title: str) -> str:
-    """The board as one HTML file; sorting and filtering need its script, reading does not."""
+def board_page(rows: Sequence[Mapping[str, Any]], title: str, *, base: str = "") -> str:
+    """The board as one HTML file; sorting and filtering need its script, reading does not.
+
+    Args:
+        rows: the rows.
+        title: of the page.
+        base: the way from the page to the folder of the pages that it links to, ``/`` at its end.
+    """
+    rows = [{**row, "link": f"{quote(base)}{row['link']}" if row["link"] else ""} for row in rows]
     statuses = [(status, WORDS.get(status, status)) for status in dict.fromkeys(row["status"] for row in rows)]
     view = {"title": visible(title), "rows": rows, "statuses": statuses, "summary": _summary(rows), "made": ""}
     return rendered("board.html", view, script=_script())
@@ -229,7 +255,7 @@ def _summary(rows: Sequence[Mapping[str, Any]]) -> str:
     """``22 conjectures: 16 open, 6 refuted``."""
     counts = Counter(row["status"] for row in rows)
     parts = ", ".join(f"{count} {status}" for status, count in sorted(counts.items()))
-    return f"{len(rows)} {'conjecture' if len(rows) == 1 else 'conjectures'}{f': {parts}' if parts else ''}"
+    return f"{counted(len(rows), 'conjecture')}{f': {parts}' if parts else ''}"
 
 
 def board_table(rows: Sequence[Mapping[str, Any]], *, base: str = "") -> str:
@@ -245,7 +271,9 @@ def board_table(rows: Sequence[Mapping[str, Any]], *, base: str = "") -> str:
         if row["link"]:
             name = f"[{name}]({quote(base)}{row['link']})"
         status = _plain(row["word"]) + (" (stale)" if row["stale"] else "")
-        cells = [name, status, _plain(row["scope"]), _code(row["counterexample"]), _plain(row["date"])]
+        scope = f"{row['scope']} ({row['source']})" if row["source"] else row["scope"]
+        scope = f"{scope}; {row['note']}" if row["source"] and row["note"] else scope
+        cells = [name, status, _plain(scope), _code(row["counterexample"]), _plain(row["date"][:10])]
         lines.append(f"| {' | '.join(cells)} |")
     return "\n".join(lines) + "\n"
 

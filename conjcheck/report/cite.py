@@ -4,7 +4,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from typing import Protocol
 
-from conjcheck.evidence.entries import Counterexample, Covered, Sample, failure_bound, own_version
+from conjcheck.evidence.entries import FEWEST_ROWS, Counterexample, Covered, Sample, failure_bound, own_version, refuting
 from conjcheck.evidence.record import Record
 from conjcheck.geometry.case import Case
 from conjcheck.geometry.flag_variety import FlagVariety
@@ -115,7 +115,6 @@ _RINGS = {
     "equivariant quantum": ("the structure constants of the equivariant quantum cohomology ring", "QH*_T(X)", "QH^*_T(X)"),
     "equivariant": ("the structure constants of the equivariant cohomology ring", "H*_T(X)", "H^*_T(X)"),
 }
-_FEWEST_ROWS = 20
 
 
 def citation(record: Record, style: Style = PLAIN) -> str:
@@ -130,16 +129,14 @@ def citation(record: Record, style: Style = PLAIN) -> str:
     sentences += [_failing(c, style) for c in wrong]
     sentences += [_sample(s, record, style) for s in record.samples]
     name = style.name(record.conjecture)
+    wrong_now = refuting(record.counterexamples, record.rule, None)
     if record.status == "refuted":
-        heads = [
-            f"The conjecture {name} is false" if not sentences else "It is false",
-            *["It is also false"] * len(record.counterexamples),
-        ]
-        sentences += [_counterexample(head, c, style) for head, c in zip(heads, record.counterexamples, strict=False)]
-    elif record.counterexamples:
-        sentences.append(
-            f"The record calls {name} open, although it holds {_number(len(record.counterexamples), 'counterexample')}."
-        )
+        heads = [f"The conjecture {name} is false" if not sentences else "It is false", *["It is also false"] * len(wrong_now)]
+        sentences += [_counterexample(head, c, style) for head, c in zip(heads, wrong_now, strict=False)]
+    elif wrong_now:
+        sentences.append(f"The record calls {name} open, although it holds {_number(len(wrong_now), 'counterexample')}.")
+    called = f" {name}" if not sentences else ""
+    sentences += [_earlier(c, called, style) for c in record.counterexamples if c not in wrong_now]
     if not sentences:
         return f"Nothing is on record as compared for the conjecture {name}."
     if record.coverage or record.samples:
@@ -192,7 +189,7 @@ def _sample(sample: Sample, record: Record, style: Style) -> str:
     what = f"{_number(sample.rows, 'product')}{inside} drawn at random ({style.text(sample.how)}; seed {sample.seed})"
     verdict = "none of them wrong" if not sample.failing else f"{sample.failing:,} of them wrong"
     drawn = f"On {style.space(sample.X)}, {what} were compared: {_number(sample.cases, 'case')}, {verdict}"
-    if sample.rows < _FEWEST_ROWS:
+    if sample.rows < FEWEST_ROWS:
         return f"{drawn}; too few for a bound on the failures."
     share, level = failure_bound(sample.rows, sample.failing), style.text("95 %")
     return f"{drawn}; at confidence {level} the share of such products that fail, weighted as they are drawn, is at most {share}."
@@ -212,6 +209,16 @@ def _counterexample(head: str, found: Counterexample, style: Style) -> str:
     if found.instead:
         proof = f"; {style.text(found.instead)}"
     return f"{head}: {place} {words}{minimal}{proof}."
+
+
+def _earlier(found: Counterexample, called: str, style: Style) -> str:
+    """A counterexample that says nothing about the version of the rule on record."""
+    if found.rule_hash is None:
+        return f"A version of the rule{called} that the record does not name was refuted {style.place(found)}."
+    short = style.name(found.rule_hash.removeprefix("sha256:")[:12])
+    return (
+        f"An earlier version of the rule{called} was refuted {style.place(found)}; the SHA-256 of that version begins with {short}."
+    )
 
 
 def _cases(record: Record) -> str:

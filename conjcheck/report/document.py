@@ -11,9 +11,21 @@ from pathlib import PurePath
 from typing import Any
 
 from conjcheck.errors import RecordError
+from conjcheck.evidence.entries import Counterexample, refuting
 from conjcheck.evidence.reading import FORMAT, contents
+from conjcheck.wording import counted
 
-__all__ = ["WORDS", "document_of_outcomes", "document_of_record", "is_outcome", "scope_of_spaces", "unreadable", "visible"]
+__all__ = [
+    "WORDS",
+    "document_of_outcomes",
+    "document_of_record",
+    "earlier_words",
+    "is_outcome",
+    "scope_of_spaces",
+    "unreadable",
+    "verdict_of",
+    "visible",
+]
 
 _LONGEST = 20_000
 _MOST = 2_000
@@ -52,10 +64,10 @@ def document_of_outcomes(
     parts = [_part(outcome) for outcome in outcomes]
     if not parts:
         raise ValueError("expected at least one outcome, got none")
-    failed = [k for k, part in enumerate(parts) if part["status"] != "agrees"]
-    shown = max(failed, key=lambda k: parts[k]["cases"]) if failed else 0
-    survey = next((k for k, part in enumerate(parts) if part["part"] == "survey"), 0)
-    main = outcomes[shown if failed else survey]
+    plain = [{"conjecture": "", **part} for part in parts]
+    said = verdict_of(plain)
+    place = next((k for k, part in enumerate(plain) if part is said), None)
+    main = {**outcomes[0], **said} if place is None else outcomes[place]
     spaces = [_space(space) for outcome in outcomes for space in _list(outcome.get("spaces"))]
     document = _empty(_text(main.get("conjecture")), made) | {
         "file": _text(main.get("file")),
@@ -70,7 +82,7 @@ def document_of_outcomes(
         "replay": _text(main.get("replay")),
         "environment": _text(main.get("environment")),
         "seed": next((part["seed"] for part in parts if part["seed"]), ""),
-        "failure": _failure(main) if failed and "detail" in main else None,
+        "failure": _failure(main) if place is not None and said["status"] != "agrees" and "detail" in main else None,
         "diagnosis": main.get("diagnosis"),
     }
     if record is not None:
@@ -78,15 +90,31 @@ def document_of_outcomes(
     return document
 
 
+def verdict_of(parts: Sequence[Mapping[str, Any]]) -> Mapping[str, Any]:
+    """Which of the parts of one conjecture, in JSON form, speaks for all: the gravest failure, else what was compared in order.
+
+    Laws and rows drawn at random alone are never agreement: where the survey did not run to its end, there is no verdict.
+    """
+    failed = max((part for part in parts if part["status"] != "agrees"), key=lambda part: part["cases"], default=None)
+    compared = next((part for part in parts if part["part"] == "survey" or part["part"].startswith(("case", "sample"))), None)
+    if failed or compared:
+        return failed or compared or {}
+    why = f"the survey did not run, or not to its end; {parts[0]['scope']}"
+    nothing = {"status": "no verdict", "verdict": f"no verdict: {parts[0]['conjecture']}: {why}", "scope": why, "where": why}
+    return {**parts[0], **nothing, "part": "survey", "rows": 0, "cases": 0, "nonzero": 0}
+
+
 def document_of_record(data: object, *, file: str = "", made: str = "") -> dict[str, Any]:
     """The document of a record alone; one that cannot be read makes a document that says so and shows it."""
     try:
-        contents(data)
+        found = contents(data)
     except RecordError as error:
         return unreadable(data, str(error), file=file, made=made)
     assert isinstance(data, dict), "what has contents is an object"
-    entries, refuted = data["counterexamples"], data["status"] == "refuted"
-    first = entries[0] if entries else None
+    known = found["counterexamples"]
+    wrong_now = refuting(known, found["rule"], None)
+    first = next((entry for entry, c in zip(data["counterexamples"], known, strict=True) if c in wrong_now), None)
+    refuted = first is not None and data["status"] == "refuted"
     spaces = [_space(space) for space in _list(data.get("coverage"))]
     scope = scope_of_spaces(spaces) or "nothing is on record about what was compared"
     document = _empty(_text(data["conjecture"]), made) | {
@@ -95,7 +123,10 @@ def document_of_record(data: object, *, file: str = "", made: str = "") -> dict[
         "verdict": f"refuted at {_text(first['where'])}, as it stands on record" if first and refuted else f"open: {scope}",
         "scope": scope,
         "about": _about(data | {"premise": data.get("premise") is True}),
-        "notes": ["from the record alone: the rule was not asked again"],
+        "notes": [
+            "from the record alone: the rule was not asked again",
+            *filter(None, [earlier_words([c for c in known if c not in wrong_now])]),
+        ],
         "spaces": [*spaces, *(_space(sample) | {"drawn": True} for sample in _list(data.get("samples")))],
         "record": _record(data),
     }
@@ -140,11 +171,11 @@ def scope_of_spaces(spaces: Iterable[Mapping[str, Any]]) -> str:
         words.append(f"all of {len(whole)} spaces, {whole[0]['space']} to {whole[-1]['space']}")
     words += [f"the first {space['seen']:,} of {space['of']:,} rows of {space['space']}" for space in partly[:2]]
     if len(partly) > 2:
-        words.append(f"parts of {len(partly) - 2} more spaces")
+        words.append(f"parts of {counted(len(partly) - 2, 'more space')}")
     if not words:
         return ""
     rows, cases = (sum(space.get(key, 0) for space in walked) for key in ("rows", "cases"))
-    return f"{' and '.join(words)}; {rows:,} rows, {cases:,} cases"
+    return f"{' and '.join(words)}; {counted(rows, 'row')}, {counted(cases, 'case')}"
 
 
 def _empty(name: str, made: str) -> dict[str, Any]:
@@ -244,13 +275,15 @@ def _layer(data: Mapping[str, Any]) -> dict[str, Any]:
 def _record(data: Mapping[str, Any]) -> dict[str, Any]:
     """What the page shows of a record beside the failure."""
     try:
-        contents(data)
+        found = contents(data)
     except RecordError as error:
         return {"problem": str(error)}
+    wrong_now = refuting(found["counterexamples"], found["rule"], None)
     known: list[dict[str, Any]] = [
         {key: _text(entry.get(key)) for key in ("where", "certificate", "instead")}
         | {"rule": _value(entry.get("rule")), "oracle": _value(entry.get("oracle")), "minimal": entry.get("minimal") is True}
-        for entry in data["counterexamples"]
+        | {"earlier": counterexample not in wrong_now}
+        for entry, counterexample in zip(data["counterexamples"], found["counterexamples"], strict=True)
     ]
     return {
         "problem": "",
@@ -260,6 +293,15 @@ def _record(data: Mapping[str, Any]) -> dict[str, Any]:
         "spaces": [_space(space) for space in _list(data.get("coverage"))],
         "samples": [_space(sample) | {"seed": _text(sample.get("seed"))} for sample in _list(data.get("samples"))],
     }
+
+
+def earlier_words(known: Sequence[Counterexample]) -> str:
+    """What counterexamples to other versions of the rule say, in words; empty if there are none."""
+    if not known:
+        return ""
+    who = "a version of the rule that the record does not name" if known[0].rule_hash is None else "an earlier version of the rule"
+    more = f", and at {len(known) - 1} more" if len(known) > 1 else ""
+    return f"{who} was refuted at {known[0].where}{more}"
 
 
 def _minimal_on_record(entry: Mapping[str, Any]) -> str:

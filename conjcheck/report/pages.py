@@ -8,7 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from conjcheck.errors import ConjcheckError, RecordError
-from conjcheck.evidence.record import parse_place, read_record_file, stale_words
+from conjcheck.evidence.record import hold_to_file, parse_place, read_record_file, stale_words
 from conjcheck.evidence.source import rule_hash
 from conjcheck.geometry.case import Case
 from conjcheck.oracle import Product, product
@@ -41,7 +41,9 @@ def documents_of(outcomes: Iterable[Mapping[str, Any]], *, made: str = "") -> li
             document["rule"] = ""
         if document["record"] and document["rule"]:
             try:
-                document["record"]["stale"] = stale_words(read_record_file(_record_path(file, name)), document["rule"])
+                record = read_record_file(_record_path(file, name))
+                hold_to_file(f"{name}.json", record.file, Path(file).name, name)
+                document["record"]["stale"] = stale_words(record, document["rule"])
             except RecordError as error:
                 document["record"] = {"problem": visible(str(error))}
         found.append(document)

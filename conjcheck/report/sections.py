@@ -8,6 +8,7 @@ from conjcheck.errors import ConjcheckError
 from conjcheck.geometry.case import Case, Row, parse_class
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.report.document import visible
+from conjcheck.wording import counted
 
 __all__ = ["cells", "diagnosis", "layer_words", "products"]
 
@@ -69,7 +70,8 @@ def diagnosis(data: object) -> dict[str, Any] | None:
     def number(entry: Mapping[str, Any], key: str) -> str:
         return f"{entry[key]:,}" if isinstance(entry.get(key), int) else "?"
 
-    looked = f"{number(data, 'failing')} failing and {number(data, 'agreeing')} agreeing cases"
+    unit = "rows" if data.get("by_rows") is True else "cases"
+    looked = f"{number(data, 'failing')} failing and {number(data, 'agreeing')} agreeing {unit}"
     where = visible(str(data.get("where", "")))
     words = [f"Looked at: {looked}{f' in {where}' if where else ''}.", *texts(data.get("signs")), *texts(data.get("unusable"))]
     firsts = data.get("firsts")
@@ -77,6 +79,7 @@ def diagnosis(data: object) -> dict[str, Any] | None:
     suggestion = data.get("suggestion")
     return {
         "words": words,
+        "unit": unit,
         "firsts": [(visible(str(k)), visible(str(v))) for k, v in firsts.items()] if isinstance(firsts, Mapping) else [],
         "conditions": [
             {
@@ -96,19 +99,16 @@ def diagnosis(data: object) -> dict[str, Any] | None:
     }
 
 
-def _counted(count: int, one: str, many: str) -> str:
-    return f"{count:,} {one if count == 1 else many}"
-
-
 def layer_words(layer: Mapping[str, Any]) -> str:
     """All failures of the smallest failing space in one sentence."""
-    pairs = _counted(layer["pairs"], "ordered pair (u, v)", "ordered pairs (u, v)")
-    cases = _counted(layer["cases"], "failing case", "failing cases")
+    pairs = counted(layer["pairs"], "ordered pair (u, v)", "ordered pairs (u, v)")
+    cases = counted(layer["cases"], "failing case") if layer["cases"] else counted(layer["pairs"], "failing row")
     least = "" if layer["all_orbits"] else "at least "
-    orbits = f"{least}{_counted(layer['orbits'], 'orbit', 'orbits')} under the symmetries of the space"
+    orbits = f"{least}{counted(layer['orbits'], 'orbit')} under the symmetries of the space"
     if layer["complete"]:
         return f"In the smallest failing space it fails at {pairs} of {layer['size']:,}: {cases} in {orbits}."
-    return f"In the smallest failing space it fails at {pairs} at least: {cases} in {orbits}, among the {layer['rows']:,} rows looked at."
+    looked = counted(layer["rows"], "row")
+    return f"In the smallest failing space it fails at {pairs} at least: {cases} in {orbits}, among the {looked} looked at."
 
 
 def cells(document: Mapping[str, Any], place: Case | Row | None) -> list[dict[str, str]]:
@@ -120,7 +120,7 @@ def cells(document: Mapping[str, Any], place: Case | Row | None) -> list[dict[st
         failed = name == failing and not drawn
         named.add(name)
         if drawn:
-            rows = f"{space['rows']:,} rows" if space["rows"] else "rows drawn among these spaces"
+            rows = counted(space["rows"], "row") if space["rows"] else "rows drawn among these spaces"
             found.append({"kind": "drawn", "space": name, "state": "drawn at random", "count": rows, "degrees": ""})
         elif space["out_of_reach"]:
             out = "out of reach of the oracle"
@@ -132,10 +132,17 @@ def cells(document: Mapping[str, Any], place: Case | Row | None) -> list[dict[st
                 state = "no case in the premise"
             if failed or space["failing"]:
                 kind, state = "failed", "≠ fails here"
-            count = f"all {space['of']:,} rows" if whole else f"{space['seen']:,} of {space['of']:,} rows"
+            of = counted(space["of"], "row")
+            count = f"all {of}" if whole else f"{space['seen']:,} of {of}"
             degrees = _degrees(document, name, whole=whole, failed=failed) if space["cases"] and len(found) < _MOST_MAPPED else ""
             found.append(
-                {"kind": kind, "space": name, "state": state, "count": f"{count}, {space['cases']:,} cases", "degrees": degrees}
+                {
+                    "kind": kind,
+                    "space": name,
+                    "state": state,
+                    "count": f"{count}, {counted(space['cases'], 'case')}",
+                    "degrees": degrees,
+                }
             )
     if failing is not None and failing not in named:
         first = "the first failure known"

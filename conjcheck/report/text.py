@@ -2,6 +2,7 @@
 
 import shlex
 import textwrap
+from collections.abc import Mapping, Sequence
 from pathlib import PurePath
 from typing import Any
 
@@ -10,11 +11,13 @@ from conjcheck.geometry.flag_variety import SchubertClass
 from conjcheck.geometry.notation import text_of_permutation
 from conjcheck.oracle.engine import Product
 from conjcheck.oracle.equivariant import Sampled
+from conjcheck.report.document import verdict_of
 from conjcheck.testing.answer import shown_value
 from conjcheck.testing.diagnosis import Diagnosis
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer
 from conjcheck.testing.outcome import Outcome, environment, smaller_agree
+from conjcheck.wording import counted
 
 __all__ = ["describe_class", "replay_line", "summary_table", "text_report"]
 
@@ -39,9 +42,7 @@ def text_report(outcome: Outcome, *, replay: str = "") -> str:
         lines += _entry("statement", outcome.conjecture.statement)
     if outcome.conjecture.choice:
         others = outcome.conjecture.number_of_variants - 1
-        lines += _entry(
-            "choice", f"{outcome.conjecture.choice_in_words}; {others:,} other {'variant' if others == 1 else 'variants'}"
-        )
+        lines += _entry("choice", f"{outcome.conjecture.choice_in_words}; {counted(others, 'other variant')}")
     if finding is None:
         lines += _entry("compared", outcome.scope)
     else:
@@ -110,14 +111,15 @@ def _minimality(outcome: Outcome) -> str:
 
 def _layer(layer: Layer, row: Row) -> list[str]:
     """The failures of the whole smallest space."""
-    pairs = f"{layer.pairs:,} failing ordered {'pair' if layer.pairs == 1 else 'pairs'} (u, v)"
-    cases = len(layer.findings)
+    pairs = counted(layer.pairs, "failing ordered pair (u, v)", "failing ordered pairs (u, v)")
+    cases, single = len(layer.findings), any(isinstance(finding.where, Case) for finding in layer.findings)
+    what = counted(cases, "failing case" if single else "failing row")
     least = "" if layer.all_orbits else "at least "
-    orbits = f"{least}{layer.orbits} {'orbit' if layer.orbits == 1 else 'orbits'} under the symmetries of {row.X}"
+    orbits = f"{least}{counted(layer.orbits, 'orbit')} under the symmetries of {row.X}"
     if layer.complete:
-        text = f"{pairs} among the {layer.size:,} of {row.X}: {cases:,} failing {'case' if cases == 1 else 'cases'} in {orbits}"
+        text = f"{pairs} among the {layer.size:,} of {row.X}: {what} in {orbits}"
     else:
-        text = f"at least {pairs} of {row.X}: {cases:,} failing {'case' if cases == 1 else 'cases'} in {orbits} among {layer.rows:,} rows"
+        text = f"at least {pairs} of {row.X}: {what} in {orbits} among {counted(layer.rows, 'row')}"
     lines = _entry("layer", text)
     for finding in layer.findings[:_MOST_LINES]:
         values = f": rule {shown_value(finding.rule)}, oracle {_oracle_value(finding)}" if finding.rule is not None else ""
@@ -185,8 +187,10 @@ def _entry(label: str, text: str, *, wrap: bool = True) -> list[str]:
     ) or [label]
 
 
-def summary_table(outcomes: list[dict[str, Any]]) -> list[str]:
+def summary_table(outcomes: list[dict[str, Any]], broken: Sequence[Mapping[str, str]] = ()) -> list[str]:
     """The table at the end of a run: one line per conjecture, from the JSON forms of the outcomes of its parts.
+
+    What could not even be collected, a ``file`` and its ``problem``, has a line without numbers.
 
     Rows, cases and nonzero constants are those of the survey; ``drawn`` counts the rows of the probes.
     """
@@ -197,18 +201,20 @@ def summary_table(outcomes: list[dict[str, Any]]) -> list[str]:
     table = [("conjecture", "status", "rows", "cases", "nonzero", "drawn", "seconds", "compared, or where it fails")]
     for (file, plain), parts in by_name.items():
         name = plain if names.count(plain) == 1 else f"{plain} ({PurePath(file).parent.name}/{PurePath(file).name})"
-        failures = [part for part in parts if part["status"] != "agrees"]
-        failed = max(failures, key=lambda part: part["cases"], default=None)
-        shown = failed or next((part for part in parts if part["part"] == "survey"), parts[0])
+        shown = verdict_of(parts)
         drawn = sum(part["rows"] for part in parts if part["part"].startswith("probe"))
         numbers = [shown["rows"], shown["cases"], shown["nonzero"], drawn]
         where = shown["where"]
-        if failed and "rule" in failed:
-            where += " (minimal)" if failed["minimal"] else " (not known to be minimal)"
+        if "rule" in shown:
+            where += " (minimal)" if shown["minimal"] else " (not known to be minimal)"
         if shown.get("note"):
             where += f"; {shown['note']}"
         seconds = sum(part["seconds"] for part in parts)
         table.append((name, shown["status"], *(f"{number:,}" for number in numbers), f"{seconds:.1f}", where))
+    for item in broken:
+        why = (item["problem"].strip().splitlines() or [""])[-1].strip()
+        why = textwrap.shorten(why, _WIDTH, placeholder=" ...") or "unknown problem"
+        table.append((PurePath(item["file"]).name, "no verdict", "", "", "", "", "", f"cannot be used: {why}"))
     widths = [max(len(line[k]) for line in table) for k in range(len(table[0]) - 1)]
     return [
         "  ".join(

@@ -14,6 +14,7 @@ from time import monotonic
 from typing import Any, NoReturn, TypeVar
 
 from conjcheck.errors import ConjcheckError
+from conjcheck.testing.limits import let_exit
 
 __all__ = ["Lost", "apart"]
 
@@ -96,6 +97,7 @@ def _work_and_end(work: Callable[[], Any], sender: int, shared: tuple[Any, ...])
     """What the copy does."""
     try:
         os.setsid()
+        let_exit()
         nothing = os.open(os.devnull, os.O_RDWR)
         for stream in (0, 1, 2):
             os.dup2(nothing, stream)

@@ -62,6 +62,12 @@ class RuleCalls:
         """The number of outcomes smaller than a given one."""
         return count_below(row.X, row.u.length + row.v.length, key, **self._rings)
 
+    def speaks_of(self, case: Case) -> bool:
+        """Whether a case is an outcome of its row in the conjecture's ring."""
+        weight = sum(a * b for a, b in zip(case.d, case.X.q_degrees, strict=True))
+        left = case.u.length + case.v.length - case.w.length - weight
+        return left >= 0 if self.conjecture.is_equivariant else left == 0
+
     def read(self, answer: Any, row: Row) -> Value:
         """The value an answer stands for: a count, or a polynomial in the equivariant rings.
 

@@ -317,7 +317,10 @@ def _check(conjecture: Conjecture, spaces: list[FlagVariety]) -> None:
             raise NotationError(f"expected flag varieties of the family of {conjecture.name} ({conjecture.on}), got {X}")
         if not engines_for(X):
             reasons = "; ".join(f"{engine.name}: {engine.refuses(X)}" for engine in ENGINES.values())
-            raise OutOfReach(f"expected spaces in reach of some engine, got {X} ({reasons})")
+            raise OutOfReach(
+                f"expected spaces in reach of some engine, got {X} ({reasons}); leave it out, with --up-to for example by "
+                f"--most-classes {min(1_000, X.number_of_classes - 1)}"
+            )
 
 
 def _plans(conjecture: Conjecture, spaces: list[FlagVariety], rule: str, terms: Terms) -> Iterator[_Plan]:

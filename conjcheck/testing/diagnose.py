@@ -1,9 +1,13 @@
 """The diagnosis of a refuted conjecture: what its failures have in common, and on which sub-class it may be right."""
 
+import ast
 from collections.abc import Callable, Sequence
+from linecache import getlines
+from types import CodeType
 
 import numpy as np
 
+from conjcheck.conjecture.declare import Conjecture
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.weyl import Ints
 from conjcheck.testing.compare import Comparer
@@ -14,6 +18,8 @@ from conjcheck.testing.minimise import Layer, Minimum
 from conjcheck.testing.search import Looked, Search, inside, search
 
 __all__ = ["diagnose", "worded"]
+
+_NO_SOURCE = "your own premise"
 
 
 def diagnose(comparer: Comparer, minimum: Minimum, layer: Layer | None = None, *, budget: float) -> Diagnosis | None:
@@ -50,6 +56,7 @@ def worded(comparer: Comparer, found: Search) -> Diagnosis:
         _suggestion(comparer, found.premise, looked, found.fresh) if found.premise else None,
         found.refused,
         found.unusable,
+        comparer.is_claim and comparer.conjecture.by_rows,
     )
 
 
@@ -109,6 +116,8 @@ def _firsts(comparer: Comparer, looked: Looked) -> tuple[tuple[str, Case | Row],
 
 def _suggestion(comparer: Comparer, premise: Found, looked: Looked, fresh: tuple[Table, ...]) -> Suggestion:
     """The premise with the numbers of cases inside it."""
+    conjecture = comparer.conjecture
+    on_rows = premise.on_rows and conjecture.premise_by_rows
     holds = np.concatenate([inside(premise, table.cases) for table in looked.tables])
     new = sum(map(len, fresh))
     return Suggestion(
@@ -119,6 +128,27 @@ def _suggestion(comparer: Comparer, premise: Found, looked: Looked, fresh: tuple
         int((holds & looked.informative).sum()) + sum(int(table.informative.sum()) for table in fresh),
         new,
         _where(fresh),
-        comparer.conjecture.premise is not None,
-        "X, u, v" if premise.on_rows else "X, u, v, w" if comparer.conjecture.is_classical else "X, u, v, w, d",
+        conjecture.premise is not None,
+        "X, u, v" if on_rows else "X, u, v, w" if conjecture.is_classical else "X, u, v, w, d",
+        _own_premise(conjecture),
     )
+
+
+def _own_premise(conjecture: Conjecture) -> str:
+    """The conjecture's own premise as a Python expression that can stand in its file; in words if its source is not at hand."""
+    code = getattr(conjecture.premise, "__code__", None)
+    if not isinstance(code, CodeType):
+        return _NO_SOURCE
+    names = list(code.co_varnames[: code.co_argcount])
+    if code.co_qualname.isidentifier() and getattr(conjecture.rule, "__globals__", {}).get(code.co_name) is conjecture.premise:
+        return f"{code.co_name}({', '.join(names)})"
+    try:
+        tree = ast.parse("".join(getlines(code.co_filename)))
+    except (SyntaxError, ValueError):
+        return _NO_SOURCE
+    bodies = [
+        node.body
+        for node in ast.walk(tree)
+        if isinstance(node, ast.Lambda) and node.lineno == code.co_firstlineno and [arg.arg for arg in node.args.args] == names
+    ]
+    return ast.unparse(bodies[0]) if code.co_name == "<lambda>" and len(bodies) == 1 else _NO_SOURCE

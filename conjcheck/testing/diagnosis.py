@@ -4,6 +4,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from conjcheck.geometry.case import Case, Row
+from conjcheck.wording import counted
 
 __all__ = ["Condition", "Diagnosis", "Suggestion"]
 
@@ -41,7 +42,8 @@ class Suggestion:
         informative: those of them at which the rule or the constant is not 0.
         fresh: the cases of them that were compared only after the premise had been chosen; 0 if no row was left.
         where: the spaces of these fresh cases.
-        narrows: whether the conjecture has a premise already, to which this one would be added.
+        narrows: whether the conjecture has a premise already, to which this one is added.
+        own: that premise as a Python expression, or in words where its source is not at hand.
         arguments: what a premise of this kind is a function of.
     """
 
@@ -54,11 +56,13 @@ class Suggestion:
     where: str
     narrows: bool = False
     arguments: str = "X, u, v, w, d"
+    own: str = "your own premise"
 
     @property
     def premise(self) -> str:
-        """What to write into the declaration, or to add to the premise there; empty if there is no short expression."""
-        return f"premise=lambda {self.arguments}: {self.expression}" if self.expression else ""
+        """What to write into the declaration, in place of a premise there; empty if there is no short expression."""
+        whole = f"({self.own}) and ({self.expression})" if self.narrows else self.expression
+        return f"premise=lambda {self.arguments}: {whole}" if self.expression else ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,6 +79,7 @@ class Diagnosis:
         suggestion: a premise that stood a fresh comparison, ``None`` if none did.
         refused: how many premises were tried on fresh rows and failed there.
         unusable: features of the user that could not be used, and why.
+        by_rows: whether what is counted are rows, the conjecture being a claim about whole products.
     """
 
     failing: int
@@ -87,11 +92,17 @@ class Diagnosis:
     suggestion: Suggestion | None = None
     refused: int = 0
     unusable: tuple[str, ...] = ()
+    by_rows: bool = False
+
+    @property
+    def unit(self) -> str:
+        """What is counted."""
+        return "row" if self.by_rows else "case"
 
     @property
     def scope(self) -> str:
         """What was looked at, in words."""
-        failures = f"{self.failing:,} failing {'case' if self.failing == 1 else 'cases'}"
+        failures = counted(self.failing, f"failing {self.unit}")
         return (
             f"{failures} and {self.agreeing:,} agreeing ones, {self.informative:,} of these not 0, were looked at in {self.where}"
         )
@@ -103,13 +114,14 @@ class Diagnosis:
         if one is None:
             tried = f"; {self.refused} that seemed possible failed there" if self.refused else ""
             return f"none: no short premise stood a comparison on fresh rows{tried}"
-        inside = f"it agrees at all {one.cases:,} cases inside that were compared, {one.informative:,} of them not 0"
+        inside = f"it agrees at all {counted(one.cases, self.unit)} inside that were compared, {one.informative:,} of them not 0"
         fresh = (
             f"among them {one.fresh:,} fresh ones in {one.where}" if one.fresh else "and there are no fresh rows to compare it on"
         )
         narrows = ", inside its premise," if one.narrows else ""
         needs = "; the expression needs: from itertools import combinations" if "combinations(" in one.expression else ""
-        return f"the rule may hold{narrows} when {one.words}; {inside}, {fresh}; this is no proof{needs}"
+        textless = "" if one.premise else "; no short Python expression says it, so there is none for premise="
+        return f"the rule may hold{narrows} when {one.words}; {inside}, {fresh}; this is no proof{needs}{textless}"
 
     def counts(self, condition: Condition) -> str:
         """At how many failures and agreements a condition holds, in words."""
@@ -150,6 +162,7 @@ class Diagnosis:
                 for condition in self.conditions
             ],
             "refused": self.refused,
+            "by_rows": self.by_rows,
         }
         if self.suggestion:
             found["suggestion"] = {

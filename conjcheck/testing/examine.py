@@ -21,6 +21,7 @@ from conjcheck.testing.outcome import Outcome
 from conjcheck.testing.probe import ProbeCount, level_name, probe_levels, run_probe
 from conjcheck.testing.scope import probe_scope, survey_scope, survey_spaces
 from conjcheck.testing.survey import Coverage, in_reach, survey
+from conjcheck.wording import counted
 
 __all__ = ["EFFORTS", "Effort", "Examination", "examine"]
 
@@ -153,8 +154,13 @@ class Examination:
             raise NotationError(
                 f"expected a row with cases inside the premise of {conjecture.name}, got {where}; nothing was compared"
             )
+        if finding is None and isinstance(where, Case) and not self.comparer.speaks_of(where):
+            raise NotationError(
+                f"expected a case with l(u) + l(v) = l(w) + sum d_i deg q_i, got {where}, where lengths and degrees do not add up; "
+                "nothing was compared"
+            )
         if finding is None:
-            scope = f"the one case {where}" if isinstance(where, Case) else f"the one row {where}, {cases:,} cases"
+            scope = f"the one case {where}" if isinstance(where, Case) else f"the one row {where}, {counted(cases, 'case')}"
             return Outcome(conjecture, "case", "agrees", scope, str(where), 1, cases, seconds=perf_counter() - started)
         return self._describe(Outcome(conjecture, "case", finding.status, "one case", finding=finding), started)
 
@@ -229,7 +235,7 @@ class Examination:
         """The outcome of laws that hold; ``None`` if they were tried nowhere."""
         if not count.rows:
             return None
-        scope = f"the laws hold around {count.rows:,} rows drawn at random ({count.distinct:,} distinct)"
+        scope = f"the laws hold around {counted(count.rows, 'row')} drawn at random ({count.distinct:,} distinct)"
         return Outcome(self.conjecture, "laws", "agrees", scope, rows=count.rows, seconds=perf_counter() - started)
 
     def probe_agrees(self, spaces: list[FlagVariety], count: ProbeCount, started: float) -> Outcome | None:

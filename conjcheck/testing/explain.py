@@ -36,9 +36,9 @@ class Explanation:
 def explain(comparer: Comparer, finding: Finding) -> Explanation:
     """Explain a refuted case or row.
 
-    Kinds: ``undercount`` / ``overcount`` (the sign of the error); ``support`` (zero on one side only); ``degree axiom`` (a value where
-    lengths and degrees do not add up); ``q-degree`` (the class is right, the power of q is not: summed over d the two sides agree);
-    ``not symmetric`` (the rule gives another value for v, u).
+    Kinds: ``undercount`` / ``overcount`` (the sign of the error); ``support`` (zero on one side only); ``degree axiom`` (the rule
+    has a value where lengths and degrees do not add up, here or elsewhere in its product); ``q-degree`` (the class is right, the power
+    of q is not: summed over d the two sides agree); ``not symmetric`` (the rule gives another value for v, u).
     """
     row = finding.row
     if comparer.conjecture.is_equivariant:
@@ -59,9 +59,9 @@ def explain(comparer: Comparer, finding: Finding) -> Explanation:
             kinds.append("undercount" if rule < true else "overcount")
             if not rule or not true:
                 kinds.append("support")
-            if not case.obeys_degree_axiom:
+            if not all(Case(row.X, row.u, row.v, *key).obeys_degree_axiom for key, count in values.items() if count):
                 kinds.append("degree axiom")
-            elif not partial and len(case.d) > 1 and _sum(values, case) == _sum(truth, case):
+            if not partial and _sum(values, case) == _sum(truth, case):
                 kinds.append("q-degree")
             mirrored = Case(case.X, case.v, case.u, case.w, case.d)
             if case.u is not case.v and comparer.inside(mirrored.row):

@@ -3,18 +3,31 @@
 A ticking alarm looks at ``limit.started`` a few times a second and interrupts the call that has run for too long. In the main
 thread of a POSIX system the alarm is a signal, which also ends a sleep; elsewhere a second thread raises the interruption at the
 next byte code. Neither can end a call that stays inside C code.
+
+``os._exit`` raises ``SystemExit`` meanwhile, so that a rule does not end a run as if nothing had been wrong; not in a process that may die.
 """
 
 import ctypes
+import os
 import signal
 import threading
 import time
 from collections.abc import Callable
 from types import FrameType, TracebackType
+from typing import NoReturn
 
-__all__ = ["CallInterrupted", "CallLimit"]
+__all__ = ["CallInterrupted", "CallLimit", "let_exit"]
 
 _TICK = 0.1
+
+
+_may_exit = False
+
+
+def let_exit() -> None:
+    """Say that this process may be ended by a rule: somebody is watching it."""
+    global _may_exit  # noqa: PLW0603
+    _may_exit = True
 
 
 class CallInterrupted(BaseException):
@@ -30,7 +43,7 @@ class CallLimit:
             is over its limit: a rule that swallows the interruption falls silent.
     """
 
-    __slots__ = ("_before", "_depth", "_done", "_target", "_thread", "on_tick", "seconds", "started")
+    __slots__ = ("_before", "_depth", "_done", "_exit", "_target", "_thread", "on_tick", "seconds", "started")
 
     def __init__(self, seconds: float, on_tick: Callable[[], None] | None = None) -> None:
         self.seconds = seconds
@@ -43,6 +56,9 @@ class CallLimit:
         if self._depth > 1:
             return self
         self.started = 0.0
+        self._exit = os._exit
+        if not _may_exit:
+            os._exit = _exit_of(os.getpid(), os._exit)  # type: ignore[assignment]  # the same but for the name of its argument
         self._thread: threading.Thread | None = None
         if hasattr(signal, "setitimer") and threading.current_thread() is threading.main_thread():
             self._before = signal.signal(signal.SIGALRM, self._alarm), signal.setitimer(signal.ITIMER_REAL, _TICK, _TICK)
@@ -58,6 +74,7 @@ class CallLimit:
         if self._depth:
             return
         self.started = 0.0
+        os._exit = self._exit
         if self._thread is not None:
             self._done.set()
             self._thread.join()
@@ -81,3 +98,14 @@ class CallLimit:
         while not self._done.wait(_TICK):
             if self._expired():
                 ctypes.pythonapi.PyThreadState_SetAsyncExc(ctypes.c_ulong(self._target), ctypes.py_object(CallInterrupted))
+
+
+def _exit_of(process: int, real: Callable[[int], NoReturn]) -> Callable[[int], NoReturn]:
+    """What stands for ``os._exit`` in one process; copies of it (of a rule that forks) end as always."""
+
+    def leave(status: int) -> NoReturn:
+        if os.getpid() != process:
+            real(status)
+        raise SystemExit(f"os._exit({status}) was called")
+
+    return leave

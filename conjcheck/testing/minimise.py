@@ -7,12 +7,13 @@ from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import EnginesDisagree, OutOfReach
 from conjcheck.geometry.case import Case, Row, rows
 from conjcheck.geometry.polynomial import RootPolynomial
-from conjcheck.geometry.symmetries import count_orbits
+from conjcheck.geometry.symmetries import count_orbits, count_row_orbits
 from conjcheck.oracle import row_terms, witnesses
 from conjcheck.oracle.equivariant import Sampled, equivariant_constant
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.survey import Coverage, survey
+from conjcheck.wording import counted
 
 __all__ = ["Layer", "Minimum", "certified", "confirm", "descend", "layer_of", "minimise"]
 
@@ -27,8 +28,8 @@ class Layer:
     Attributes:
         findings: one per failing case (or failing row of a claim about rows), in order.
         rows: number of rows compared from the smallest failure on; ``complete`` if that was all of them.
-        orbits: number of orbits of the failing cases under the symmetries of the space (S3, diagram automorphisms, Seidel); at least
-            so many if not ``all_orbits``.
+        orbits: number of orbits of the failing cases under the symmetries of the space (S3, diagram automorphisms, Seidel), of rows
+            under those that act on products; at least so many if not ``all_orbits``.
         size: number of rows of the space.
     """
 
@@ -126,7 +127,7 @@ def minimise(comparer: Comparer, finding: Finding, coverage: Coverage, *, budget
     if walked.ran_out:
         last = coverage.spaces[-1] if coverage.spaces else None
         where = f"; stopped in {last.X} after {last.rows_seen:,} of {last.X.number_of_classes**2:,} rows" if last else ""
-        return Minimum(finding, False, coverage.cases, f"no smaller one among the first {coverage.cases:,} cases{where}")
+        return Minimum(finding, False, coverage.cases, f"no smaller one among the first {counted(coverage.cases, 'case')}{where}")
     if not row_known:
         reach = f"all {coverage.cases:,} cases of smaller rows agree; its own row was not compared completely"
         return Minimum(finding, False, coverage.cases, reach)
@@ -167,13 +168,15 @@ def layer_of(comparer: Comparer, finding: Finding, *, budget: float) -> Layer:
 
 
 def _orbits(findings: list[Finding], conjecture: Conjecture, deadline: float) -> tuple[int, bool]:
-    """The number of orbits of failing cases, and whether that is all; equivariantly only u and v may be swapped. Rows count one each."""
+    """The number of orbits of failing cases and rows, and whether that is all; equivariantly only u and v may be swapped."""
     cases = [f.where for f in findings if isinstance(f.where, Case)]
-    rows_too = len(findings) - len(cases)
-    if conjecture.is_equivariant:
-        return rows_too + len({frozenset((c, Case(c.X, c.v, c.u, c.w, c.d))) for c in cases}), True
-    orbits, whole = count_orbits(cases, seidel_too=not conjecture.is_classical, deadline=deadline)
-    return rows_too + orbits, whole
+    whole_rows = [f.where for f in findings if isinstance(f.where, Row)]
+    plain, seidel_too = not conjecture.is_equivariant, not (conjecture.is_equivariant or conjecture.is_classical)
+    of_rows, all_rows = count_row_orbits(whole_rows, seidel_too=seidel_too, diagrams_too=plain, deadline=deadline)
+    if not plain:
+        return of_rows + len({frozenset((c, Case(c.X, c.v, c.u, c.w, c.d))) for c in cases}), all_rows
+    of_cases, all_cases = count_orbits(cases, seidel_too=seidel_too, deadline=deadline)
+    return of_rows + of_cases, all_rows and all_cases
 
 
 def confirm(finding: Finding) -> tuple[Finding, str]:

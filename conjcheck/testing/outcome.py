@@ -117,8 +117,13 @@ class Outcome:
                 return "key a whole product by (w, d), w a class of X and d a tuple; or by w alone, with ring='classical'"
             if self.conjecture.role == "claim":
                 return "return True or False on every path"
-            if self.conjecture.is_equivariant:
-                return "return a polynomial built from simple_roots(X)"
+            value = "a polynomial built from simple_roots(X)" if self.conjecture.is_equivariant else ""
+            if self.conjecture.by_rows:
+                key = "w" if self.conjecture.is_classical else "(w, d)"
+                value = value or "an int of 0 or more, or an iterable of distinct hashable objects"
+                return f"return a mapping {{{key}: {'value' if self.conjecture.is_equivariant else 'count'}}}, each one {value}"
+            if value:
+                return f"return {value}"
         return _REMEDIES[finding.status]
 
     def _repr_html_(self) -> str:

@@ -5,7 +5,7 @@ from dataclasses import dataclass, field
 from time import perf_counter
 from typing import Any, NoReturn
 
-from hypothesis import HealthCheck, Phase, given, seed, settings
+from hypothesis import HealthCheck, Phase, Verbosity, given, seed, settings
 from hypothesis import strategies as st
 from hypothesis.errors import HypothesisException, Unsatisfiable
 
@@ -183,7 +183,8 @@ def run_probe(
     check: Check, spaces: list[FlagVariety], comparer: Comparer, count: ProbeCount, *, seed: int | None = None, draws: int = 1
 ) -> None:
     """Run the search outside pytest; raises what the check raises at the smallest failure found."""
-    test = probe_test(check, lambda: spaces, comparer, count.time_is_up, fixed_seed=seed, draws=draws, database=None)
+    quiet = {"database": None, "verbosity": Verbosity.quiet}  # Hypothesis would call the end of the time a failure to be repeated
+    test = probe_test(check, lambda: spaces, comparer, count.time_is_up, fixed_seed=seed, draws=draws, **quiet)
     try:
         test()
     except BaseException as error:

@@ -1,14 +1,14 @@
 """How much was compared, in words that a paper can quote: every "agrees" carries them."""
 
 from conjcheck.conjecture.declare import Conjecture
+from conjcheck.evidence.entries import FEWEST_ROWS
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.probe import ProbeCount, level_name
 from conjcheck.testing.survey import Coverage
+from conjcheck.wording import counted
 
 __all__ = ["probe_scope", "survey_scope", "survey_spaces"]
 
-
-_FEWEST_ROWS = 20
 _MOST_NAMED = 12
 
 
@@ -37,22 +37,25 @@ def survey_scope(coverage: Coverage, conjecture: Conjecture) -> str:
     if not coverage.rows:
         return "nothing smaller"
     premise = " inside the premise" if conjecture.premise else ""
-    numbers = f"{coverage.rows:,} rows, {coverage.cases:,} cases{premise}, {coverage.nonzero:,} of them nonzero"
+    numbers = f"{counted(coverage.rows, 'row')}, {counted(coverage.cases, 'case')}{premise}, {coverage.nonzero:,} of them nonzero"
     text = f"{survey_spaces(coverage)}; {numbers}"
     if coverage.whole_family:
         text += "; this is the whole family"
     if coverage.skipped and coverage.spaces:
         gaps = [X for X in coverage.skipped if X < coverage.spaces[-1].X]
         if gaps:
-            text += f"; {len(gaps)} spaces in between are out of reach, the first {gaps[0]}"
+            text += (
+                f"; {counted(len(gaps), 'space')} in between {'is' if len(gaps) == 1 else 'are'} out of reach, the first {gaps[0]}"
+            )
     return text
 
 
 def probe_scope(spaces: list[FlagVariety], count: ProbeCount) -> str:
     """What a probe has compared, and the largest share of failing rows that is still compatible with it at 95 %."""
-    where = spaces[0].name if len(spaces) == 1 else f"{len(spaces)} spaces with {level_name(spaces)}"
-    sampled = f" ({count.sampled:,} rows with all nonzero cases and a sample of the zeros)" if count.sampled else ""
+    where = spaces[0].name if len(spaces) == 1 else f"{counted(len(spaces), 'space')} with {level_name(spaces)}"
+    sampled = f" ({counted(count.sampled, 'row')} with all nonzero cases and a sample of the zeros)" if count.sampled else ""
     bound = "too few rows for a bound on the failures"
-    if count.rows >= _FEWEST_ROWS:
+    if count.rows >= FEWEST_ROWS:
         bound = f"taking the draws as independent, at 95 % at most {100 * count.bound:.2g} % of rows, weighted as they are drawn, can fail"
-    return f"{count.rows:,} rows drawn at random on {where}, {count.distinct:,} of them distinct, {count.cases:,} cases{sampled}; {bound}"
+    drawn, cases = counted(count.rows, "row"), counted(count.cases, "case")
+    return f"{drawn} drawn at random on {where}, {count.distinct:,} of them distinct, {cases}{sampled}; {bound}"

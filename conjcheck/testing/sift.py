@@ -26,6 +26,7 @@ from conjcheck.testing.compare import Comparer, RowResult, Truth, sample_of_row
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.scope import survey_scope
 from conjcheck.testing.survey import Coverage, survey
+from conjcheck.wording import counted
 
 __all__ = ["Beyond", "DeadVariant", "Sifted", "sift"]
 
@@ -86,8 +87,8 @@ class Beyond:
         if not self.rows:
             return "nothing"
         where = f"{self.spaces[0]} to {self.spaces[-1]}" if len(self.spaces) > 1 else str(self.spaces[0])
-        cases = f", {self.cases:,} cases of them" if self.cases else ""
-        return f"{self.rows:,} rows drawn at random on {where}{cases}; {self.judged:,} of the rows compared with the oracle, too"
+        cases = f", {counted(self.cases, 'case')} of them" if self.cases else ""
+        return f"{counted(self.rows, 'row')} drawn at random on {where}{cases}; {self.judged:,} of the rows compared with the oracle, too"
 
 
 @dataclass(frozen=True, slots=True)

@@ -10,20 +10,22 @@ from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import RecordError
 from conjcheck.evidence.entries import Covered, Sample, own_version
 from conjcheck.evidence.reading import parse_place
-from conjcheck.evidence.record import Record, current_record, write_record
-from conjcheck.geometry.case import Case
+from conjcheck.evidence.record import Record, current_record
+from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.apart import Lost, apart
 from conjcheck.testing.campaign import Campaign, SpaceResult, Terms, run_campaign
+from conjcheck.testing.compare import Comparer
 from conjcheck.testing.covered import covered
 from conjcheck.testing.examine import EFFORTS, Effort, Examination
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Minimum, certified, confirm, minimise
 from conjcheck.testing.outcome import Outcome
-from conjcheck.testing.recording import counterexample
+from conjcheck.testing.recording import Recording, asked_again, counterexample, recording, write_recording
 from conjcheck.testing.scope import survey_scope, survey_spaces
 from conjcheck.testing.survey import Coverage, SpaceCoverage, in_reach
 from conjcheck.testing.worker import limit_memory
+from conjcheck.wording import counted
 
 __all__ = ["campaign_outcome", "campaign_record", "survey", "write_campaign"]
 
@@ -62,7 +64,8 @@ def survey(
     done = run_campaign(conjecture, chosen, terms=Terms(**terms), jobs=jobs, executor=executor, ledger=kept)
     outcome = campaign_outcome(done)
     if record:
-        write_campaign(done, outcome)
+        _, note = write_campaign(done, outcome)
+        outcome = replace(outcome, note="; ".join(filter(None, [outcome.note, note])))
     return outcome
 
 
@@ -179,12 +182,13 @@ def _agreement(campaign: Campaign, part: str, coverage: Coverage) -> Outcome:
     else:
         parts = [f"{s.result.rows:,} on {s.X} ({_sample(campaign, s).bound})" for s in campaign.spaces if s.result.rows]
         where = ", ".join(str(s.X) for s in campaign.spaces)
-        scope = f"samples of {_HOW}, seed {campaign.terms.seed}: {', '.join(parts)}; {rows:,} rows, {cases:,} cases"
+        scope = (
+            f"samples of {_HOW}, seed {campaign.terms.seed}: {', '.join(parts)}; {counted(rows, 'row')}, {counted(cases, 'case')}"
+        )
     status = "agrees" if rows and all(space.complete for space in campaign.spaces) else "undefined"
     if not rows:
-        scope = (
-            f"nothing compared: expected a row inside the premise on {where or 'the spaces named'}, got none; name larger spaces"
-        )
+        remedy = "name larger spaces" if campaign.terms.draws is None else "raise --sample, or name larger spaces"
+        scope = f"nothing compared: expected a row inside the premise on {where or 'the spaces named'}, got none; {remedy}"
     if campaign.problems:
         scope = f"not finished: {'; '.join(campaign.problems)}; compared so far: {scope}"
     return Outcome(
@@ -214,7 +218,9 @@ def _totals(campaign: Campaign) -> str:
     words = list(campaign.stale)
     if campaign.terms.every and any(s.result.failing for s in campaign.spaces):
         found = [
-            f"{s.X}: {s.result.failing:,} cases in {s.result.failing_rows:,} rows" for s in campaign.spaces if s.result.failing
+            f"{s.X}: {counted(s.result.failing, 'case')} in {counted(s.result.failing_rows, 'row')}"
+            for s in campaign.spaces
+            if s.result.failing
         ]
         words.append(f"all failures: {'; '.join(found)}")
         words += [f"not finished: {problem}" for problem in campaign.problems]
@@ -234,33 +240,50 @@ def _sample(campaign: Campaign, space: SpaceResult) -> Sample:
 
 
 def campaign_record(campaign: Campaign, outcome: Outcome) -> Record:
-    """The record of the conjecture with this survey added; what was computed for another version of the rule is dropped.
+    """The record of the conjecture with this survey added; see :func:`conjcheck.testing.recording.recording`.
 
     Raises:
         RecordError: the record beside the plug-in cannot be used, or contradicts the survey; or the rule was changed meanwhile.
     """
-    record = current_record(campaign.conjecture)
-    if record.rule != campaign.rule:
+    return _recording(campaign, outcome).record
+
+
+def _recording(campaign: Campaign, outcome: Outcome) -> Recording:
+    """The same, with what became of older counterexamples: these are computed again in a copy of this process."""
+    conjecture, limit = campaign.conjecture, campaign.terms.call_limit
+    if current_record(conjecture).rule != campaign.rule:
         raise RecordError(
-            f"expected {campaign.conjecture.file} as it was when the survey began ({campaign.rule[:19]}), it was changed meanwhile; "
+            f"expected {conjecture.file} as it was when the survey began ({campaign.rule[:19]}), it was changed meanwhile; "
             "nothing was recorded, survey the rule as it stands"
         )
+    coverage: list[Covered] = []
+    samples: list[Sample] = []
     if campaign.terms.draws is None:
         failing = {s.X: s.result.failing for s in campaign.spaces if campaign.terms.every}
-        entries: list[Covered] = list(covered(_coverage(campaign), campaign.conjecture, cross_check=campaign.terms.cross_check))
-        record = record.with_coverage(replace(entry, failing=failing.get(entry.X, 0)) for entry in entries)
+        entries = covered(_coverage(campaign), conjecture, cross_check=campaign.terms.cross_check)
+        coverage = [replace(entry, failing=failing.get(entry.X, 0)) for entry in entries]
     else:
-        for space in campaign.spaces:
-            if space.result.rows and space.complete:
-                record = record.with_sample(_sample(campaign, space))
-    finding = outcome.finding
-    if finding is not None and outcome.status == "refuted":
+        samples = [_sample(campaign, space) for space in campaign.spaces if space.result.rows and space.complete]
+    found = None
+    if outcome.finding is not None and outcome.status == "refuted":
         minimal = outcome.minimum is not None and outcome.minimum.certified
-        found = counterexample(finding, campaign.conjecture, minimal=minimal, confirmed_by=outcome.confirmed_by)
-        record = record.with_counterexample(found)
-    return record
+        found = counterexample(outcome.finding, conjecture, minimal=minimal, confirmed_by=outcome.confirmed_by)
+
+    def again(where: Case | Row) -> Finding | None:
+        def work() -> Finding | None:
+            limit_memory(campaign.terms.memory)
+            return asked_again(Comparer(conjecture, call_limit=limit), where)
+
+        return apart(work, seconds=10 * limit + _PATIENCE, shared=(conjecture,))
+
+    return recording(conjecture, again, coverage=coverage, samples=samples, found=found)
 
 
-def write_campaign(campaign: Campaign, outcome: Outcome) -> Path:
-    """Add a survey to the record beside the plug-in, and say where that is."""
-    return write_record(campaign.conjecture, campaign_record(campaign, outcome))
+def write_campaign(campaign: Campaign, outcome: Outcome) -> tuple[Path, str]:
+    """Add a survey to the record beside the plug-in; say where that is, and what became of counterexamples to earlier versions.
+
+    Raises:
+        RecordError: the record cannot be used or written, contradicts the survey, or the rule was changed meanwhile.
+    """
+    made = _recording(campaign, outcome)
+    return write_recording(campaign.conjecture, made), made.note

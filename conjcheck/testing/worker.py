@@ -24,7 +24,7 @@ from conjcheck.evidence.source import rule_hash
 from conjcheck.geometry.case import Case
 from conjcheck.testing.chunks import Chunk, ChunkResult, compare_chunk, entry_of, rows_of_chunk
 from conjcheck.testing.compare import Comparer
-from conjcheck.testing.limits import CallLimit
+from conjcheck.testing.limits import CallLimit, let_exit
 
 __all__ = ["Marks", "limit_memory", "main", "run_chunk"]
 
@@ -183,6 +183,7 @@ def _serve(tasks: BinaryIO, answers: BinaryIO, marks: Marks) -> None:
 
 def main() -> None:
     """Serve until the input ends: ``worker FILE_OF_MARKS PID_OF_PARENT``."""
+    let_exit()
     answers = os.fdopen(os.dup(1), "wb")
     silence = os.open(os.devnull, os.O_WRONLY)
     os.dup2(silence, 1)

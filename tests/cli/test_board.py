@@ -69,6 +69,16 @@ def test_both(home):
     assert printed.stderr == "out/board.html\n"
 
 
+def test_all_outputs_say_the_same(home):
+    """Without -o, pages are looked for in the folder pages, by the page and by the table alike."""
+    (home / "out").rename(home / "pages")
+    assert run("conjectures").exit_code == 0
+    assert 'href="pages/plain.html"' in (home / "board.html").read_text(encoding="utf-8")
+    assert "[`plain`](pages/plain.html)" in run("conjectures", "--markdown", "-").stdout
+    assert run("conjectures", "-o", "pages/board.html").exit_code == 0
+    assert 'href="plain.html"' in (home / "pages" / "board.html").read_text(encoding="utf-8")
+
+
 def test_what_is_broken_is_shown_and_counted(home):
     """A broken plug-in is on the board, and the status is 1."""
     (home / "conjectures" / "bad.py").write_text("def")

@@ -41,3 +41,12 @@ def test_refusals(tmp_path):
     assert (done.exit_code, done.stdout) == (2, "")
     assert f"{wrong}: expected an object" in done.stderr
     assert run(tmp_path / "none.json").exit_code == 2
+    plugin = tmp_path / "rule.py"
+    plugin.write_text("def rule(): ...")
+    done = run(plugin)
+    assert done.exit_code == 2
+    assert f"{plugin}: expected a record such as conjectures/records/NAME.json, got a file of another kind" in done.stderr
+    assert "delete" not in done.stderr
+    done = run(next(RECORD.parent.glob("*.certificate.json")))
+    assert done.exit_code == 2
+    assert "this is a certificate, not a record" in done.stderr

@@ -224,3 +224,12 @@ def test_families_complete():
     """``--on`` offers families and spaces."""
     assert ("plain", "Grassmannians") in complete("start", "x", "--on", last="Gr")
     assert ("plain", "Gr(2,5)") in complete("start", "x", "--on", last="Gr")
+
+
+@pytest.mark.parametrize(("word", "meant"), [("bord", "board"), ("Tabel", "table"), ("survay", "survey"), ("zzz", "")])
+def test_a_command_that_is_not_there(word, meant):
+    """The commands are named, and the one that was meant where one is near."""
+    done = CliRunner().invoke(main, [word], prog_name="conjcheck")
+    assert done.exit_code == 2
+    message = f"expected one of {', '.join(COMMANDS)}, got {word!r}" + (f"; did you mean {meant}?" if meant else "")
+    assert done.stderr.rstrip().endswith(message)

@@ -126,3 +126,13 @@ def test_a_folder_that_cannot_be_written(rule, tmp_path):
     result = run(rule, "-o", tmp_path / "file" / "below", "--seed", "1")
     assert result.exit_code == 2
     assert "choose another with -o" in result.stderr
+
+
+def test_files_of_other_kinds(tmp_path):
+    """A text that is no JSON, and certificates alone, are errors of usage that name what is expected."""
+    (tmp_path / "notes.md").write_text("# notes")
+    for target in (tmp_path / "notes.md", next((CONJECTURES / "records").glob("*.certificate.json"))):
+        result = run(target, "-o", tmp_path / "pages")
+        assert result.exit_code == 2
+        assert "expected a record such as conjectures/records/NAME.json, saved outcomes (JSON) or a plug-in (.py)" in result.stderr
+    assert not (tmp_path / "pages").exists()

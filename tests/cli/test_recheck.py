@@ -74,3 +74,13 @@ def test_the_command_and_the_file_say_the_same(folder):
     done = subprocess.run([sys.executable, recheck.__file__, "good.json", "bad.json"], capture_output=True, text=True, check=False)
     here = run("good.json", "bad.json")
     assert (done.stdout, done.returncode) == (here.stdout, here.exit_code)
+
+
+def test_a_record(tmp_path):
+    """A record is no certificate: the status is 2, and its certificates are named."""
+    path = tmp_path / "rule.json"
+    found = {"where": "x", "certificate": "rule.12345678.certificate.json"}
+    path.write_text(json.dumps({"format": "conjcheck-record", "seconds": 0.5, "counterexamples": [found]}, indent=2))
+    done = run(str(path))
+    assert (done.exit_code, done.stdout) == (2, "")
+    assert "rule.json': a record, no certificate; its certificates are, beside it, rule.12345678.certificate.json" in done.stderr

@@ -164,18 +164,50 @@ def test_a_folder_that_cannot_be_made(here):
 def test_another_folder(here):
     """``--folder`` says where, and the page and the last line speak of that place."""
     done = run("mine", "--on", "Grassmannians", "--folder", "rules/new")
-    assert done.stdout == "wrote rules/new/mine.py\nnext: pytest rules/new/mine.py --conjcheck-effort quick\n"
+    assert done.stdout == (
+        "wrote rules/new/mine.py\nwrote rules/new/.gitignore\nnext: pytest rules/new/mine.py --conjcheck-effort quick\n"
+    )
     assert "    pytest rules/new/mine.py\n" in (here / "rules" / "new" / "mine.py").read_text()
 
 
-@pytest.mark.parametrize(("packaged", "install"), [(False, "python -m pip install conjcheck"), (True, "python -m pip install .")])
-def test_the_workflow(packaged, install, here):
-    """The workflow file is YAML with the steps in order: the sources, Python, installation, pytest on the folder, the report always."""
-    if packaged:
-        (here / "pyproject.toml").write_text("[project]\n")
+def test_a_folder_with_a_blank(here):
+    """The line to copy and the line in the page are quoted for a shell."""
+    done = run("mine", "--on", "Gr(1,3)", "--folder", "my rules")
+    assert "next: pytest 'my rules/mine.py' --conjcheck-effort quick\n" in done.stdout
+    assert "    pytest 'my rules/mine.py'\n" in (here / "my rules" / "mine.py").read_text()
+
+
+def test_the_ledger_is_ignored_by_git(here):
+    """The folder gets a line for the ledger, once, after what its ``.gitignore`` holds already."""
+    path = here / "conjectures" / ".gitignore"
+    path.parent.mkdir()
+    path.write_text("*.aux")
+    assert f"wrote {path.relative_to(here)}\n" in run("one", "--on", "Gr(1,3)").stdout
+    assert path.read_text() == "*.aux\n.ledger.sqlite*\n"
+    assert ".gitignore" not in run("two", "--on", "Gr(1,3)").stdout
+    assert path.read_text() == "*.aux\n.ledger.sqlite*\n"
+
+
+@pytest.mark.parametrize(
+    ("project", "place", "install"),
+    [
+        ("", "./conjcheck", '"$CONJCHECK"'),
+        ("[tool.ruff]\n", "./conjcheck", '"$CONJCHECK"'),
+        ('[project]\nname = "our-rules"\n', "./conjcheck", '"$CONJCHECK" .'),
+        ('[project]\nname = "conjcheck"\n', ".", '"$CONJCHECK"'),
+    ],
+)
+def test_the_workflow(project, place, install, here):
+    """The workflow file is YAML with the steps in order: the sources, Python, installation, pytest on the folder, the report always.
+    conjcheck comes from the place of a clone, which the user is told to enter unless this is one."""
+    if project:
+        (here / "pyproject.toml").write_text(project)
     done = run("--workflow", "--folder", "rules", "--workflow-folder", "flows")
-    assert done.stdout == "wrote flows/conjectures.yml\n"
+    assert done.stdout.startswith("wrote flows/conjectures.yml\n")
+    assert ("put the place of your clone of conjcheck at CONJCHECK" in done.stdout) == (place != ".")
     document = yaml.safe_load((here / "flows" / "conjectures.yml").read_text())
+    assert document["env"] == {"CONJCHECK": place}
+    install = f"python -m pip install {install}"
     assert document[True] == ["push", "pull_request"]  # "on", as YAML 1.1 reads it
     assert document["permissions"] == {"contents": "read"}
     (job,) = document["jobs"].values()

@@ -70,7 +70,7 @@ def test_keep_going(tmp_path):
     """With --keep-going all failures are counted, space by space."""
     done = run(write(tmp_path, FAULTY), "--up-to", "4", "--keep-going", "--no-record", "--no-ledger")
     assert done.exit_code == 1
-    assert "all failures: Gr(1,3): 2 cases in 2 rows; Gr(1,4): 1 cases in 1 rows" in " ".join(done.stdout.split())
+    assert "all failures: Gr(1,3): 2 cases in 2 rows; Gr(1,4): 1 case in 1 row" in " ".join(done.stdout.split())
     assert sorted(path.name for path in tmp_path.iterdir()) == ["rule.py"]
 
 
@@ -276,3 +276,45 @@ def test_help():
     ):
         assert name in text
     assert marked("nobody") == []
+
+
+def test_what_cannot_be_recorded(tmp_path):
+    """The verdict is printed all the same; one line on standard error says why; agreement that is not recorded has status 2."""
+    (tmp_path / "records").write_text("a file where a folder should be")
+    for source, status, word in ((POWERS, 2, "agrees: powers"), (FAULTY, 1, "refuted: powers")):
+        done = run(write(tmp_path, source), "Gr(1,2)", "Gr(1,3)", "--no-ledger")
+        assert done.exit_code == status
+        assert done.stdout.startswith(word)
+        assert "recorded in" not in done.stdout
+        (line,) = done.stderr.splitlines()
+        assert line.startswith("Error: ")
+        assert "expected a file that can be written" in line
+    assert run(tmp_path / "rule.py", "Gr(1,2)", "--no-ledger", "--no-record").exit_code == 0
+
+
+def test_a_repaired_rule(tmp_path):
+    """After a repair the survey says which counterexample refutes no more, and citing the record calls nothing false."""
+    path = write(tmp_path, FAULTY)
+    assert run(path, "Gr(1,3)").exit_code == 1
+    write(tmp_path, POWERS)
+    os.utime(path, (1e9, 1e9))
+    done = run(path, "Gr(1,3)")
+    assert done.exit_code == 0
+    assert "1 counterexample on record refutes no more and was retired: Gr(1,3): (1) * (1) -> (2), q^(0)" in " ".join(
+        done.stdout.split()
+    )
+    cited = CliRunner().invoke(main, ["cite", str(tmp_path / "records" / "powers.json")]).stdout
+    assert "They agree there" in cited
+    assert "false" not in cited
+
+
+def test_a_sample_without_rows(tmp_path):
+    """A sample that meets no row of the premise says to raise --sample; one of few rows states no bound."""
+    source = POWERS.replace("on=ProjectiveSpaces()", "on=ProjectiveSpaces(), premise=lambda X, u, v: u.length + v.length == 0")
+    done = run(write(tmp_path, source), "Gr(1,9)", "--sample", "1", "--no-record", "--no-ledger")
+    assert done.exit_code == 2
+    assert "raise --sample" in " ".join(done.stdout.split())
+    done = run(write(tmp_path, POWERS), "Gr(1,9)", "--sample", "5", "--no-ledger")
+    assert "5 on Gr(1,9) (too few rows for a bound on the failures)" in " ".join(done.stdout.split())
+    cited = CliRunner().invoke(main, ["cite", str(tmp_path / "records" / "powers.json")]).stdout
+    assert "too few for a bound on the failures" in cited

@@ -29,7 +29,7 @@ def test_printed_and_written(tmp_path, words, options):
     done = run("Fl(1,3;4)", *words)
     assert (done.exit_code, done.stdout, done.stderr) == (0, text, "")
     path = tmp_path / "table"
-    done = run("Fl(1,3;4)", *words, "--output", path)
+    done = run("Fl(1,3;4)", *words, "-o" if words else "--output", path)
     assert (done.exit_code, done.stdout) == (0, "")
     assert path.read_text(encoding="utf-8") == text
     assert list(tmp_path.iterdir()) == [path]

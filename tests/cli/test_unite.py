@@ -75,6 +75,9 @@ def test_refusals(files, tmp_path):
     assert done.exit_code == 2
     assert f"{files[1]}: expected JSON" in done.stderr
     assert run(files[0], tmp_path / "none.json").exit_code == 2
+    plugin = tmp_path / "rule.py"
+    plugin.write_text("def rule(): ...")
+    assert "rule.py: expected a record such as conjectures/records/NAME.json" in run(files[0], plugin).stderr
 
 
 @pytest.mark.skipif(shutil.which("git") is None, reason="git is not installed")

@@ -53,7 +53,7 @@ def counterexamples(draw):
     k = draw(st.integers(0, len(PLACES) - 1))
     proof = draw(st.sampled_from([(None, None), ("a.json", None), ("b.1.json", None), (None, "words"), (None, "other words")]))
     rule, oracle = draw(st.sampled_from([(None, None), (k, None), (None, f"{k} alpha1"), (k, f"{k} alpha1")]))
-    return Counterexample(PLACES[k], rule, oracle, k == 0 and draw(st.booleans()), *proof)
+    return Counterexample(PLACES[k], rule, oracle, k == 0 and draw(st.booleans()), *proof, draw(st.sampled_from([None, HASH])))
 
 
 @st.composite
@@ -72,4 +72,5 @@ def records(draw):
         rule=HASH if coverage or sampled else draw(st.sampled_from([None, HASH])),
         coverage=tuple(coverage),
         samples=tuple(sampled),
+        file=draw(st.sampled_from([None, "rules.py"])),
     )

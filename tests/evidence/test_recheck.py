@@ -529,7 +529,7 @@ def test_without_conjcheck(rule, monkeypatch):
     accepted, (status, line) = recheck.judge([rule / "proof.json"], "plugin.py::my_rule")
     assert accepted[0] == 0
     assert status == 2
-    assert line.endswith("--rule needs an installed conjcheck: pip install conjcheck")
+    assert line.endswith("--rule needs an installed conjcheck: in its clone, pip install -e .")
 
 
 def test_a_rule_that_hangs(rule, monkeypatch):

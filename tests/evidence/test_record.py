@@ -14,6 +14,7 @@ from hypothesis import strategies as st
 from making import HASH, OTHER_HASH, records
 
 from conjcheck import Case, FlagVariety, Row
+from conjcheck.conjecture.discover import conjectures_in_file
 from conjcheck.errors import RecordError
 from conjcheck.evidence.record import (
     Counterexample,
@@ -76,6 +77,7 @@ TEXT = """{
   "version": 1,
   "conjecture": "my_rule",
   "status": "refuted",
+  "file": null,
   "statement": "",
   "ring": "quantum",
   "premise": false,
@@ -91,7 +93,8 @@ TEXT = """{
       "oracle": 1,
       "minimal": true,
       "certificate": null,
-      "instead": null
+      "instead": null,
+      "rule_hash": null
     }
   ]
 }
@@ -198,7 +201,7 @@ def test_stale():
 def test_the_record_as_it_stands(rule):
     """The current record has statement, ring and hash of the rule as it is now; a change of the file drops its coverage."""
     record = current_record(rule)
-    assert record == Record("my_rule", "open", ring="quantum", premise=False, rule=rule_hash(rule.file))
+    assert record == Record("my_rule", "open", ring="quantum", premise=False, rule=rule_hash(rule.file), file="plugin.py")
     write_record(rule, record.with_coverage([P2]))
     assert current_record(rule).coverage == (P2,)
     with Path(rule.file).open("a", encoding="utf-8") as file:
@@ -341,7 +344,44 @@ def test_written_in_one_step(rule, tmp_path, monkeypatch):
 
     monkeypatch.setattr(os, "replace", no_room)
     monkeypatch.setattr("pathlib.Path.replace", no_room)
-    with pytest.raises(OSError, match="no room"):
+    with pytest.raises(RecordError, match="expected a file that can be written, got no room; nothing was recorded"):
         write_record(rule, Record("my_rule", "open"))
     assert read_record(rule).rule == HASH
     assert list(path.parent.iterdir()) == [path]
+
+
+def test_one_record_for_one_file(rule):
+    """A record names its plug-in file; for a conjecture of that name in another file it is neither read nor written over."""
+    written = write_record(rule, current_record(rule)).read_text(encoding="utf-8")
+    other = Path(rule.file).with_name("other.py")
+    other.write_text(Path(rule.file).read_text(encoding="utf-8"), encoding="utf-8")
+    (twin,) = conjectures_in_file(other)
+    words = "expected the record of my_rule in other.py, got that of my_rule in plugin.py; .* rename one of the two functions"
+    with pytest.raises(RecordError, match=words):
+        read_record(twin)
+    with pytest.raises(RecordError, match=words):
+        write_record(twin, Record("my_rule", "open", file="other.py"))
+    assert record_path(rule).read_text(encoding="utf-8") == written
+    with pytest.raises(RecordError, match=r"expected one plug-in file in both records of my_rule, got a\.py and b\.py"):
+        merge(Record("my_rule", "open", file="a.py"), Record("my_rule", "open", file="b.py"))
+    write_record_file(record_path(rule), Record("my_rule", "open"))
+    assert read_record(twin).file is None, "an old record names no file, and goes with any"
+
+
+def test_what_refutes_which_version():
+    """A counterexample refutes the version of the rule that it names; one that names none, none that is named."""
+    mine, its, nobodys = (Counterexample(CASE, 0, 1, minimal=False, rule_hash=version) for version in (HASH, OTHER_HASH, None))
+    for known, expected in ((mine, True), (its, False), (nobodys, False)):
+        record = Record("my_rule", "refuted", (known,), rule=HASH)
+        assert bool(record.refuting()) == bool(record.refuting(HASH)) == expected
+        assert bool(record.refuting(OTHER_HASH)) == (known is its)
+    assert Record("my_rule", "refuted", (nobodys,)).refuting(HASH), "a record from before versions were named is believed"
+    with pytest.raises(RecordError, match="expected one version of the rule at counterexample"):
+        merge(Record("my_rule", "refuted", (mine,)), Record("my_rule", "refuted", (its,)))
+
+
+def test_a_folder_that_takes_nothing(rule):
+    """Where nothing can be written, that is an error of the record, and names the file."""
+    record_path(rule).parent.write_text("a file", encoding="utf-8")
+    with pytest.raises(RecordError, match=r"my_rule\.json: expected a file that can be written"):
+        write_record(rule, Record("my_rule", "open"))

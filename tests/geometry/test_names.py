@@ -1,6 +1,7 @@
 """Names of flag varieties outside type A: one is printed, several are read, and every refusal says what is possible."""
 
 import pickle
+import re
 from itertools import combinations
 
 import pytest
@@ -142,3 +143,29 @@ def test_refusals_name_the_offending_entry(call, message):
     with pytest.raises(NotationError) as error:
         call()
     assert str(error.value) == message
+
+
+@pytest.mark.parametrize(
+    ("name", "meant"),
+    [
+        ("gr(2,4)", "Gr(2,4)"),
+        ("FL(1,3;4)", "Fl(1,3;4)"),
+        ("lg( 3, 6)", "LG(3,6)"),
+        ("e6/p1", "E6/P1"),
+        ("q^5", "Q^5"),
+        ("Grr(2,4)", "Gr(2,4)"),
+    ],
+)
+def test_a_name_that_is_nearly_right(name, meant):
+    """A name in other letters is answered with the one that was meant, which can be read."""
+    with pytest.raises(NotationError, match=re.escape(f"; did you mean {meant}?")):
+        parse_name(name)
+    assert parse_name(meant)
+
+
+@pytest.mark.parametrize("name", ["", "projective plane", "Gr", "(2,4)", 5])
+def test_a_name_that_is_far_away(name):
+    """Where nothing is near, nothing is guessed."""
+    with pytest.raises(NotationError) as caught:
+        parse_name(name)
+    assert "did you mean" not in str(caught.value)

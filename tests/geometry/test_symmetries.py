@@ -8,9 +8,9 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from conjcheck import product
-from conjcheck.geometry.case import Case
+from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import Fl, FlagVariety, Gr
-from conjcheck.geometry.symmetries import diagram_images, orbit_of_case, seidel
+from conjcheck.geometry.symmetries import count_row_orbits, diagram_images, orbit_of_case, seidel
 
 SPACES = [Gr(1, 2), Gr(2, 4), Gr(2, 5), Fl(3), Fl(4), Fl(1, 3, n=4), Fl(1, 2, n=4), Fl(2, 3, n=5)]
 OTHERS = [FlagVariety(name) for name in ("B2/B", "B3/P2", "C3/P1,3", "D4/B", "D5/P5", "E6/P1", "G2/B")]
@@ -169,3 +169,26 @@ def test_how_much_symmetry_saves():
         left -= found
         sizes.append(len(found))
     assert sorted(sizes) == [18, 27]
+
+
+@pytest.mark.parametrize("name", ["Gr(2,4)", "Fl(3)", "Gr(2,5)", "LG(2,4)", "Q^3"])
+def test_rows_of_one_orbit_have_products_of_one_shape(name):
+    """What acts on products moves classes and shifts degrees: rows whose products differ in their coefficients lie in different orbits."""
+    X = FlagVariety(name)
+    by_shape = {}
+    for u in X.classes:
+        for v in X.classes:
+            by_shape.setdefault(tuple(sorted(product(u, v).values())), []).append(Row(X, u, v))
+    everything = [row for group in by_shape.values() for row in group]
+    apart = [count_row_orbits(group) for group in by_shape.values()]
+    assert count_row_orbits(everything) == (sum(count for count, _ in apart), True)
+    assert count_row_orbits(everything)[0] < count_row_orbits(everything, seidel_too=False)[0] < len(everything)
+
+
+def test_row_orbits_by_hand():
+    """On P^2 all nine rows are one orbit; swapping alone leaves six of them, and without time there is at least one."""
+    X = FlagVariety("Gr(1,3)")
+    everything = [Row(X, u, v) for u in X.classes for v in X.classes]
+    assert count_row_orbits(everything) == (1, True)
+    assert count_row_orbits(everything, seidel_too=False, diagrams_too=False) == (6, True)
+    assert count_row_orbits(everything, deadline=0.0) == (1, False)

@@ -81,8 +81,12 @@ def test_a_refutation(project):
 
 @pytest.mark.parametrize(
     ("case", "words"),
-    [("nonsense", "expected a row such as"), ("Gr(2,4): (1) * (1)", "expected a case on Gr(1,3), Gr(1,4), the family of powers")],
-    ids=["nonsense", "another family"],
+    [
+        ("nonsense", "expected a row such as"),
+        ("Gr(2,4): (1) * (1)", "expected a case on Gr(1,3), Gr(1,4), the family of powers"),
+        ("Gr(1,3): (1) * (1) -> ()", "expected a case with l(u) + l(v) = l(w) + sum d_i deg q_i"),
+    ],
+    ids=["nonsense", "another family", "degree axiom"],
 )
 def test_a_case_that_is_none(project, case, words):
     """A case that denotes nothing, or lies outside the family, is one failing item with a clear line, never an agreement."""
@@ -103,6 +107,7 @@ def test_rules_in_trouble(project):
         "skips": "pytest.skip('not today')",
         "xfails": "pytest.xfail('not today')",
         "exits": "pytest.exit('not today')",
+        "quits": "import os; os._exit(0)",
         "sleeps": "time.sleep(1000)",
         "half": "return 0.5",
         "asks": "return product(u, v)",
@@ -127,6 +132,7 @@ def test_rules_in_trouble(project):
         "skips": "crashed",
         "xfails": "crashed",
         "exits": "crashed",
+        "quits": "crashed",
         "sleeps": "too-slow",
         "half": "not-a-count",
         "asks": "not-independent",
@@ -141,6 +147,44 @@ def test_rules_in_trouble(project):
     outcomes = result.parseoutcomes()
     assert outcomes["failed"] == len(statuses)
     assert outcomes.get("passed", 0) == 0
+
+
+def test_laws_alone_are_no_agreement(project):
+    """Laws and probes without the survey give "no verdict", on the screen and in the JSON of pages, never "agrees"."""
+    project.write("conjectures/powers.py", PROJECTIVE.format(name="powers"))
+    result = project.run("-k", "laws")
+    assert result.ret == 0
+    assert project.table(result) == {"powers": "no verdict"}
+    assert "the survey did not run, or not to its end; the laws hold around" in result.text
+
+
+def test_a_rule_that_depends_on_what_was_asked_before(project):
+    """A rule that is right when asked first, and wrong later on, is unstable, not refuted."""
+    project.write(
+        "conjectures/moody.py",
+        """
+        from conjcheck import ProjectiveSpaces, candidate
+
+        asked = {}
+
+        @candidate(on=ProjectiveSpaces())
+        def moody(X, u, v, w, d):
+            asked[X] = asked.get(X, 0) + 1
+            right = u.length + v.length == w.length + d[0] * X.n
+            return int(right) if asked[X] <= 2 else 1 - int(right)
+        """,
+    )
+    result = project.run()
+    assert project.table(result) == {"moody": "unstable"}
+    assert "in a process that asks nothing else: agrees, value" in " ".join(result.text.split())
+
+
+def test_two_conjectures_of_one_name_in_one_file(project):
+    """Python keeps the last one only: that is said, and fails."""
+    project.write("conjectures/twice.py", PROJECTIVE.format(name="powers") + PROJECTIVE.format(name="powers"))
+    result = project.run()
+    assert result.ret == 1
+    assert "expected one conjecture of each name, got 'powers' at lines" in result.text
 
 
 def test_nothing_compared(project):

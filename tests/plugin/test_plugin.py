@@ -1,11 +1,12 @@
 """Options, collection, seeds and output of the pytest plug-in."""
 
 import re
+import shlex
 import subprocess
 import sys
 
 import pytest
-from sources import CLAIM, PROJECTIVE, UNIT, WRONG
+from sources import CLAIM, FAULT, PROJECTIVE, UNIT, WRONG
 
 pytest_plugins = ["pytester"]
 
@@ -330,3 +331,34 @@ def test_without_the_plugin_of_hypothesis(project):
     result = project.run("-p", "no:hypothesispytest")
     result.assert_outcomes(passed=3)
     assert project.table(result) == {"unit": "agrees"}
+
+
+def test_a_broken_file_is_in_the_table(project):
+    """The final table names a file that cannot be imported, also when nothing else ran."""
+    project.write("conjectures/lost.py", "import no_such_module\n")
+    line = next(line for line in project.run().outlines if line.startswith("lost.py "))
+    assert re.split(r"\s{2,}", line) == [
+        "lost.py",
+        "no verdict",
+        "cannot be used: ModuleNotFoundError: No module named 'no_such_module'",
+    ]
+
+
+def test_replay_from_elsewhere(project, monkeypatch):
+    """The replay line works where pytest was called: below the root directory, above it, and beside it."""
+    project.write("my rules/conjectures/twice.py", WRONG.format(name="twice"))
+    (project.path / "pytest.ini").rename(project.path / "my rules" / "pytest.ini")
+    (project.path / "beside").mkdir()
+    file = project.path / "my rules" / "conjectures" / "twice.py"
+    for here, shown in (
+        (project.path, "my rules/conjectures/twice.py"),
+        (file.parent, "twice.py"),
+        (project.path / "beside", str(file)),
+    ):
+        monkeypatch.chdir(here)
+        result = project.run(str(file), "-k", "survey")
+        replay = next(line for line in result.outlines if line.startswith("replay"))
+        words = shlex.split(replay.removeprefix("replay"))
+        assert words == ["pytest", f"{shown}::twice", "--conjcheck-case", FAULT]
+        again = project.run(*words[1:])
+        again.assert_outcomes(failed=1)

@@ -18,6 +18,7 @@ def test_written_verified_stale(project):
     data = json.loads(text)
     assert (data["conjecture"], data["status"]) == ("twice", "refuted")
     (found,) = data["counterexamples"]
+    assert found.pop("rule_hash") == data["rule"]
     assert found | {"certificate": None, "instead": None} == {
         "where": FAULT,
         "rule": 2,
@@ -53,9 +54,18 @@ def test_written_verified_stale(project):
         == 1
     )
     repaired.stdout.fnmatch_lines(
-        ["*the rule and the oracle agree there now; if the rule was repaired, remove the counterexample*"]
+        ["*the rule and the oracle agree there now; if the rule was repaired, record it anew with --conjcheck-record*"]
     )
     assert "Traceback" not in repaired.text
+
+    anew = project.run("--conjcheck-record", "-rP")
+    anew.assert_outcomes(passed=2)
+    anew.stdout.fnmatch_lines(["*1 counterexample on record refutes no more and was retired: Gr(1,4): (2) [*] (3) -> (1),*"])
+    assert "budget ended" not in anew.text
+    data = json.loads((project.path / RECORD).read_text())
+    assert (data["status"], data["counterexamples"], len(data["coverage"])) == ("open", [], 2)
+    assert [path.name for path in (project.path / RECORD).parent.iterdir()] == ["twice.json"]
+    project.run("-k", "survey or recorded").assert_outcomes(passed=1, deselected=1)
 
 
 def test_other_values(project):
@@ -181,3 +191,27 @@ def test_a_survey_that_does_not_get_there(project):
     assert project.table(result) == {"late": "refuted"}
     result = project.run("--conjcheck-budget=0.25", "-k", "survey", "-rP")
     result.stdout.fnmatch_lines(["note         on record as refuted; the budget ended before the counterexample"])
+
+
+def test_what_cannot_be_recorded_is_a_note(project):
+    """Where nothing can be written, the verdict stands, with a note that it is not on record."""
+    project.write("conjectures/powers.py", PROJECTIVE.format(name="powers"))
+    project.write("conjectures/twice.py", WRONG.format(name="twice"))
+    project.write("conjectures/records", "a file where a folder should be")
+    result = project.run("--conjcheck-record", "-k", "survey", "-rP")
+    result.assert_outcomes(passed=1, failed=1, deselected=2)
+    assert project.table(result) == {"powers": "agrees", "twice": "refuted"}
+    assert result.text.count("not recorded: ") >= 2
+
+
+def test_two_conjectures_of_one_name(project):
+    """A second file with a function of the same name does not share the record of the first: it is told to rename one."""
+    for name in ("first", "second"):
+        project.write(f"conjectures/{name}.py", PROJECTIVE.format(name="powers"))
+    project.run("conjectures/first.py", "-k", "survey", "--conjcheck-record").assert_outcomes(passed=1, deselected=1)
+    text = (project.path / "conjectures/records/powers.json").read_text()
+    result = project.run("conjectures/second.py", "--conjcheck-record")
+    assert len(project.summary(result)) == 1
+    assert "expected the record of powers in second.py, got that of powers in first.py" in result.text
+    assert "rename one of the two functions" in result.text
+    assert (project.path / "conjectures/records/powers.json").read_text() == text

@@ -57,6 +57,7 @@ def hostile_record():
         "minimal": True,
         "certificate": "<script>alert(3).json",
         "instead": None,
+        "rule_hash": "sha256:" + "0" * 64,
     }
     return {
         "format": "conjcheck-record",

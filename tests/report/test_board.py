@@ -6,6 +6,7 @@ import pytest
 from page_samples import CONJECTURES, TAGS, TURNED, Seen, document, hostile_record, outcomes
 
 from conjcheck.conjecture.discover import conjectures_in_file
+from conjcheck.errors import RecordError
 from conjcheck.evidence.source import rule_hash
 from conjcheck.report.board import board_of_documents, board_of_folder, board_page, board_table, plugin_files, write_run
 from conjcheck.report.pages import documents_of, write_pages
@@ -183,3 +184,65 @@ def test_a_run_has_an_index(tmp_path):
         assert (tmp_path / "out" / f"{name}.html").is_file()
     assert "SyntaxError: <b>" in seen.text
     assert "the plug-in cannot be used" in seen.text
+
+
+def test_the_newest_evidence_counts(folder, tmp_path):
+    """Of a record and a page about the rule as it stands the newer one counts, and the row says which, in both outputs."""
+    (rule,) = conjectures_in_file(folder / "covered.py")
+    run = [outcomes("agrees")[0] | {"conjecture": "covered", "file": rule.file}]
+    for made, source, scope in (
+        ("2001-01-01 00:00 UTC", "from its record", "all of Gr(1,3)"),
+        ("2931-01-01 00:00 UTC", "from its last run", "all 2"),
+    ):
+        write_pages(tmp_path, documents_of(run, made=made))
+        row = rows_of(folder, tmp_path)["covered"]
+        assert row["source"] == source
+        assert row["scope"].startswith(scope)
+        assert f"({source})" in board_table([row])
+        assert source in Seen(board_page([row], "t")).text
+
+
+def test_a_counterexample_to_an_earlier_version(folder, tmp_path):
+    """A rule that was refuted in an earlier version is not called refuted; the row says what was."""
+    where, version = "Gr(1,3): (1) * (1) -> (2), q^(0)", "sha256:" + "1" * 64
+    found = [{"where": where, "rule": 0, "oracle": 1, "minimal": True, "rule_hash": version}]
+    for current in (rule_hash(folder / "plain.py"), version):
+        (folder / "records" / "plain.json").write_text(record("plain", status="refuted", rule=current, counterexamples=found))
+        row = rows_of(folder, tmp_path)["plain"]
+        assert (row["status"], row["counterexample"]) == ("open", "")
+        assert row["note"] == f"an earlier version of the rule was refuted at {where}"
+        assert f"an earlier version of the rule was refuted at {where}" in board_table([row]).replace("&#42;", "*").replace(
+            "&#62;", ">"
+        )
+
+
+def test_the_record_of_another_file(folder, tmp_path):
+    """A record of a conjecture of the same name in another file is not taken for its own."""
+    (folder / "records" / "plain.json").write_text(record("plain", file="other.py"))
+    row = rows_of(folder, tmp_path)["plain"]
+    assert row["status"] == "unreadable"
+    assert "expected the record of plain in plain.py, got that of plain in other.py" in row["scope"]
+
+
+def test_files_that_are_no_text(folder, tmp_path):
+    """A plug-in that is not UTF-8, and one that names a file which cannot be read, have rows that say why; the others stay."""
+    (folder / "latin.py").write_bytes(b"# caf\xe9\n" + RULE.format(name="latin").encode())
+    (folder / "needy.py").write_text(RULE.format(name="needy") + "\nimport _blank\n")
+    (folder / "_blank.py").write_bytes(b"# -*- coding: latin-1 -*-\n# caf\xe9\n")
+    rows = rows_of(folder, tmp_path)
+    for name in ("latin", "needy"):
+        assert rows[name]["status"] == "broken"
+        assert "expected a readable Python file in UTF-8" in rows[name]["scope"]
+    assert rows["plain"]["status"] == "open"
+
+
+def test_a_row_that_fails_late(folder, tmp_path, monkeypatch):
+    """Whatever is wrong with the hash of a rule is told in its row."""
+
+    def unreadable(file):
+        raise RecordError(f"{file}: expected a readable file, since the rule names it, got none")
+
+    monkeypatch.setattr("conjcheck.report.board.rule_hash", unreadable)
+    row = rows_of(folder, tmp_path)["plain"]
+    assert row["status"] == "broken"
+    assert "since the rule names it" in row["scope"]

@@ -105,6 +105,35 @@ def test_wide_things_scroll_in_their_own_box(browser, folder):
         assert box.evaluate("b => b.scrollWidth > b.clientWidth")
 
 
+def test_the_board_stacks_on_a_phone(browser, folder):
+    """At 390 pixels nothing of the board is hidden at a side: each cell stands below the other with its label, and filters still work."""
+    with opened(browser, folder / "board.html", width=390) as window:
+        box = window.get_by_role("region", name="conjectures")
+        assert box.evaluate("b => b.scrollWidth <= b.clientWidth")
+        cells = window.locator("tbody tr").first.locator("th, td:not(.none)")
+        lefts = cells.evaluate_all("all => all.map(one => one.getBoundingClientRect().left)")
+        tops = cells.evaluate_all("all => all.map(one => one.getBoundingClientRect().top)")
+        assert len(lefts) >= 4
+        assert len(set(lefts)) == 1
+        assert tops == sorted(set(tops))
+        label = window.locator("tbody td").first.evaluate("one => getComputedStyle(one, '::before').content")
+        assert "status" in label
+        window.get_by_label("find").fill("LANTERN")
+        assert names(window) == ["lantern_rule"]
+        assert window.locator("tbody tr").nth(1).is_hidden()
+
+
+def test_conditions_fit_on_a_phone(browser, folder):
+    """At 390 pixels the table of conditions is not cut; what still scrolls has a shade at the edge behind which there is more."""
+    with opened(browser, folder / "lantern.html", width=390) as window:
+        fits = window.locator(".scroll[aria-label=conditions]").evaluate("b => b.scrollWidth <= b.clientWidth")
+        assert fits
+        wide = window.locator(".scroll[aria-label=statement]")
+        assert wide.evaluate("b => b.scrollWidth > b.clientWidth")
+        layers = wide.evaluate("b => getComputedStyle(b).backgroundAttachment").split(", ")
+        assert layers == ["local", "local", "scroll", "scroll"]
+
+
 def test_paper(browser, folder):
     """Printed, the page is dark on white and without its list of contents."""
     with opened(browser, folder / "lantern.html", scheme="dark") as window:

@@ -86,7 +86,7 @@ def test_samples():
 
 def test_refutation():
     """A counterexample is quoted with both values, whether it is the smallest, and its certificate or what stands in its place."""
-    found = Counterexample(CASE, 1, 0, minimal=True, certificate="a_rule.12345678.certificate.json")
+    found = Counterexample(CASE, 1, 0, minimal=True, certificate="a_rule.12345678.certificate.json", rule_hash=HASH)
     text = citation(replace(OPEN, status="refuted", counterexamples=(found,)))
     assert (
         f"It is false: at {CASE} the rule gives 1 instead of 0; this is the smallest counterexample: all smaller cases were compared "
@@ -99,6 +99,23 @@ def test_refutation():
     assert text.endswith("It is also false: at Fl(5): [21543] * [21543] the statement is false.")
     claim = citation(Record("a_claim", "refuted", (Counterexample(CASE, None, 4, minimal=False),)))
     assert claim.endswith("the statement is false, and the constant is 4.")
+
+
+def test_an_earlier_version_is_not_this_one():
+    """A counterexample to another version of the rule makes nothing false that is said of this one; nor does one to a version unknown."""
+    found = Counterexample(CASE, 1, 0, minimal=True, rule_hash="sha256:" + "f" * 64)
+    for style in (PLAIN, LATEX):
+        text = citation(replace(OPEN, status="refuted", counterexamples=(found,)), style)
+        assert "false" not in text
+        assert "An earlier version of the rule was refuted " in text
+    assert (
+        f"An earlier version of the rule was refuted at {CASE}; the SHA-256 of that version begins with ffffffffffff."
+        in citation(replace(OPEN, counterexamples=(found,)))
+    )
+    unknown = citation(replace(OPEN, status="refuted", counterexamples=(replace(found, rule_hash=None),)))
+    assert f"A version of the rule that the record does not name was refuted at {CASE}." in unknown
+    alone = citation(Record("a_rule", "open", (found,), rule=HASH))
+    assert alone.startswith(f"An earlier version of the rule a_rule was refuted at {CASE}")
 
 
 def test_failures_are_never_called_agreement():
@@ -121,7 +138,7 @@ def test_nothing():
 
 def test_latex():
     """In LaTeX spaces, classes and values are mathematics, and names are escaped."""
-    found = Counterexample(CASE, 1, "2 alpha1", minimal=False)
+    found = Counterexample(CASE, 1, "2 alpha1", minimal=False, rule_hash=HASH)
     text = citation(replace(OPEN, status="refuted", counterexamples=(found,)), LATEX)
     assert r"\texttt{a\_rule}" in text
     assert r"all Grassmannians $\mathrm{Gr}(k,n)$ with $n \le 4$" in text

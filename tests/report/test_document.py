@@ -70,6 +70,20 @@ def test_a_record_alone():
     assert "from the record alone" in made["notes"][0]
 
 
+def test_a_record_of_a_repaired_rule():
+    """A counterexample to another version of the rule, or to one not named, is a note, and no counterexample to this one."""
+    data = hostile_record()
+    for version, who in (
+        ("sha256:" + "1" * 64, "an earlier version"),
+        (None, "a version of the rule that the record does not name"),
+    ):
+        made = document_of_record(data | {"counterexamples": [data["counterexamples"][0] | {"rule_hash": version}]})
+        assert (made["status"], made["failure"]) == ("open", None)
+        assert made["notes"][1].startswith(who)
+        assert "was refuted at Gr(2,5): (2) * (2,1) -> (), q^(1)" in made["notes"][1]
+        assert made["record"]["counterexamples"][0]["earlier"]
+
+
 def test_an_open_record_is_not_called_agreement():
     """Without a counterexample a record is open, with what was compared."""
     made = document_of_record(hostile_record() | {"status": "open", "counterexamples": []})
@@ -127,4 +141,4 @@ def test_scope_of_spaces():
     assert scope_of_spaces([{"space": "Gr(1,2)", "drawn": True}]) == ""
     assert scope_of_spaces([whole, part]) == "all of Gr(1,2) and the first 2 of 9 rows of Gr(1,3); 6 rows, 8 cases"
     assert scope_of_spaces([whole, whole | {"space": "Fl(3)"}]) == "all of 2 spaces, Gr(1,2) to Fl(3); 8 rows, 10 cases"
-    assert "parts of 1 more spaces" in scope_of_spaces([part, part, part])
+    assert "parts of 1 more space" in scope_of_spaces([part, part, part])

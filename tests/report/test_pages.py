@@ -106,7 +106,13 @@ def test_a_record_gets_the_product_of_the_oracle(name):
 
 def test_a_record_is_not_believed():
     """A value on record that is not the oracle's is said to be wrong."""
-    found = {"where": "Gr(3,5): (2) * (2,1) -> (), q^(1)", "rule": 1, "oracle": 5, "minimal": True}
+    found = {
+        "where": "Gr(3,5): (2) * (2,1) -> (), q^(1)",
+        "rule": 1,
+        "oracle": 5,
+        "minimal": True,
+        "rule_hash": "sha256:" + "0" * 64,
+    }
     data = hostile_record() | {"counterexamples": [found]}
     made = document_of_record_file(data, file="x.json")
     assert "the record is wrong: the oracle gives 0 there, not 5" in made["notes"]

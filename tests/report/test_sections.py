@@ -36,6 +36,8 @@ def test_words_of_a_layer():
     part = layer_words(plain | {"complete": False, "all_orbits": False, "cases": 2})
     assert "at least: 2 failing cases in at least 1 orbit" in part
     assert "among the 3 rows looked at" in part
+    rows = layer_words(plain | {"pairs": 8, "cases": 0, "orbits": 2})
+    assert rows.endswith("at 8 ordered pairs (u, v) of 9: 8 failing rows in 2 orbits under the symmetries of the space.")
 
 
 def test_a_failing_space_is_never_called_agreed():
@@ -78,3 +80,4 @@ def test_a_diagnosis_of_any_shape():
     assert found["conditions"] == [{"words": "w", "expression": "", "failing": "2", "agreeing": "?", "informative": "?"}]
     assert found["suggestion"]["premise"] == "p"
     assert found["firsts"] == []
+    assert diagnosis({"failing": 3, "agreeing": 2, "by_rows": True})["words"] == ["Looked at: 3 failing and 2 agreeing rows."]

@@ -1,5 +1,6 @@
 """The report in plain text, and the table at the end of a run."""
 
+import re
 import shlex
 from dataclasses import replace
 
@@ -282,3 +283,13 @@ def test_a_failure_without_a_place():
     (_, line) = summary_table([outcome.as_json()])
     assert "undefined" in line
     assert "agrees" not in line
+
+
+def test_what_cannot_be_used():
+    """A file that cannot be imported has a line of its own: no verdict, and why."""
+    broken = [{"file": "conjectures/lost.py", "problem": "  File ...\nModuleNotFoundError: No module named 'nothing'\n"}]
+    outcomes = [line_of("rule", "survey", "agrees", rows=3)]
+    *before, line = summary_table(outcomes, broken)
+    assert len(before) == 2
+    assert re.split(r"\s{2,}", line) == ["lost.py", "no verdict", "cannot be used: ModuleNotFoundError: No module named 'nothing'"]
+    assert len(summary_table([], broken)) == 2

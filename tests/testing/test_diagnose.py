@@ -20,6 +20,7 @@ from conjcheck.testing.bank import TestBank
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.conditions import Found, Test, iter_tests
 from conjcheck.testing.diagnose import diagnose, worded
+from conjcheck.testing.diagnosis import Diagnosis, Suggestion
 from conjcheck.testing.examine import EFFORTS, Examination
 from conjcheck.testing.features import FEATURES, Feature
 from conjcheck.testing.finding import Finding
@@ -483,3 +484,44 @@ def test_the_guard_is_left_as_it_was():
 def test_every_feature_says_what_it_needs():
     """A feature depends on the space, the row or the case; a premise on rows needs no case."""
     assert {feature.needs for feature in FEATURES} == {"space", "row", "case"}
+
+
+def short(X, u, v):
+    """A premise with a name."""
+    return u.length <= 5
+
+
+class Called:
+    """A premise that is no function."""
+
+    def __call__(self, X, u, v):
+        return u.length <= 5
+
+
+@pytest.mark.parametrize(
+    ("own", "words"),
+    [
+        (lambda X, u, v: u.length <= 5, "(u.length <= 5) and (not any(d))"),
+        (short, "(short(X, u, v)) and (not any(d))"),
+        (Called(), "(your own premise) and (not any(d))"),
+    ],
+    ids=["lambda", "named", "neither"],
+)
+def test_a_suggestion_keeps_the_premise_that_is_there(own, words):
+    """The text for the declaration is joined to the user's own premise, which it replaces, in Python where its source is at hand."""
+    fault = next(fault for fault in faulty.FAULTS if fault.name == "only d > 0")
+    planted = faulty.planted(fault)
+
+    def rule(X, u, v):
+        return planted.rule(X, u, v)
+
+    assert rule.__globals__["short"] is short
+    found, _ = worked_out(candidate(on=planted.on, premise=own)(rule))
+    assert found.suggestion.premise == f"premise=lambda X, u, v, w, d: {words}"
+
+
+def test_a_suggestion_without_a_text():
+    """A premise that no short expression says has no text for the declaration, and that is said."""
+    one = Suggestion("u is odd", "", True, 5, 4, 3, "Gr(2,4)")
+    assert one.premise == ""
+    assert "no short Python expression says it" in Diagnosis(1, 5, 4, "Gr(2,4)", suggestion=one).suggested

@@ -4,6 +4,7 @@ import pytest
 from planted import outcomes_of, truth
 
 from conjcheck import Case, Fl, Gr, Row, Varieties, candidate, claim, product
+from conjcheck.geometry.case import rows
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.explain import explain
 from conjcheck.testing.finding import Finding
@@ -50,8 +51,10 @@ def test_the_row_of_these_tests():
         ({Q2: 1, UNIT: 1, (F.identity, (0, 2)): 1}, ("overcount", "support")),
         ({Q2: 1, (F.identity, (0, 2)): 1}, ("overcount", "support", "q-degree")),
         ({Q2: 1, UNIT: 1, (F.point, (0, 0)): 1}, ("overcount", "support", "degree axiom")),
+        ({(Q2[0], (0, 2)): 1, UNIT: 1}, ("undercount", "support", "degree axiom", "q-degree")),
+        ({(Q2[0], (0, 0)): 1, UNIT: 1}, ("overcount", "support", "degree axiom", "q-degree")),
     ],
-    ids=["too few", "too many", "one side only", "wrong power of q", "lengths do not add up"],
+    ids=["too few", "too many", "one side only", "wrong power of q", "lengths do not add up", "q^2 for q", "1 for q"],
 )
 def test_kinds(terms, kinds):
     """The sign of the error, a zero on one side only, a wrong power of q, a broken degree axiom each have their word."""
@@ -129,3 +132,19 @@ def test_a_rule_that_fails_elsewhere():
     explanation = explain(Comparer(rule), Finding("refuted", Case(F, ROW.u, ROW.v, *Q2), 5, 1))
     assert explanation.kinds[0] == "overcount"
     assert explanation.by_rule == {Q2: 5}
+
+
+def test_a_wrong_power_on_a_grassmannian():
+    """With one q, too, q^2 in place of q is a wrong power of q and breaks the degree axiom."""
+    X = Gr(2, 4)
+    right = truth(X)
+
+    @candidate(on=Varieties(X))
+    def doubled(X, u, v):
+        return {(w, (2 * d[0],)): count for (w, d), count in right[u, v].items()}
+
+    comparer = Comparer(doubled)
+    with comparer.limit:
+        finding = next(found for row in rows(X) if (found := comparer.row(row).finding))
+    assert (finding.rule, finding.oracle) == (0, 1)
+    assert explain(comparer, finding).kinds == ("undercount", "support", "degree axiom", "q-degree")

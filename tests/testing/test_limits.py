@@ -1,5 +1,6 @@
 """The time limit for single calls."""
 
+import os
 import signal
 import threading
 import time
@@ -105,3 +106,16 @@ def test_ticks():
     after = len(ticks)
     spin(0.3)
     assert len(ticks) == after
+
+
+def test_a_rule_does_not_end_the_run():
+    """``os._exit`` raises while a call is limited, but in a forked copy it ends that copy; afterwards it is the real one again."""
+    real = os._exit
+    with CallLimit(5.0), CallLimit(5.0):
+        with pytest.raises(SystemExit, match=r"os\._exit\(0\) was called"):
+            os._exit(0)
+        child = os.fork()
+        if not child:
+            os._exit(7)
+        assert os.waitstatus_to_exitcode(os.waitpid(child, 0)[1]) == 7
+    assert os._exit is real

@@ -33,6 +33,15 @@ from conjcheck.testing.survey import Coverage, survey
 
 SPACES = [X for X in SMALL if X is not Fl(4)]
 CASES = [case for X in SPACES for case in cases_of(X)]
+TURNED = {
+    (1, 2, 3): (1, 2, 3),
+    (2, 1, 3): (1, 3, 2),
+    (1, 3, 2): (2, 1, 3),
+    (2, 3, 1): (3, 1, 2),
+    (3, 1, 2): (2, 3, 1),
+    (3, 2, 1): (3, 2, 1),
+}
+"""The diagram automorphism of Fl(3): conjugation by the longest element."""
 KINDS = st.sampled_from([rule_by_cases, rule_by_rows])
 
 FAULTS = st.one_of(
@@ -280,7 +289,7 @@ def test_layer_of_a_rule_that_is_always_zero():
 
 
 def test_layer_of_claims():
-    """The failing rows of a claim about products count one each."""
+    """The failing rows of a claim about products: on Fl(3) they are one orbit, and the report calls them rows."""
     X = Fl(3)
 
     @claim(on=Varieties(X))
@@ -291,7 +300,28 @@ def test_layer_of_claims():
     layer = layer_of(comparer, survey(comparer, budget=60.0).finding, budget=60.0)
     failing = [row for row, terms in truth(X).items() if len(terms) != 1]
     assert {(f.row.u, f.row.v) for f in layer.findings} == set(failing)
-    assert layer.orbits == layer.pairs == len(failing)
+    assert (layer.pairs, layer.orbits, layer.all_orbits) == (len(failing), 1, True)
+    text = " ".join(text_report(Examination(one_term).survey()).split())
+    assert "9 failing ordered pairs (u, v) among the 36 of Fl(3): 9 failing rows in 1 orbit under the symmetries of Fl(3)" in text
+    assert "9 failing rows and 27 agreeing ones" in text
+
+
+def test_layer_of_classical_claims():
+    """In the classical ring Seidel elements join no rows: what is left are swaps and the diagram automorphism."""
+    X = Fl(3)
+
+    @claim(on=Varieties(X), ring="classical")
+    def never(X, u, v, N):
+        return False
+
+    comparer = Comparer(never)
+    layer = layer_of(comparer, survey(comparer, budget=60.0).finding, budget=60.0)
+    turned = {X.schubert(permutation=a): X.schubert(permutation=b) for a, b in TURNED.items()}
+    orbits = {
+        frozenset({(u, v), (v, u), (turned[u], turned[v]), (turned[v], turned[u])})
+        for u, v in ((f.row.u, f.row.v) for f in layer.findings)
+    }
+    assert (layer.pairs, layer.orbits) == (36, len(orbits))
 
 
 def test_layer_without_time():

@@ -6,8 +6,9 @@ from dataclasses import replace
 import pytest
 from planted import rule_by_rows
 
-from conjcheck import Case, Row, claim
+from conjcheck import Case, Row, candidate, claim
 from conjcheck.geometry.families import Varieties
+from conjcheck.testing.examine import Examination
 from conjcheck.testing.explain import Explanation
 from conjcheck.testing.finding import STATUSES, Finding
 from conjcheck.testing.minimise import Layer, Minimum
@@ -105,3 +106,23 @@ def test_environment():
     for name in ("conjcheck ", "hypothesis ", "numpy ", "pytest ", "Python 3."):
         assert name in environment()
     assert "not installed" not in environment()
+
+
+@pytest.mark.parametrize(
+    ("ring", "words"),
+    [
+        ("quantum", "return a mapping {(w, d): count}, each one an int of 0 or more, or an iterable of distinct hashable objects"),
+        ("classical", "return a mapping {w: count}, each one an int"),
+        ("equivariant", "return a mapping {w: value}, each one a polynomial built from simple_roots(X)"),
+    ],
+)
+def test_the_remedy_of_a_product_rule(ring, words):
+    """A product rule that returns a list is told to return a mapping."""
+
+    @candidate(on=Varieties("Fl(3)"), ring=ring)
+    def listed(X, u, v):
+        return [1]
+
+    outcome = Examination(listed).survey()
+    assert outcome.status == "not-a-count"
+    assert outcome.remedy.startswith(words)

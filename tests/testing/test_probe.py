@@ -227,3 +227,19 @@ def test_levels():
         assert [n for n, _ in levels] == sorted({n for n, _ in levels})
         assert len(levels) <= 3
         assert all(X.n == n and 20 <= len(X.classes) <= 800 and X in family for n, spaces in levels for X in spaces)
+
+
+def test_the_end_of_the_time_is_no_failure(capsys):
+    """A search without a seed whose time is up while a row is drawn prints nothing: there is no failure to be reproduced."""
+
+    @candidate(on=Varieties("Fl(4)"), premise=lambda X, u, v: u is X.identity)
+    def unit(X, u, v):
+        return {(v, (0, 0, 0)): 1}
+
+    examination = Examination(unit)
+    for questions in (0, 30, 150):
+        count = EndsAt()
+        count.left = questions
+        run_probe(examination.probe_check(count), [Fl(4)], examination.comparer, count)
+        assert count.timed_out
+    assert capsys.readouterr().out == ""

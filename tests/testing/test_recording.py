@@ -5,9 +5,13 @@ import json
 
 import pytest
 
+from conjcheck import Case, Row
+from conjcheck.errors import RecordError
+from conjcheck.evidence.record import Counterexample, Record, write_record
 from conjcheck.evidence.source import rule_hash
+from conjcheck.testing.compare import Comparer
 from conjcheck.testing.examine import EFFORTS, Examination
-from conjcheck.testing.recording import certificate_path, counterexample
+from conjcheck.testing.recording import asked_again, certificate_path, counterexample, recording, write_recording
 
 SOURCE = """
 from conjcheck import *
@@ -47,6 +51,7 @@ def test_with_a_certificate(module, tmp_path):
     data = json.loads(path.read_text(encoding="utf-8"))
     assert data["claim"]["text"] == str(found.where)
     assert data["claim"]["value"] == found.oracle
+    assert found.rule_hash == rule_hash(module.wrong.file)
     assert data["rule"] == {"name": "wrong", "hash": rule_hash(module.wrong.file), "value": 0}
 
 
@@ -59,3 +64,39 @@ def test_without_one(module, tmp_path):
     assert list((tmp_path / "records").iterdir()) == []
     silent = counterexample(outcome.finding, module.never, minimal=True, confirmed_by="")
     assert "has no certificate" in silent.instead
+
+
+def test_a_record_from_before_versions_were_named(module):
+    """A counterexample that names no version is computed again; one at a place that is none of the family's any more is retired."""
+    places = ("Gr(1,4): (1) * (1) -> (2), q^(0)", "Gr(1,5): (1) * (1) -> (2), q^(0)", "Gr(1,3): (1) * (1) -> (2), q^(0)")
+    known = tuple(Counterexample(Case.parse(place), None, None, minimal=False, instead="words") for place in places)
+    write_record(module.wrong, Record("wrong", "refuted", known))
+    asked = []
+
+    def again(where):
+        asked.append(str(where))
+        return asked_again(Comparer(module.wrong), where)
+
+    made = recording(module.wrong, again)
+    assert sorted(asked) == sorted(places)
+    (left,) = made.record.counterexamples
+    assert (str(left.where), left.rule, left.oracle, left.rule_hash) == (places[0], 0, 1, rule_hash(module.wrong.file))
+    assert made.note == f"2 counterexamples on record refute no more and were retired: {places[2]}; {places[1]}"
+    write_recording(module.wrong, made)
+    assert recording(module.wrong, again).note == ""
+    assert len(asked) == 3, "what refutes this version is not asked again"
+
+
+def test_a_claim_about_rows(module):
+    """A row is asked again as a row."""
+    where = Row.parse("Gr(1,3): () * ()")
+    assert asked_again(Comparer(module.never), where).where == where
+    assert asked_again(Comparer(module.never), Row.parse("Gr(1,4): () * ()")) is None
+
+
+def test_a_folder_that_takes_nothing(module, tmp_path):
+    """Where no certificate can be written, that is an error of the record."""
+    (tmp_path / "records").write_text("a file")
+    outcome = Examination(module.wrong, EFFORTS["quick"]).survey()
+    with pytest.raises(RecordError, match="expected a file that can be written"):
+        counterexample(outcome.finding, module.wrong, minimal=True, confirmed_by="")

@@ -55,7 +55,7 @@ def test_premise_and_gaps():
     text = survey_scope(surveyed(rule), rule)
     assert text == (
         "all 2 spaces from Gr(1,2) to Gr(1,8); 10 rows, 10 cases inside the premise, 10 of them nonzero; "
-        "1 spaces in between are out of reach, the first C6/B"
+        "1 space in between is out of reach, the first C6/B"
     )
 
 
@@ -77,5 +77,5 @@ def test_probes():
     count.add(Row(X, X.point, X.identity), 5, 1, sampled=True)
     text = probe_scope([X, Gr(2, 4)], count)
     assert text.startswith(
-        "25 rows drawn at random on 2 spaces with n=4, 3 of them distinct, 245 cases (1 rows with all nonzero cases and"
+        "25 rows drawn at random on 2 spaces with n=4, 3 of them distinct, 245 cases (1 row with all nonzero cases and"
     )

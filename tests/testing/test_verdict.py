@@ -109,7 +109,7 @@ def test_every_failure_names_what_was_not_surveyed(tmp_path):
     _, outcome = surveyed(faulty(tmp_path, (3, 1, 1), (3, 2, 0), (5, 0, 2)), [Gr(1, n) for n in range(2, 6)], every=True)
     assert (str(outcome.finding.where), outcome.minimum.certified) == ("Gr(1,3): (1) * (1) -> (2), q^(0)", True)
     assert outcome.minimum.below == 4 + 4
-    assert outcome.note == "all failures: Gr(1,3): 2 cases in 2 rows; Gr(1,5): 1 cases in 1 rows"
+    assert outcome.note == "all failures: Gr(1,3): 2 cases in 2 rows; Gr(1,5): 1 case in 1 row"
 
 
 def test_a_sample(tmp_path):
@@ -232,7 +232,7 @@ def test_two_surveys_add_up(tmp_path):
         ([Gr(1, 9)], {"draws": 30, "seed": 1}),
     ):
         written = write_campaign(*surveyed(path, spaces, **terms))
-        assert written == tmp_path / "records" / "powers.json"
+        assert written == (tmp_path / "records" / "powers.json", "")
     record = read_record(load(path))
     assert [(c.X, c.seen, c.rows, c.cases, c.nonzero, c.failing, c.complete) for c in record.coverage] == [
         (Gr(1, n), n * n, n * n, n * n, n * n, 0, True) for n in (2, 3, 4)
@@ -282,6 +282,48 @@ def test_a_changed_rule(tmp_path):
     write_campaign(again, outcome)
     assert [c.X for c in read_record(load(path)).coverage] == [Gr(1, 2)]
     assert read_record(load(path)).rule == again.rule == current_record(load(path)).rule
+
+
+def test_a_repaired_rule(tmp_path):
+    """After a repair the old counterexample is computed again: renewed if it refutes still, else retired with its certificate."""
+    path = faulty(tmp_path, (3, 1, 1), (4, 2, 1))
+    for n in (3, 4):
+        write_campaign(*surveyed(path, [Gr(1, n)], every=True))
+    first = read_record(load(path))
+    assert [(str(c.where.X), c.rule_hash) for c in first.counterexamples] == [("Gr(1,3)", first.rule), ("Gr(1,4)", first.rule)]
+    faulty(tmp_path, (4, 2, 1))
+    os.utime(path, (1e9, 1e9))
+    words = "1 counterexample on record refutes no more and was retired: Gr(1,3): (1) * (1) -> (2), q^(0)"
+    done, outcome = surveyed(path, [Gr(1, 2)])
+    assert write_campaign(done, outcome)[1] == words
+    half = read_record(load(path))
+    assert (half.status, half.rule != first.rule) == ("refuted", True)
+    (left,) = half.counterexamples
+    assert (left.where, left.rule_hash, left.minimal, left.rule) == (first.counterexamples[1].where, half.rule, False, 7)
+    proof = json.loads((tmp_path / "records" / left.certificate).read_text())
+    assert proof["rule"]["hash"] == half.rule
+    assert not (tmp_path / "records" / first.counterexamples[0].certificate).exists()
+    write(tmp_path, POWERS)
+    os.utime(path, (2e9, 2e9))
+    write_campaign(*surveyed(path, [Gr(1, 2)]))
+    last = read_record(load(path))
+    assert (last.status, last.counterexamples) == ("open", ())
+    assert [name.name for name in (tmp_path / "records").iterdir()] == ["powers.json"]
+
+
+@pytest.mark.parametrize("what", ["import os\n        os._exit(0)", "raise ValueError('no')"])
+def test_a_repair_that_cannot_be_judged(tmp_path, what):
+    """Where the rule gives no value any more, even ends its process, the old counterexample stays that of the old version."""
+    path = faulty(tmp_path, (3, 1, 1))
+    write_campaign(*surveyed(path, [Gr(1, 3)]))
+    first = read_record(load(path))
+    write(tmp_path, FAULTY.replace("{FAULTS}", "{(3, 1, 1)}").replace("return 7", what))
+    os.utime(path, (1e9, 1e9))
+    _, note = write_campaign(*surveyed(path, [Gr(1, 2)]))
+    assert "the counterexample to an earlier version at Gr(1,3): (1) * (1) -> (2), q^(0) could not be computed again" in note
+    record = read_record(load(path))
+    assert (record.status, [c.rule_hash for c in record.counterexamples]) == ("open", [first.rule])
+    assert record.refuting() == []
 
 
 def test_changed_after_the_survey(tmp_path):
