@@ -72,7 +72,7 @@ def main(context: click.Context) -> None:
       0    all is as hoped: it agrees, it is written, something survives
       1    everything ran, and something is not: refuted, different, rejected
       2    nothing was found out: wrong usage, a file that cannot be used,
-           a space out of reach, no time
+           a space out of reach, a survey that could not be finished
       130  interrupted
 
     \b

@@ -28,7 +28,7 @@ _REMEDY = (
 )
 
 
-@click.command("audit")
+@click.command("audit", short_help="Hold the oracle against itself.")
 @click.argument("spaces", nargs=-1, metavar="[SPACE]...", shell_complete=complete_space)
 @click.option("--rank", type=click.IntRange(1, 8), metavar="N", help="Also all G/P of types A to G of rank at most N (1 to 8).")
 @click.option(

@@ -12,7 +12,7 @@ from conjcheck.cli.common import FAILED, Stop
 __all__ = ["command"]
 
 
-@click.command("board")
+@click.command("board", short_help="One table of all conjectures in a folder.")
 @click.argument("folder", type=click.Path(exists=True, file_okay=False, path_type=Path), metavar="FOLDER")
 @click.option(
     "-o", "--output", type=click.Path(dir_okay=False, path_type=Path), metavar="FILE", help="The page.  [default: board.html]"

@@ -12,7 +12,7 @@ from conjcheck.errors import RecordError
 __all__ = ["command"]
 
 
-@click.command("cite")
+@click.command("cite", short_help="A record in sentences for a paper.")
 @click.argument("record", required=False, type=click.Path(exists=True, dir_okay=False, path_type=Path), metavar="[RECORD]")
 @click.option("--text", "form", flag_value="text", default="text", help="Sentences in plain text (the default).")
 @click.option("--latex", "form", flag_value="latex", help="The same sentences in LaTeX; they need amsmath.")

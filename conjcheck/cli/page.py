@@ -18,7 +18,7 @@ __all__ = ["command"]
 _EXPECTED = "expected a record such as conjectures/records/NAME.json, saved outcomes (JSON) or a plug-in (.py)"
 
 
-@click.command("page")
+@click.command("page", short_help="A page to read for a rule or a record.")
 @click.argument("targets", nargs=-1, required=True, metavar="TARGET...", shell_complete=complete_file)
 @click.option(
     "-o",

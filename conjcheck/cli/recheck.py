@@ -9,7 +9,7 @@ from conjcheck.cli.common import USAGE, complete_conjecture, complete_file
 __all__ = ["command"]
 
 
-@click.command("recheck")
+@click.command("recheck", short_help="Check certificates.")
 @click.argument("certificates", nargs=-1, required=True, metavar="CERTIFICATE...", shell_complete=complete_file)
 @click.option(
     "--rule",

@@ -19,7 +19,7 @@ if TYPE_CHECKING:
 __all__ = ["command"]
 
 
-@click.command("sift")
+@click.command("sift", short_help="Eliminate the variants of a rule.")
 @click.argument("target", metavar="FILE[::NAME]", shell_complete=complete_conjecture)
 @click.argument("spaces", nargs=-1, metavar="[SPACE]...", shell_complete=complete_space)
 @click.option(

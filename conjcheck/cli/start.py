@@ -92,7 +92,7 @@ jobs:
 """
 
 
-@click.command("start")
+@click.command("start", short_help="Write a plug-in file that runs at once.")
 @click.argument("name", required=False)
 @click.option(
     "--on",

@@ -27,7 +27,7 @@ if TYPE_CHECKING:
 __all__ = ["command"]
 
 
-@click.command("survey")
+@click.command("survey", short_help="Compare on whole spaces, for as long as it takes.")
 @click.argument("target", metavar="FILE[::NAME]", shell_complete=complete_conjecture)
 @click.argument("spaces", nargs=-1, metavar="[SPACE]...", shell_complete=complete_space)
 @click.option(

@@ -18,7 +18,7 @@ if TYPE_CHECKING:
 __all__ = ["command"]
 
 
-@click.command("table")
+@click.command("table", short_help="All structure constants of a space.")
 @click.argument("space", shell_complete=complete_space)
 @click.option(
     "--format",

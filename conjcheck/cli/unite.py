@@ -15,7 +15,7 @@ __all__ = ["command"]
 _FILE = click.Path(exists=True, dir_okay=False, path_type=Path)
 
 
-@click.command("unite")
+@click.command("unite", short_help="Add up two records of one conjecture.")
 @click.argument("records", nargs=-1, required=True, type=_FILE, metavar="OURS THEIRS...")
 @click.option(
     "-o",
