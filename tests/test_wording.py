@@ -1,8 +1,8 @@
-"""Numbers with their nouns."""
+"""Numbers with their nouns, and tables in columns."""
 
 import pytest
 
-from conjcheck.wording import counted
+from conjcheck.wording import aligned, counted
 
 
 @pytest.mark.parametrize(
@@ -17,3 +17,11 @@ from conjcheck.wording import counted
 def test_counted(given, words):
     """One of a thing is in the singular, everything else in the plural, thousands apart."""
     assert counted(*given) == words
+
+
+def test_aligned():
+    """Columns have one width, on the left or on the right; the last one is not filled up on the left side."""
+    lines = [("a", "1", "short"), ("long", "23", "x")]
+    assert aligned(lines, right={1}) == [["a   ", " 1", "short"], ["long", "23", "x"]]
+    assert aligned(lines, right={2}) == [["a   ", "1 ", "short"], ["long", "23", "    x"]]
+    assert aligned([]) == []

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-import sys
-from contextlib import contextmanager
 from typing import TYPE_CHECKING, Any
 
 import click
 
 from conjcheck import __version__
-from conjcheck.cli.common import Stop, complete_space, echo_json, spaces_named
+from conjcheck.cli.common import Stop, complete_space, echo_json, progress, spaces_named
+from conjcheck.wording import aligned
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
@@ -93,9 +92,10 @@ def command(
     results: list[Result] = []
     interrupted = False
     try:
-        with _progress(len(chosen)) as watching:
+        with progress("audit") as show:
             for k, X in enumerate(chosen):
-                results += room.audit(X, seconds=seconds, seed=seed, watching=watching(k, X))
+                watching = show and _watching(show, X, k, len(chosen))
+                results += room.audit(X, seconds=seconds, seed=seed, watching=watching)
     except KeyboardInterrupt:
         interrupted = True
     differ = any(result.smallest for result in results)
@@ -132,22 +132,9 @@ def _spaces(names: tuple[str, ...], rank: int | None, most_classes: int | None) 
     return list(chosen)
 
 
-@contextmanager
-def _progress(count: int) -> Iterator[Callable[[int, FlagVariety], Callable[[str, float], None] | None]]:
-    """A bar on a terminal, on standard error; elsewhere nothing at all."""
-    if not sys.stderr.isatty():
-        yield lambda _k, _X: None
-        return
-    with click.progressbar(length=100 * count, label="audit", file=sys.stderr, item_show_func=lambda item: item) as bar:
-
-        def watching(k: int, X: FlagVariety) -> Callable[[str, float], None]:
-            def show(name: str, share: float) -> None:
-                bar.update(max(int(100 * (k + share)) - bar.pos, 0), f"{X}: {name}")
-
-            return show
-
-        yield watching
-        bar.update(100 * count - bar.pos, "")
+def _watching(show: Callable[[float, str], None], X: FlagVariety, k: int, of: int) -> Callable[[str, float], None]:
+    """What the audit of space k tells, for the bar of all."""
+    return lambda name, share: show((k + share) / of, f"{X}: {name}")
 
 
 def _counted(result: Result) -> str:
@@ -167,12 +154,10 @@ def _report(results: list[Result], seconds: float, seed: int, *, interrupted: bo
     """The table, what was left out, the differences, and one line at the end."""
     table = [("space", "check", "compared", "result", "seconds")]
     table += [(str(r.X), r.name, _counted(r), _verdict(r), f"{r.seconds:.1f}") for r in results]
-    widths = [max(map(len, column)) for column in zip(*table, strict=True)]
-    for line, result in zip(table, [None, *results], strict=True):
-        cells = [cell.ljust(width) for cell, width in zip(line[:-1], widths[:-1], strict=True)]
+    for cells, result in zip(aligned(table, right={4}), [None, *results], strict=True):
         if result:
             cells[3] = click.style(cells[3], fg=_COLOURS[result.verdict], bold=result.verdict == "differ")
-        yield "  ".join([*cells, line[-1].rjust(widths[-1])])
+        yield "  ".join(cells)
     yield ""
     for result in results:
         if result.compared and result.why:

@@ -1,8 +1,10 @@
-"""What the commands share: exit statuses, spaces and conjectures named on the command line, JSON."""
+"""What the commands share: exit statuses, spaces and conjectures named on the command line, a bar, JSON."""
 
 from __future__ import annotations
 
 import json
+import sys
+from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -12,7 +14,7 @@ from click.shell_completion import CompletionItem
 from conjcheck.errors import ConjcheckError, DeclarationError, NotationError, OutOfReach
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable
+    from collections.abc import Callable, Iterable, Iterator
 
     from conjcheck.conjecture.declare import Conjecture
     from conjcheck.geometry.flag_variety import FlagVariety
@@ -26,6 +28,7 @@ __all__ = [
     "complete_space",
     "conjecture_named",
     "echo_json",
+    "progress",
     "space_named",
     "spaces_named",
 ]
@@ -80,6 +83,21 @@ def conjecture_named(target: str) -> Conjecture:
             f"choose one: {file}::{found[0].name}"
         )
     return found[0]
+
+
+@contextmanager
+def progress(label: str) -> Iterator[Callable[[float, str], None] | None]:
+    """A bar on a terminal, on standard error, to be told the share done and where it is; elsewhere ``None``."""
+    if not sys.stderr.isatty():
+        yield None
+        return
+    with click.progressbar(length=1000, label=label, file=sys.stderr, item_show_func=lambda item: item) as bar:
+
+        def show(share: float, words: str) -> None:
+            bar.update(max(int(1000 * share) - bar.pos, 0), words)
+
+        yield show
+        bar.update(1000 - bar.pos, "")
 
 
 def echo_json(document: Any) -> None:

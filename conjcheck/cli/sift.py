@@ -2,17 +2,25 @@
 
 from __future__ import annotations
 
-import sys
-from contextlib import contextmanager
 from typing import TYPE_CHECKING
 
 import click
 
-from conjcheck.cli.common import FAILED, Stop, complete_conjecture, complete_space, conjecture_named, echo_json, spaces_named
+from conjcheck.cli.common import (
+    FAILED,
+    Stop,
+    complete_conjecture,
+    complete_space,
+    conjecture_named,
+    echo_json,
+    progress,
+    spaces_named,
+)
 from conjcheck.errors import ConjcheckError
+from conjcheck.wording import aligned
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Iterator
+    from collections.abc import Iterator
 
     from conjcheck.testing.sift import DeadVariant, Sifted
 
@@ -79,14 +87,14 @@ def command(
     try:
         if up_to is not None:
             chosen += conjecture.on.up_to(up_to)
-        with _progress() as watching:
+        with progress("sift") as show:
             found = room.sift(
                 conjecture,
                 spaces=chosen if spaces or up_to is not None else None,
                 budget=seconds,
                 call_limit=call_limit,
                 seed=seed,
-                watching=watching,
+                watching=show and (lambda place, share: show(share, place)),
             )
     except KeyboardInterrupt:
         click.echo("interrupted", err=True)
@@ -105,30 +113,12 @@ def command(
     context.exit(0 if found.survivors else FAILED)
 
 
-@contextmanager
-def _progress() -> Iterator[Callable[[str, float], None] | None]:
-    """A bar on a terminal, on standard error; elsewhere nothing at all."""
-    if not sys.stderr.isatty():
-        yield None
-        return
-    with click.progressbar(length=1000, label="sift", file=sys.stderr, item_show_func=lambda item: item) as bar:
-
-        def show(place: str, share: float) -> None:
-            bar.update(max(int(1000 * share) - bar.pos, 0), place)
-
-        yield show
-        bar.update(1000 - bar.pos, "")
-
-
 def _report(found: Sifted) -> Iterator[str]:
     """The table of the dead, then the survivors with what they were compared on."""
     if found.dead:
         lines: list[tuple[str, ...]] = [("variant", "status", "smaller cases", "fails at", "rule", "oracle")]
         lines += [_line(one) for one in found.dead]
-        widths = [max(map(len, column)) for column in zip(*lines, strict=True)]
-        for line in lines:
-            cells = [cell.rjust(w) if k == 2 else cell.ljust(w) for k, (cell, w) in enumerate(zip(line, widths, strict=True))]
-            yield "  ".join(cells).rstrip()
+        yield from ("  ".join(cells).rstrip() for cells in aligned(lines, right={2}))
         yield ""
         alike = len(found.alike)
         yield f"dead         {len(found.dead):,} of {found.conjecture.number_of_variants:,} variants, in {alike:,} {_s('way', alike)}"

@@ -26,7 +26,7 @@ _PLACE = "./conjcheck"
 _VIEWS = ("partition", "permutation", "string", "signed", "word", "descents")
 _LOOKED_AT = 6
 
-_PAGE = '''"""One line on {name}: what it says, as in a lecture.
+_PAGE = '''"""One line on {name}: what it counts, and when.
 
 The rule in full, as in a paper: which objects are counted, and an example by hand. What stands here now is true, but not your rule:
 the unit, sigma_e * sigma_v = sigma_v. Run it, then change it piece by piece, and run it after each change:

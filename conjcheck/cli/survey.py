@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import os
-import sys
 from contextlib import ExitStack, contextmanager
 from dataclasses import replace
 from pathlib import Path
@@ -12,8 +11,19 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from conjcheck.cli.common import FAILED, USAGE, Stop, complete_conjecture, complete_space, conjecture_named, echo_json, spaces_named
+from conjcheck.cli.common import (
+    FAILED,
+    USAGE,
+    Stop,
+    complete_conjecture,
+    complete_space,
+    conjecture_named,
+    echo_json,
+    progress,
+    spaces_named,
+)
 from conjcheck.errors import ConjcheckError, RecordError
+from conjcheck.wording import aligned
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
@@ -123,7 +133,7 @@ def command(
     try:
         with ExitStack() as stack:
             executor = stack.enter_context(_cluster(cluster)) if cluster else None
-            watching = stack.enter_context(_progress())
+            show = stack.enter_context(progress("survey"))
             done = room.run_campaign(
                 conjecture,
                 chosen,
@@ -131,7 +141,7 @@ def command(
                 jobs=jobs or (4 * _threads(executor) if executor else os.cpu_count() or 1),
                 executor=executor,
                 ledger=kept,
-                watching=watching,
+                watching=_rate(show) if show else lambda _: None,
             )
         outcome = campaign_outcome(done)
         record, problem = None, ""
@@ -198,22 +208,16 @@ def _threads(executor: Any) -> int:
     return max(int(sum(executor._client.nthreads().values())), 1)  # noqa: SLF001
 
 
-@contextmanager
-def _progress() -> Iterator[Callable[[Progress], None]]:
-    """A bar on a terminal, on standard error, with rate and time left; elsewhere nothing at all."""
-    if not sys.stderr.isatty():
-        yield lambda _: None
-        return
+def _rate(show: Callable[[float, str], None]) -> Callable[[Progress], None]:
+    """What a survey tells, for the bar: the space, and rows in a second."""
     started = monotonic()
-    with click.progressbar(length=1, label="survey", file=sys.stderr, item_show_func=lambda item: item) as bar:
 
-        def show(progress: Progress) -> None:
-            bar.length = progress.of
-            new = progress.done - progress.resumed
-            rate = f"{new / max(monotonic() - started, 1e-3):,.0f} rows/s" if new else "resuming"
-            bar.update(progress.done - bar.pos, f"{progress.space}, {rate}")
+    def watching(done: Progress) -> None:
+        new = done.done - done.resumed
+        rate = f"{new / max(monotonic() - started, 1e-3):,.0f} rows/s" if new else "resuming"
+        show(done.done / done.of, f"{done.space}, {rate}")
 
-        yield show
+    return watching
 
 
 def _table(done: Campaign) -> Iterator[str]:
@@ -223,15 +227,8 @@ def _table(done: Campaign) -> Iterator[str]:
         r = space.result
         numbers = [r.seen, space.of, r.cases, r.nonzero, r.failing]
         lines.append((str(space.X), *(f"{number:,}" for number in numbers), f"{r.seconds:.1f}", space.engine))
-    widths = [max(map(len, column)) for column in zip(*lines, strict=True)]
     yield ""
-    for line in lines:
-        cells = [
-            line[0].ljust(widths[0]),
-            *(cell.rjust(width) for cell, width in zip(line[1:-1], widths[1:-1], strict=True)),
-            line[-1],
-        ]
-        yield "  ".join(cells)
+    yield from ("  ".join(cells) for cells in aligned(lines, right=range(1, 7)))
     if done.resumed:
         yield f"{done.resumed:,} of the rows were taken from the ledger"
 

@@ -17,7 +17,7 @@ from conjcheck.testing.diagnosis import Diagnosis
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.minimise import Layer
 from conjcheck.testing.outcome import Outcome, environment, smaller_agree
-from conjcheck.wording import counted
+from conjcheck.wording import aligned, counted
 
 __all__ = ["describe_class", "replay_line", "summary_table", "text_report"]
 
@@ -215,16 +215,4 @@ def summary_table(outcomes: list[dict[str, Any]], broken: Sequence[Mapping[str, 
         why = (item["problem"].strip().splitlines() or [""])[-1].strip()
         why = textwrap.shorten(why, _WIDTH, placeholder=" ...") or "unknown problem"
         table.append((PurePath(item["file"]).name, "no verdict", "", "", "", "", "", f"cannot be used: {why}"))
-    widths = [max(len(line[k]) for line in table) for k in range(len(table[0]) - 1)]
-    return [
-        "  ".join(
-            [
-                *(
-                    cell.rjust(width) if k > 1 else cell.ljust(width)
-                    for k, (cell, width) in enumerate(zip(line, widths, strict=False))
-                ),
-                line[-1],
-            ]
-        )
-        for line in table
-    ]
+    return ["  ".join(cells) for cells in aligned(table, right=range(2, len(table[0]) - 1))]
