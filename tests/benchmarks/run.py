@@ -334,6 +334,41 @@ def hypothesis_plain_5() -> float:
     return cases_per_second(5, 3000)
 
 
+def _draws(name: str) -> float:
+    """Milliseconds of one example with Hypothesis, keeping nothing; a first short run is not counted."""
+    from hypothesis import HealthCheck, given, settings
+    from hypothesis import strategies as st
+
+    from conjcheck import Fl, Varieties
+    from conjcheck.strategies import rows
+
+    X = Fl(6)
+    strategies = {"rows": rows(Varieties(X)), "pairs": st.tuples(st.sampled_from(X.classes), st.sampled_from(X.classes))}
+
+    def draw(examples: int) -> float:
+        @settings(database=None, deadline=None, max_examples=examples, suppress_health_check=list(HealthCheck))
+        @given(strategies[name])
+        def nothing(example: object) -> None:
+            pass
+
+        began = process_time()
+        nothing()
+        return 1000 * (process_time() - began) / examples
+
+    draw(20)
+    return draw(1000)
+
+
+def draw_rows() -> float:
+    """Rows on Fl(6)."""
+    return _draws("rows")
+
+
+def draw_pairs() -> float:
+    """Two plain indices on Fl(6)."""
+    return _draws("pairs")
+
+
 # --- the table of what is set against what ---
 
 Measurement = Callable[[], float]
@@ -363,6 +398,7 @@ PARTS: dict[str, list[Line]] = {
         ("(the interpreter alone)", "ms", import_nothing, None, 7),
     ],
     "survey": [("survey of Fl(4), free rule by cases | one case per example", "cases/s", survey_ours, hypothesis_plain_4, 3)],
+    "draw": [("one row on Fl(6), drawn | a pair of plain indices", "ms", draw_rows, draw_pairs, 5)],
     "probe": [("probe of Fl(5), free rule by cases | one case per example", "cases/s", probe_ours, hypothesis_plain_5, 3)],
 }
 

@@ -1,6 +1,5 @@
 """``schubert_classes``: exactly the classes asked for, the first of them in the end."""
 
-import time
 from itertools import chain, combinations
 
 import numpy as np
@@ -55,16 +54,14 @@ def test_patterns_are_avoided(drawn, smallest):
     assert set(drawn(schubert_classes(Gr(1, 3), avoiding=(4, 3, 2, 1)))) == set(Gr(1, 3).classes)
 
 
-def test_large_varieties_are_drawn_from_evenly_and_at_once(drawn):
-    """``Fl(8)`` with 40,320 classes: about half of the examples lie in the upper half of the order, and all is quick."""
+def test_large_varieties_are_drawn_from_evenly(drawn):
+    """``Fl(8)`` with 40,320 classes: about half of the examples lie in the upper half of the order."""
     X = Fl(8)
     assert len(X.classes) == 40_320
-    start = time.process_time()
     examples = drawn(schubert_classes(X), 150)
     assert 0.3 < np.mean([u.index >= 20_160 for u in examples]) < 0.7
     assert max(len(u.descents) for u in drawn(schubert_classes(X, grassmannian=True), 50)) == 1
     assert len(set(drawn(schubert_classes(X, avoiding=(1, 3, 2)), 50))) > 30
-    assert time.process_time() - start < 10
 
 
 @pytest.mark.parametrize(

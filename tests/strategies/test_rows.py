@@ -1,9 +1,6 @@
 """``rows``: valid, small in the end, and where the large constants are."""
 
-import time
-
 import pytest
-from hypothesis import strategies as st
 from hypothesis.errors import InvalidArgument, Unsatisfiable
 
 from conjcheck import product
@@ -102,18 +99,6 @@ def test_bias(drawn, name, positive_degree, large, terms):
     assert sum(any(any(d) for _, d in terms) for terms in products) >= positive_degree * count
     assert sum(max(terms.values()) >= 2 for terms in products) >= large * count
     assert sum(map(len, products)) >= terms * count
-
-
-def test_a_row_costs_about_as_much_as_two_indices(drawn):
-    """At most four times a tuple of two plain indices (measured: 1.1 to 1.5 times)."""
-    X = Fl(6)
-    plain = st.tuples(st.sampled_from(X.classes), st.sampled_from(X.classes))
-    drawn(rows(Varieties(X)), 20)
-    start = time.process_time()
-    drawn(plain, 200)
-    middle = time.process_time()
-    drawn(rows(Varieties(X)), 200)
-    assert time.process_time() - middle < 4 * (middle - start)
 
 
 @pytest.mark.parametrize(

@@ -233,13 +233,13 @@ def test_a_sample_of_cases_keeps_every_nonzero_one():
 def test_the_deadline_ends_a_row():
     """After the deadline a row ends between two calls, and says that it is not complete."""
     calls = []
-    rule = by_cases(lambda true, w, d: calls.append(w) or time.sleep(0.05) or true)
+    rule = by_cases(lambda true, w, d: calls.append(w) or (time.sleep(2) if len(calls) == 3 else None) or true)
     comparer = Comparer(rule)
     with comparer.limit:
-        result = comparer.row(ROW, deadline=time.perf_counter() + 0.08)
+        result = comparer.row(ROW, deadline=time.perf_counter() + 1.5)
     assert not result.complete
     assert result.finding is None
-    assert 1 <= len(calls) == result.cases < 7
+    assert len(calls) == result.cases == 3
 
 
 # -- every status ------------------------------------------------------------------------------------------------------
@@ -466,7 +466,7 @@ def test_too_slow(answers, wait):
     bodies = {by_cases: lambda true, w, d: wait() if true else 0, by_rows: lambda true: wait()}
     began = time.perf_counter()
     finding = judged(answers(bodies[answers]), call_limit=0.15).finding
-    assert time.perf_counter() - began < 1
+    assert time.perf_counter() - began < 6
     assert (finding.status, finding.where) == ("too-slow", FIRST if answers is by_cases else ROW)
     assert finding.detail == "one call took longer than 0.15 s"
 
@@ -480,8 +480,8 @@ def test_endless_objects_are_too_slow():
 def test_the_limit_is_per_call():
     """Many calls, each within the limit, may take longer than the limit together."""
     began = time.perf_counter()
-    assert judged(by_cases(lambda true, w, d: time.sleep(0.06) or true), call_limit=0.15).finding is None
-    assert time.perf_counter() - began > 0.2
+    assert judged(by_cases(lambda true, w, d: time.sleep(0.15) or true), call_limit=0.6).finding is None
+    assert time.perf_counter() - began > 0.9
 
 
 # -- one answer --------------------------------------------------------------------------------------------------------

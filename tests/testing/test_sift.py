@@ -157,7 +157,7 @@ def test_a_premise_that_raises_or_hangs_ends_them_all():
 
         began = time.perf_counter()
         found = sift(rule, budget=60, call_limit=0.3)
-        assert time.perf_counter() - began < 5
+        assert time.perf_counter() - began < 20
         assert found.survivors == ()
         assert [one.finding.status for one in found.dead] == [status] * 20
 

@@ -219,7 +219,7 @@ def test_a_family_with_nothing_in_reach(family):
 
     began = perf_counter()
     done = survey(Comparer(rule), budget=1.0)
-    assert perf_counter() - began < 3
+    assert perf_counter() - began < 20
     assert done.finding is None
     assert (done.coverage.spaces, done.coverage.rows, done.coverage.whole_family) == ([], 0, False)
 
