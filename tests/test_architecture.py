@@ -11,11 +11,11 @@ import pytest
 ROOT = Path(__file__).parents[1]
 STRATEGIES = "strategies/"
 ENGINES = {
-    "oracle/grassmannian.py": {"oracle/recursion.py", "oracle/comparison.py", "oracle/chevalley.py", "oracle/localisation.py"},
-    "oracle/localisation.py": {"oracle/recursion.py", "oracle/comparison.py", "oracle/grassmannian.py"},
-    "oracle/recursion.py": {"oracle/grassmannian.py", "oracle/localisation.py"},
-    "oracle/comparison.py": {"oracle/grassmannian.py", "oracle/localisation.py"},
-    "oracle/chevalley.py": {"oracle/grassmannian.py", "oracle/localisation.py", "oracle/recursion.py", "oracle/comparison.py"},
+    "oracle/grassmannian.py": {"oracle/recursion.py", "oracle/comparison.py", "oracle/chevalley.py", "oracle/coordinates.py"},
+    "oracle/localisation.py": {"oracle/recursion.py", "oracle/comparison.py", "oracle/chevalley.py", "oracle/grassmannian.py"},
+    "oracle/recursion.py": {"oracle/grassmannian.py", "oracle/coordinates.py", "oracle/residues.py"},
+    "oracle/comparison.py": {"oracle/grassmannian.py", "oracle/coordinates.py", "oracle/residues.py"},
+    "oracle/chevalley.py": {"oracle/grassmannian.py", "oracle/coordinates.py", "oracle/recursion.py", "oracle/comparison.py"},
 }
 """What an engine must not import, directly or by a detour."""
 

@@ -25,8 +25,8 @@ from conjcheck.errors import OutOfReach
 from conjcheck.geometry.case import Case
 from conjcheck.geometry.flag_variety import Degree, FlagVariety, SchubertClass
 from conjcheck.geometry.polynomial import RootPolynomial
-from conjcheck.geometry.weyl import Ints
-from conjcheck.oracle.localisation import LocalisationEngine, localisation, primes
+from conjcheck.oracle.localisation import LocalisationEngine, localisation
+from conjcheck.oracle.residues import primes, solve
 
 __all__ = ["MOST_DEGREE", "MOST_MONOMIALS", "Sampled", "equivariant_constant", "equivariant_terms", "number_of_monomials"]
 
@@ -123,7 +123,7 @@ def equivariant_constant(case: Case) -> RootPolynomial:
         _, t = _point(X, 0, seed)
         rows.append([RootPolynomial.of(X.rank, {e: 1}).at(t, p) for e in exponents])
         values.append(engine.equivariant_residues(case.u, case.v, most, 0, seed).get(key, 0))
-    solution = _solve(np.array(rows, dtype=np.int64), np.array(values, dtype=np.int64), p)
+    solution = solve(np.array(rows, dtype=np.int64), np.array(values, dtype=np.int64), p)
     found = RootPolynomial.of(X.rank, dict(zip(exponents, solution, strict=True)))
     for seed in (0, 1):
         q, t = _point(X, 1, seed)
@@ -131,17 +131,3 @@ def equivariant_constant(case: Case) -> RootPolynomial:
         assert found.at(t, q) == check, "the interpolated polynomial must hold at further points"
     assert found.is_positive, "equivariant constants have nonnegative coefficients"
     return found
-
-
-def _solve(matrix: Ints, values: Ints, p: int) -> list[int]:
-    """Solve a square linear system modulo p; the residues are read between ``-p/2`` and ``p/2``."""
-    table = np.concatenate([matrix % p, values[:, None] % p], axis=1)
-    size = len(matrix)
-    for column in range(size):
-        lead = column + int(np.argmax(table[column:, column] != 0))
-        table[[column, lead]] = table[[lead, column]]
-        table[column] = table[column] * pow(int(table[column, column]), -1, p) % p
-        factors = table[:, column].copy()
-        factors[column] = 0
-        table = (table - factors[:, None] * table[column]) % p
-    return [int(x) if x <= p // 2 else int(x) - p for x in table[:, -1]]

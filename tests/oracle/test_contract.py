@@ -19,9 +19,11 @@ from conjcheck.geometry.cartan import cartan_matrix
 from conjcheck.geometry.symmetries import diagram_images, seidel
 from conjcheck.oracle import ENGINES, engines_for
 from conjcheck.oracle.comparison import RecursionEngine
+from conjcheck.oracle.coordinates import Numbers, Point
 from conjcheck.oracle.engine import Block
 from conjcheck.oracle.guard import Watch, watched
-from conjcheck.oracle.localisation import _Numbers, _Point, localisation, primes
+from conjcheck.oracle.localisation import localisation
+from conjcheck.oracle.residues import primes
 
 SPACES = [
     *["A1/B", "A2/P1", "A3/P2", "A4/P2", "A5/P3", "A2/B", "A3/P1,3", "A3/P1,2", "A3/B", "A4/P2,3"],
@@ -494,7 +496,7 @@ class Weighing:
         X, p = self.X, self.p
         step = gcd(*X.q_degrees)
         depth = 2 * X.dim // step
-        values = _Point(X, p, _Numbers(X, p, 1), self.q, depth, step).values
+        values = Point(X, p, Numbers(X, p, 1), self.q, depth, step).values
         lengths = np.array([u.length for u in X.classes])
         totals = np.arange(2 * X.dim + 1)
         # V(z) R(z^-1) = M(z^-1), from the highest power down; one column for each total l(u) + l(v).

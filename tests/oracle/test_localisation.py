@@ -12,7 +12,9 @@ from conjcheck.geometry.case import outcomes, rows
 from conjcheck.geometry.families import PartialFlags
 from conjcheck.oracle import ENGINES, witnesses
 from conjcheck.oracle.chevalley import chevalley
-from conjcheck.oracle.localisation import Localisation, _inverses, _Numbers, _vandermonde, localisation, primes
+from conjcheck.oracle.coordinates import Numbers
+from conjcheck.oracle.localisation import Localisation, localisation
+from conjcheck.oracle.residues import inverses, primes, vandermonde
 
 
 def word(X, *letters):
@@ -152,7 +154,7 @@ def test_bounds_hold_and_are_not_idle():
         assert max(product(row.u, row.v).values()) <= engine.bound(row.u.index, row.v.index)
 
 
-def test_severalprimes_when_the_bound_asks_for_them(monkeypatch):
+def test_several_primes_when_the_bound_asks_for_them(monkeypatch):
     """With a bound beyond one prime the residues modulo several primes are put together, to the same constants."""
     X = Gr(2, 4)
     engine = localisation(X)
@@ -174,12 +176,12 @@ def test_arithmetic_modulo_a_prime():
     (p, q) = primes(2)
     assert (p, q) == (2**31 - 1, 2147483629)
     values = np.array([1, 2, 12345, p - 1], dtype=np.int64)
-    assert (values * _inverses(values, p) % p == 1).all()
+    assert (values * inverses(values, p) % p == 1).all()
     nodes, solution = [3, 5, 11], [7, 0, p - 2]
     sums = np.array(
         [[sum(x * pow(node, k, p) for node, x in zip(nodes, solution, strict=True)) % p] for k in range(3)], dtype=np.int64
     )
-    assert _vandermonde(nodes, sums, p)[:, 0].tolist() == solution
+    assert vandermonde(nodes, sums, p)[:, 0].tolist() == solution
 
 
 @pytest.mark.parametrize("name", ["Fl(4)", "B4/P2,3", "D6/P3", "E8/P8"])
@@ -217,10 +219,10 @@ def test_residues_are_put_together_beyond_one_prime(monkeypatch):
 def test_eigenvalues_are_kept_apart():
     """In a small field numbers often coincide; those that are chosen never let two eigenvalues do so."""
     for seed in range(60):
-        values = _Numbers(Gr(2, 4), 97, seed).values
+        values = Numbers(Gr(2, 4), 97, seed).values
         assert len(set(values.tolist())) == 6
     with pytest.raises(AssertionError, match="no numbers that separate"):
-        _Numbers(Gr(2, 4), 5, 0)
+        Numbers(Gr(2, 4), 5, 0)
 
 
 def test_work_is_what_the_loops_do():
