@@ -16,8 +16,8 @@ from hypothesis import settings
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.conjecture.discover import declared_twice, prefer_helpers_of
-from conjcheck.errors import ConjcheckError, NotationError, RecordError
-from conjcheck.evidence.record import Record, parse_place, read_record, stale_words
+from conjcheck.errors import ConjcheckError, RecordError
+from conjcheck.evidence.record import Record, parse_place, read_record, records_held, stale_words
 from conjcheck.evidence.rerun import ask_afresh
 from conjcheck.evidence.source import rule_hash
 from conjcheck.geometry.case import Case, Row
@@ -32,12 +32,12 @@ from conjcheck.testing.finding import Finding
 from conjcheck.testing.limits import CallInterrupted, CallLimit
 from conjcheck.testing.outcome import Outcome, no_verdict
 from conjcheck.testing.probe import Check, ProbeCount, gravest, level_name, probe_test
+from conjcheck.testing.recorded import hold_to_minimal, recorded
 from conjcheck.testing.recording import asked_again, counterexample, recording, write_recording
 
 __all__ = ["ConjectureNode", "PartItem", "PluginFile", "Verdict"]
 
 _IMPORT_LIMIT = 60.0
-_RETIRING = "a counterexample to an earlier version of the rule refutes no more: the survey takes it off the record"
 _NOT_REACHED = "on record as refuted; the budget ended before the counterexample"
 
 
@@ -239,63 +239,6 @@ class ConjectureNode(pytest.Collector):
         return self.conjecture.file, self.conjecture.line - 1, self.name
 
 
-def recorded(examination: Examination, record: Record, *, renewing: bool = False) -> Outcome:
-    """Compute the counterexamples on record again, by the rule and by the oracle.
-
-    Args:
-        examination: that of the conjecture.
-        record: its record.
-        renewing: the record is going to be written: those of another version of the rule may refute no more, or with other values.
-
-    Raises:
-        RecordError: one of them refutes no more, or with other values.
-    """
-    outcome = gone = None
-    version = rule_hash(examination.conjecture.file) if renewing else None
-    for known in record.counterexamples:
-        earlier = renewing and known.rule_hash != version
-        try:
-            outcome = examination.case(known.where)
-        except NotationError as error:  # the place is outside the family or the premise now
-            if not earlier:
-                raise
-            gone = gone or Outcome(examination.conjecture, "recorded", "agrees", str(error), note=_RETIRING)
-            continue
-        found = outcome.finding
-        if earlier and (found is None or found.status == "refuted"):
-            gone = gone or (replace(outcome, note=_RETIRING) if found is None else None)
-            continue
-        if found is None or found.status != "refuted":
-            what = (
-                "the rule and the oracle agree there now" if found is None else f"the rule is {found.status} there: {found.detail}"
-            )
-            raise RecordError(
-                f"stale record: expected {examination.conjecture.name} to be refuted at {known.where}, but {what}; "
-                "if the rule was repaired, record it anew with --conjcheck-record"
-            )
-        values = plain_value(found.rule), plain_value(found.oracle)
-        recorded_values = known.rule, known.oracle
-        if recorded_values not in (values, (None, None)):
-            raise RecordError(
-                f"stale record: expected rule {known.rule} and oracle {known.oracle} at {known.where}, "
-                f"got rule {values[0]} and oracle {values[1]}; record it anew with --conjcheck-record"
-            )
-    outcome = gone or outcome
-    assert outcome is not None, "a record is only verified when it holds a counterexample"
-    return replace(outcome, part="recorded", scope=f"{len(record.counterexamples)} recorded counterexamples")
-
-
-def _hold_to_minimal(record: Record | None, outcome: Outcome) -> None:
-    """A record that calls a counterexample minimal is stale when the survey meets a smaller one."""
-    finding = outcome.finding
-    for known in record.counterexamples if record and finding else ():
-        if finding and known.minimal and finding.where.sort_key < known.where.sort_key:
-            raise RecordError(
-                f"stale record: expected {known.where} to be the minimal counterexample, as it is on record, but the rule already fails at "
-                f"{finding.where}; record it anew with --conjcheck-record"
-            )
-
-
 class PartItem(pytest.Function):
     """One part of an examination."""
 
@@ -343,7 +286,7 @@ class PartItem(pytest.Function):
         expected = self.expected is not None and outcome.status == "refuted" and self.expected.status == "refuted"
         on_record = bool(self.config.getoption("--conjcheck-record"))
         if expected and self.name == "survey" and not on_record:
-            _hold_to_minimal(self.expected, outcome)
+            hold_to_minimal(self.expected, outcome)
         if expected:
             outcome = replace(outcome, note="on record as refuted: this is the expected verdict")
         elif self.expected is not None and self.expected.status == "refuted" and outcome.status == "agrees":
@@ -441,8 +384,9 @@ class PartItem(pytest.Function):
             if finding is not None:
                 minimal = outcome.minimum is not None and outcome.minimum.certified
                 found = counterexample(finding, conjecture, minimal=minimal, confirmed_by=outcome.confirmed_by)
-            made = recording(conjecture, partial(asked_again, examination.comparer), coverage=entries, found=found)
-            write_recording(conjecture, made)
+            with records_held(conjecture):
+                made = recording(conjecture, partial(asked_again, examination.comparer), coverage=entries, found=found)
+                write_recording(conjecture, made)
             notes = [made.note]
             if made.record.status == "open":
                 outcome = replace(outcome, note=outcome.note.removeprefix(_NOT_REACHED).removeprefix("; "))

@@ -8,8 +8,9 @@ record is believed: a recorded counterexample is computed again, by the rule and
 import json
 import os
 import shutil
+import sys
 from collections.abc import Iterable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any, TypeVar
@@ -20,6 +21,9 @@ from conjcheck.evidence.entries import Counterexample, Covered, Sample, refuting
 from conjcheck.evidence.reading import FORMAT, VERSION, contents, parse_place
 from conjcheck.evidence.source import rule_hash
 from conjcheck.wording import counted
+
+if sys.platform != "win32":
+    import fcntl
 
 __all__ = [
     "Counterexample",
@@ -34,6 +38,7 @@ __all__ = [
     "read_record_file",
     "record_path",
     "record_text",
+    "records_held",
     "stale_words",
     "write_record",
     "write_record_file",
@@ -317,6 +322,30 @@ def write_record(conjecture: Conjecture, record: Record) -> Path:
         path.parent.mkdir(exist_ok=True)
     write_record_file(path, record)
     return path
+
+
+@contextmanager
+def records_held(conjecture: Conjecture) -> Iterator[None]:
+    """Hold the records beside a plug-in, from reading one until it is written; others wait, so that two surveys that end at once add up.
+
+    The lock is on the folder of the plug-in, and the system takes it off a process that dies; where there are no such locks (on
+    Windows, on some network disks), nobody waits.
+
+    Raises:
+        RecordError: there is no such folder, or it cannot be read.
+    """
+    if sys.platform == "win32":
+        yield
+        return
+    folder = Path(conjecture.file).parent
+    with _writing(folder):
+        handle = os.open(folder, os.O_RDONLY)
+    try:
+        with suppress(OSError):  # a file system without locks
+            fcntl.flock(handle, fcntl.LOCK_EX)
+        yield
+    finally:
+        os.close(handle)
 
 
 @contextmanager

@@ -10,7 +10,7 @@ from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import RecordError
 from conjcheck.evidence.entries import Covered, Sample, own_version
 from conjcheck.evidence.reading import parse_place
-from conjcheck.evidence.record import Record, current_record
+from conjcheck.evidence.record import Record, current_record, records_held
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.apart import Lost, apart
@@ -285,5 +285,6 @@ def write_campaign(campaign: Campaign, outcome: Outcome) -> tuple[Path, str]:
     Raises:
         RecordError: the record cannot be used or written, contradicts the survey, or the rule was changed meanwhile.
     """
-    made = _recording(campaign, outcome)
-    return write_recording(campaign.conjecture, made), made.note
+    with records_held(campaign.conjecture):
+        made = _recording(campaign, outcome)
+        return write_recording(campaign.conjecture, made), made.note

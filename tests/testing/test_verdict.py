@@ -2,7 +2,9 @@
 
 import json
 import os
+import time
 from dataclasses import replace
+from threading import Thread
 
 import pytest
 from planted import cases_of, key_of, smaller_than
@@ -242,6 +244,30 @@ def test_two_surveys_add_up(tmp_path):
     before = numbers(path)
     write_campaign(*surveyed(path, [Gr(1, 3)]))
     assert numbers(path) == before
+
+
+def test_two_surveys_that_end_at_once(tmp_path, monkeypatch):
+    """However long it takes to work out what goes on record, nothing that another survey writes meanwhile is lost."""
+    path = write(tmp_path, POWERS)
+    real, inside, most = verdict.recording, [], []
+
+    def slowly(*given, **named):
+        inside.append(1)
+        most.append(len(inside))
+        made = real(*given, **named)
+        time.sleep(0.3)
+        inside.pop()
+        return made
+
+    monkeypatch.setattr(verdict, "recording", slowly)
+    surveys = [surveyed(path, [Gr(1, n)]) for n in (2, 3, 4)]
+    threads = [Thread(target=write_campaign, args=survey) for survey in surveys]
+    for thread in threads:
+        thread.start()
+    for thread in threads:
+        thread.join()
+    assert most == [1, 1, 1]
+    assert [entry.X for entry in read_record(load(path)).coverage] == [Gr(1, 2), Gr(1, 3), Gr(1, 4)]
 
 
 def test_a_refutation_on_record(tmp_path):
