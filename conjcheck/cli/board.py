@@ -7,9 +7,11 @@ from pathlib import Path
 
 import click
 
-from conjcheck.cli.common import FAILED, Stop
+from conjcheck.cli.common import FAILED, Stop, echo_json
 
 __all__ = ["command"]
+
+_COLUMNS = ("name", "file", "status", "scope", "counterexample", "date", "stale", "source", "note")
 
 
 @click.command("board", short_help="One table of all conjectures in a folder.")
@@ -23,8 +25,11 @@ __all__ = ["command"]
     metavar="FILE",
     help="A table in Markdown; - prints it. No page is written then, unless -o asks for one.",
 )
+@click.option(
+    "--json", "as_json", is_flag=True, help="Print the rows as one JSON document. No page is written then, unless -o asks for one."
+)
 @click.pass_context
-def command(context: click.Context, folder: Path, output: Path | None, markdown: Path | None) -> None:
+def command(context: click.Context, folder: Path, output: Path | None, markdown: Path | None, *, as_json: bool) -> None:
     """Put all conjectures in FOLDER, with what is on record about them, on one page that can be sorted and searched.
 
     \b
@@ -41,17 +46,21 @@ def command(context: click.Context, folder: Path, output: Path | None, markdown:
       pytest conjectures --conjcheck-report pages
       conjcheck board conjectures -o pages/board.html
       conjcheck board conjectures --markdown -
+      conjcheck board conjectures --json
 
     Exit status: 0 all conjectures are on the board; 1 they are, but a plug-in or a record cannot be used; 2 wrong usage.
     """  # noqa: D301  # click knows the character, not the two letters
     from conjcheck.report.board import board_of_folder, board_page, board_table
 
-    page = output or (None if markdown else Path("board.html"))
+    printed = as_json or str(markdown) == "-"
+    if as_json and str(markdown) == "-":
+        raise click.UsageError("expected --json or --markdown -, got both: one of them can be printed")
+    page = output or (None if markdown or as_json else Path("board.html"))
     beside = output.parent if output else Path("pages")
     rows = board_of_folder(folder, beside=beside)
     if page:
         _write(page, board_page(rows, folder.resolve().name, base=_way(beside, page.parent)))
-        click.echo(str(page), err=str(markdown) == "-")
+        click.echo(str(page), err=printed)
     if markdown:
         dash = str(markdown) == "-"
         text = board_table(rows, base=_way(beside, Path() if dash else markdown.parent))
@@ -59,7 +68,9 @@ def command(context: click.Context, folder: Path, output: Path | None, markdown:
             click.echo(text, nl=False)
         else:
             _write(markdown, text)
-            click.echo(str(markdown))
+            click.echo(str(markdown), err=printed)
+    if as_json:
+        echo_json([{key: row[key] for key in _COLUMNS} for row in rows])
     context.exit(FAILED if any(row["status"] in ("broken", "unreadable") for row in rows) else 0)
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import click
 
-from conjcheck.cli.common import USAGE, complete_conjecture, complete_file
+from conjcheck.cli.common import USAGE, complete_conjecture, complete_file, echo_json
 
 __all__ = ["command"]
 
@@ -17,8 +17,9 @@ __all__ = ["command"]
     shell_complete=complete_conjecture,
     help="Also ask this rule again at the case, in a process of its own.",
 )
+@click.option("--json", "as_json", is_flag=True, help="Print one JSON document instead of lines.")
 @click.pass_context
-def command(context: click.Context, certificates: tuple[str, ...], rule: str | None) -> None:
+def command(context: click.Context, certificates: tuple[str, ...], rule: str | None, *, as_json: bool) -> None:
     """Check certificates of structure constants.
 
     A CERTIFICATE is a JSON file that proves one value of the oracle, step by step, from the quantum Chevalley formula. The checker is
@@ -35,8 +36,24 @@ def command(context: click.Context, certificates: tuple[str, ...], rule: str | N
     """  # noqa: D301  # click knows the character, not the two letters
     from conjcheck import recheck
 
-    worst = 0
-    for status, line in recheck.judge(certificates, rule):
-        click.echo(line, err=status == USAGE)
-        worst = max(worst, status)
+    worst, found = 0, []
+    for certificate in certificates:
+        lines = []
+        for status, line in recheck.judge([certificate], rule):
+            lines.append(line.split(": ", 1))
+            worst = max(worst, status)
+            if not as_json:
+                click.echo(line, err=status == USAGE)
+        (verdict, words), *asked = lines
+        found.append(
+            {
+                "certificate": certificate,
+                "verdict": verdict,
+                "words": words,
+                "rule": asked[0][1] if asked else None,
+                "status": status,
+            }
+        )
+    if as_json:
+        echo_json(found)
     context.exit(worst)

@@ -1,5 +1,6 @@
 """``conjcheck board``: the page, the table in Markdown, and links that lead there."""
 
+import json
 from pathlib import Path
 
 import pytest
@@ -93,3 +94,18 @@ def test_wrong_usage(home):
     result = run("conjectures", "-o", "out/plain.html/board.html")
     assert result.exit_code == 2
     assert "expected a file that can be written" in result.stderr
+
+
+def test_json(home):
+    """The rows as one document, and no page unless it is asked for; two things cannot be printed at once."""
+    result = run("conjectures", "--json")
+    assert (result.exit_code, result.stderr) == (0, "")
+    keys = ("name", "file", "status", "scope", "counterexample", "date", "stale", "source", "note")
+    assert json.loads(result.stdout) == [
+        dict.fromkeys(keys, "") | {"name": "plain", "file": "plain.py", "status": "open", "scope": "nothing on record"}
+    ]
+    assert not (home / "board.html").exists()
+    result = run("conjectures", "--json", "-o", "out/board.html", "--markdown", "board.md")
+    assert len(json.loads(result.stdout)) == 1
+    assert result.stderr.splitlines() == [str(Path("out/board.html")), "board.md"]
+    assert run("conjectures", "--json", "--markdown", "-").exit_code == 2

@@ -84,3 +84,27 @@ def test_a_record(tmp_path):
     done = run(str(path))
     assert (done.exit_code, done.stdout) == (2, "")
     assert "rule.json': a record, no certificate; its certificates are, beside it, rule.12345678.certificate.json" in done.stderr
+
+
+def test_json(folder):
+    """One document with one entry per certificate, in order, and the exit status that each alone would have; nothing else is printed."""
+    done = run("good.json", "bad.json", "missing.json", "--json", "--rule", "rules.py::five")
+    assert (done.exit_code, done.stderr) == (2, "")
+    good, bad, missing = json.loads(done.stdout)
+    assert good == {
+        "certificate": "good.json",
+        "verdict": "accepted",
+        "words": f"N = 1 at {TEXT} (1 step on A3/B; five: the rule is said to give 5)",
+        "rule": "five still gives 5 there; its file is unchanged",
+        "status": 0,
+    }
+    assert (bad["verdict"], bad["words"], bad["rule"], bad["status"]) == (
+        "rejected",
+        "the steps give N = 1, got value 5 in the claim",
+        None,
+        1,
+    )
+    assert (missing["verdict"], missing["rule"], missing["status"]) == ("unusable", None, 2)
+    (gone,) = json.loads(run("good.json", "--json", "--rule", "nowhere.py::five").stdout)
+    assert (gone["verdict"], gone["status"]) == ("accepted", 2)
+    assert gone["rule"].startswith("expected conjcheck to ask the rule 'nowhere.py::five'")
