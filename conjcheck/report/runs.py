@@ -76,7 +76,10 @@ _KINDS = (
     _Kind("Lagrangian Grassmannians", ("LG(n,2n)", "\\mathrm{LG}(n,2n)"), families.LagrangianGrassmannians),
     _Kind(
         "maximal orthogonal Grassmannians",
-        ("OG(n,2n+1), OG(n,2n)", "\\mathrm{OG}(n,2n+1), \\mathrm{OG}(n,2n)"),
+        (
+            "OG(n,2n+1) (n >= 2) and OG(n,2n) (n >= 4)",
+            "\\mathrm{OG}(n,2n+1)\\ (n \\ge 2) \\text{ and } \\mathrm{OG}(n,2n)\\ (n \\ge 4)",
+        ),
         families.OrthogonalGrassmannians,
     ),
     _Kind(
