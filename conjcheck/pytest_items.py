@@ -15,14 +15,13 @@ import pytest
 from hypothesis import settings
 
 from conjcheck.conjecture.declare import Conjecture
-from conjcheck.conjecture.discover import declared_twice, prefer_helpers_of
+from conjcheck.conjecture.discover import declared_twice, importing, prefer_helpers_of
 from conjcheck.errors import ConjcheckError, RecordError
 from conjcheck.evidence.record import Record, parse_place, read_record, records_held, stale_words
 from conjcheck.evidence.rerun import ask_afresh
 from conjcheck.evidence.source import rule_hash
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
-from conjcheck.oracle.guard import Watch, watched
 from conjcheck.pytest_state import STATE, seconds
 from conjcheck.report.text import replay_line, text_report
 from conjcheck.testing.answer import plain_value, shown_value
@@ -67,12 +66,11 @@ class PluginFile(pytest.Module):
 
     def _import_problem(self) -> str:
         """Import the file under a time limit; the text of what went wrong. Helpers beside the file can be imported by their name."""
-        prefer_helpers_of(self.path.parent)
-        watch = Watch(forbidding=False)
-        with CallLimit(_IMPORT_LIMIT) as limit, watched(watch):
+        with CallLimit(_IMPORT_LIMIT) as limit:
             limit.started = perf_counter()
             try:
-                _ = self.obj
+                with importing(self.path):
+                    _ = self.obj
             except CallInterrupted:
                 return f"importing the file took longer than {_IMPORT_LIMIT:g} s"
             except (Exception, SystemExit) as raised:
@@ -82,7 +80,6 @@ class PluginFile(pytest.Module):
                 if type(error).__name__ == "ImportPathMismatchError":
                     lines.append("another module has the name of this file: rename it, or run pytest with --import-mode=importlib")
                 return "".join(lines).rstrip()
-        self.asked_oracle = watch.asked
         return ""
 
 
@@ -270,6 +267,7 @@ class PartItem(pytest.Function):
 
     def _run_part(self) -> None:
         """Run the part, work out what it finds, keep the outcome, and fail unless the status is as expected."""
+        prefer_helpers_of(self.path.parent.resolve())
         examination = self.node.examination
         if examination.failure and self.name != "case":
             pytest.skip(f"{examination.failure.status} already, see {self.node.name}::{examination.failure.part}")
@@ -292,13 +290,9 @@ class PartItem(pytest.Function):
         elif self.expected is not None and self.expected.status == "refuted" and outcome.status == "agrees":
             outcome = replace(outcome, note=outcome.note or _NOT_REACHED)
             expected = True
-        if getattr(self.node.parent, "asked_oracle", False) and self.node.conjecture.role == "candidate":
-            warning = (
-                "the file asked the oracle while it was imported: the verdict is no more independent than the use made of that"
-            )
-            outcome = replace(outcome, note=f"{outcome.note}; {warning}" if outcome.note else warning)
+        outcome = outcome.doubted()
         if self.name == "survey" and not on_record and (stale := self._stale()):
-            outcome = replace(outcome, note=f"{outcome.note}; {stale}" if outcome.note else stale)
+            outcome = outcome.noted(stale)
         if on_record and (self.name == "survey" or outcome.minimum) and outcome.status in ("agrees", "refuted"):
             outcome = self._record(outcome)
         self.outcome = outcome
@@ -392,7 +386,7 @@ class PartItem(pytest.Function):
                 outcome = replace(outcome, note=outcome.note.removeprefix(_NOT_REACHED).removeprefix("; "))
         except RecordError as error:
             notes = [f"not recorded: {error}"]
-        return replace(outcome, note="; ".join(filter(None, [outcome.note, *notes])))
+        return outcome.noted("; ".join(filter(None, notes)))
 
     def _stale(self) -> str:
         """What on record was computed for another version of the rule."""

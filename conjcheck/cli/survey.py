@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import os
 from contextlib import ExitStack, contextmanager
-from dataclasses import replace
 from pathlib import Path
 from time import monotonic
 from typing import TYPE_CHECKING, Any
@@ -148,7 +147,7 @@ def command(
         if not no_record:
             try:
                 record, note = write_campaign(done, outcome)
-                outcome = replace(outcome, note="; ".join(filter(None, [outcome.note, note])))
+                outcome = outcome.noted(note)
             except RecordError as error:  # the verdict is not lost for that
                 problem = str(error)
     except KeyboardInterrupt:

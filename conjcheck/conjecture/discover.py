@@ -2,6 +2,8 @@
 
 import ast
 import sys
+from collections.abc import Iterator
+from contextlib import contextmanager, suppress
 from importlib.machinery import EXTENSION_SUFFIXES, SOURCE_SUFFIXES, ExtensionFileLoader, FileFinder, SourceFileLoader
 from importlib.metadata import EntryPoint, entry_points
 from importlib.util import find_spec, module_from_spec, spec_from_file_location
@@ -10,9 +12,19 @@ from types import CodeType, ModuleType
 
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import DeclarationError, RecordError
-from conjcheck.evidence.source import source_files
+from conjcheck.evidence.source import keep_version, kept_version, source_files, version_of
+from conjcheck.oracle.guard import Watch, askers, watched
 
-__all__ = ["GROUP", "conjectures_in", "conjectures_in_file", "declared_twice", "installed_files", "prefer_helpers_of"]
+__all__ = [
+    "GROUP",
+    "asked_while_imported",
+    "conjectures_in",
+    "conjectures_in_file",
+    "declared_twice",
+    "importing",
+    "installed_files",
+    "prefer_helpers_of",
+]
 
 GROUP = "conjcheck.conjectures"
 """The entry-point group: ``[project.entry-points."conjcheck.conjectures"]`` with ``any_name = "package.module"``."""
@@ -37,14 +49,14 @@ def conjectures_in_file(path: Path) -> list[Conjecture]:
             _import_from_source(helper.parent)
     except RecordError as error:
         raise DeclarationError(str(error)) from None
-    prefer_helpers_of(path.parent.resolve())
     name = f"conjcheck_file_{path.stem}"  # a name that hides no other module
     spec = spec_from_file_location(name, path.resolve(), loader=_FromSource(name, str(path.resolve())))
     assert spec is not None, "a .py file has a spec"
     assert spec.loader is not None, "and a loader"
     module = sys.modules[name] = module_from_spec(spec)
     try:
-        spec.loader.exec_module(module)
+        with importing(path):
+            spec.loader.exec_module(module)
     except (Exception, SystemExit) as error:
         del sys.modules[name]
         raise DeclarationError(f"{path}: cannot be imported: {type(error).__name__}: {error}") from error
@@ -95,16 +107,64 @@ def _import_from_source(folder: Path) -> None:
     sys.path_importer_cache[str(folder)] = FileFinder(str(folder), *loaders)
 
 
+@contextmanager
+def importing(path: Path) -> Iterator[None]:
+    """Around the import of a plug-in: the helpers beside it come first; which version this was is remembered, and who asked the oracle.
+
+    Raises:
+        DeclarationError: the file, or one that it needs, was changed meanwhile.
+    """
+    prefer_helpers_of(path.parent.resolve())
+    version = None
+    with suppress(RecordError):  # no UTF-8: Python may read it all the same
+        version = version_of(path)
+    with watched(Watch(forbidding=False)):
+        yield
+    if version is not None:
+        if not version.untouched:
+            raise DeclarationError(f"expected {path} to stay as it is while it is imported, it was changed; start again")
+        keep_version(path, version)
+
+
+def asked_while_imported(conjecture: Conjecture) -> bool:
+    """Whether its file, or one that this imports, asked the oracle while it was imported."""
+    found = askers()
+    with suppress(RecordError):  # it was written in no file
+        return bool(found) and not found.isdisjoint(path for path, _ in kept_version(conjecture.file).files)
+    return False
+
+
+_plugin_folders: set[Path] = set()
+
+
 def prefer_helpers_of(folder: Path) -> None:
-    """Let plug-ins import the files beside them, and not files of the same name beside other plug-ins."""
+    """Let the plug-ins of a folder import the modules beside them, and not those of the same name beside other plug-ins.
+
+    Modules that were loaded from the folder of another plug-in, where this folder has one of that name, are forgotten. To be called
+    before a plug-in is imported, and again before its rules run: they may import, too.
+    """
+    if sys.path[0] == str(folder) and folder in _plugin_folders:
+        return
     _import_from_source(folder)
     if str(folder) in sys.path:
         sys.path.remove(str(folder))
     sys.path.insert(0, str(folder))
-    for helper in folder.glob("*.py"):
-        loaded = sys.modules.get(helper.stem)
-        if loaded is not None and helper.name.startswith("_") and Path(loaded.__file__ or "") != helper:
-            del sys.modules[helper.stem]
+    _plugin_folders.add(folder)
+    for name in {path.stem if path.suffix == ".py" else path.name for path in folder.iterdir()} - {"conftest"}:
+        loaded = sys.modules.get(name)
+        if loaded is None or not _is_of_another(loaded, folder):
+            continue
+        for known in [known for known in sys.modules if known == name or known.startswith(f"{name}.")]:
+            del sys.modules[known]
+
+
+def _is_of_another(module: ModuleType, folder: Path) -> bool:
+    """Whether a module, or a package, was loaded from the folder of another plug-in."""
+    places = [*getattr(module, "__path__", ()), *filter(None, [getattr(module, "__file__", None)])]
+    homes = {Path(place).parent for place in places} | {
+        Path(place).parent.parent for place in places if place.endswith("__init__.py")
+    }
+    return folder not in homes and not homes.isdisjoint(_plugin_folders)
 
 
 def installed_files() -> list[Path]:

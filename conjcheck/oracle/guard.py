@@ -1,11 +1,16 @@
 """Who is asking: while a rule runs, a question to the oracle is noticed, because the answer would not be independent."""
 
+import sys
 from collections.abc import Iterator
 from contextlib import contextmanager
+from pathlib import Path
+from types import FrameType
 
 from conjcheck.errors import NotIndependent
 
-__all__ = ["Watch", "note_question", "watched"]
+__all__ = ["Watch", "askers", "note_question", "watched"]
+
+_OURS = str(Path(__file__).parents[1])
 
 
 class Watch:
@@ -26,6 +31,7 @@ class Watch:
 
 
 _watches: list[Watch] = []
+_askers: set[str] = set()
 
 
 @contextmanager
@@ -46,7 +52,23 @@ def note_question() -> None:
     """
     if _watches:
         _watches[-1].asked = True
-        if _watches[-1].forbidding:
+        if not _watches[-1].forbidding:
+            _note_askers()
+        else:
             raise NotIndependent(
                 "the oracle was asked by the rule that it is meant to judge; compute the value from the rule alone"
             )
+
+
+def _note_askers() -> None:
+    """Remember whose code is asking: a helper that tabulates the oracle is imported once, and used by many."""
+    frame: FrameType | None = sys._getframe(2)  # noqa: SLF001  # the documented way to the callers
+    while frame is not None:
+        if not frame.f_code.co_filename.startswith(_OURS):
+            _askers.add(frame.f_code.co_filename)
+        frame = frame.f_back
+
+
+def askers() -> frozenset[Path]:
+    """The files that asked the oracle while somebody watched who forbade nothing: while plug-ins were imported."""
+    return frozenset(Path(name).resolve() for name in _askers)

@@ -9,7 +9,6 @@ from typing import Any
 
 from conjcheck.errors import ConjcheckError, RecordError
 from conjcheck.evidence.record import hold_to_file, parse_place, read_record_file, stale_words
-from conjcheck.evidence.source import rule_hash
 from conjcheck.geometry.case import Case
 from conjcheck.oracle import Product, product
 from conjcheck.report.document import document_of_outcomes, document_of_record, visible
@@ -35,10 +34,8 @@ def documents_of(outcomes: Iterable[Mapping[str, Any]], *, made: str = "") -> li
     found = []
     for (file, name), parts in by_conjecture.items():
         document = document_of_outcomes(parts, record=record_beside(file, name), made=made)
-        try:
-            document["rule"] = rule_hash(file)
-        except ConjcheckError:
-            document["rule"] = ""
+        hashes = {part.get("rule_hash") for part in parts}
+        document["rule"] = found_hash if len(hashes) == 1 and isinstance(found_hash := hashes.pop(), str) else ""
         if document["record"] and document["rule"]:
             try:
                 record = read_record_file(_record_path(file, name))

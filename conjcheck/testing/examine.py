@@ -313,7 +313,7 @@ def examine(
     call_limit: float = 10.0,
     cross_check: bool = False,
 ) -> list[Outcome]:
-    """Examine one conjecture from Python: survey, laws, probes; ends after the first part that finds something wrong.
+    """Examine one conjecture from Python: laws, survey, probes; ends after the first part that finds something wrong.
 
     Args:
         conjecture: a decorated function.
@@ -332,14 +332,16 @@ def examine(
         raise DeclarationError(f"expected effort to be one of {', '.join(map(repr, EFFORTS))}, got effort={effort!r}")
     work = replace(EFFORTS[effort], survey=budget) if budget else EFFORTS[effort]
     examination = Examination(conjecture, work, call_limit=call_limit, cross_check=cross_check)
-    outcomes: list[Outcome | None] = [examination.survey()]
-    if conjecture.role == "candidate" and not examination.failure:
-        outcomes.append(examination.laws(seed=seed))
+    outcomes: list[Outcome | None] = []
+    if conjecture.role == "candidate":
+        outcomes.append(examination.laws(seed=seed))  # first, and in no order: a rule that lives on its earlier answers fails here
+    if not examination.failure:
+        outcomes.append(examination.survey())
     levels = examination.levels()
     for _, spaces in levels:
         if not examination.failure:
             outcomes.append(examination.probe(spaces, examination.effort.probe / len(levels), seed=seed))
-    return [outcome for outcome in outcomes if outcome]
+    return [outcome.doubted() for outcome in outcomes if outcome]
 
 
 def _spaces(coverage: Coverage) -> tuple[dict[str, Any], ...]:

@@ -2,7 +2,8 @@
 
 import sys
 from collections.abc import Mapping
-from dataclasses import dataclass
+from contextlib import suppress
+from dataclasses import dataclass, replace
 from html import escape
 from importlib.metadata import PackageNotFoundError, version
 from itertools import islice
@@ -11,7 +12,10 @@ from textwrap import shorten
 from typing import Any
 
 from conjcheck.conjecture.declare import Conjecture
+from conjcheck.conjecture.discover import asked_while_imported
+from conjcheck.errors import RecordError
 from conjcheck.evidence.derivation import Derivation
+from conjcheck.evidence.source import kept_version
 from conjcheck.geometry.case import Case
 from conjcheck.oracle.engine import Product
 from conjcheck.testing.answer import plain_value, shown_value
@@ -25,6 +29,8 @@ __all__ = ["Outcome", "environment", "no_verdict", "plain_product", "smaller_agr
 _MOST_TERMS = 300
 _MOST_IN_CELL = 600
 _MOST_FAILURES = 200
+
+_ASKED = "the file asked the oracle while it was imported: the verdict is no more independent than the use made of that"
 
 _REMEDIES = {
     "crashed": "the rule raised; the end of the traceback is below",
@@ -78,6 +84,15 @@ class Outcome:
     seed: str = ""
     note: str = ""
     spaces: tuple[Mapping[str, Any], ...] = ()
+
+    def noted(self, words: str) -> "Outcome":
+        """The same with one more note."""
+        return replace(self, note="; ".join(filter(None, [self.note, words])))
+
+    def doubted(self) -> "Outcome":
+        """The same with a warning if the oracle had a hand in the rule: its file, or a helper of it, asked while it was imported."""
+        doubtful = self.conjecture.role == "candidate" and asked_while_imported(self.conjecture)
+        return self.noted(_ASKED) if doubtful else self
 
     @property
     def verdict(self) -> str:
@@ -157,6 +172,7 @@ class Outcome:
             "about": self.conjecture.about(),
             "spaces": [dict(space) for space in self.spaces],
             "environment": environment(),
+            "rule_hash": _version(self.conjecture),
         }
         found["minimal"] = bool(self.minimum and self.minimum.certified)
         if self.seed:
@@ -219,6 +235,14 @@ def smaller_agree(count: int, what: str) -> str:
     if count == 1:
         return f"the one smaller case {what.replace('were', 'was').replace('agree', 'agrees')}"
     return f"all {count:,} smaller cases {what}"
+
+
+def _version(conjecture: Conjecture) -> str:
+    """The hash of the rule that was asked; empty if it is not certain which that was."""
+    with suppress(RecordError):  # it was written in no file
+        version = kept_version(conjecture.file)
+        return version.rule if version.untouched else ""
+    return ""
 
 
 def environment() -> str:

@@ -65,7 +65,7 @@ def survey(
     outcome = campaign_outcome(done)
     if record:
         _, note = write_campaign(done, outcome)
-        outcome = replace(outcome, note="; ".join(filter(None, [outcome.note, note])))
+        outcome = outcome.noted(note)
     return outcome
 
 
@@ -75,6 +75,10 @@ def campaign_outcome(campaign: Campaign, *, effort: Effort = EFFORTS["normal"]) 
     What is worked out around a refutation (the minimum, the layer) calls the rule in a copy of this process; if the rule ends that, the
     outcome says so and holds what the survey found. A rule that ended its process before, hung or ate memory is not called again.
     """
+    return _outcome(campaign, effort).doubted()
+
+
+def _outcome(campaign: Campaign, effort: Effort) -> Outcome:
     coverage = _coverage(campaign)
     part = "survey" if campaign.terms.draws is None else f"sample[seed {campaign.terms.seed}]"
     failing = next((space for space in campaign.spaces if space.result.findings), None)

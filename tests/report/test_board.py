@@ -97,7 +97,7 @@ def test_what_is_on_record(folder, tmp_path):
 def test_the_last_run_counts_for_its_rule_only(folder, tmp_path):
     """A page beside the board is linked, and its verdict counts while the rule is the one that was run."""
     (rule,) = conjectures_in_file(folder / "plain.py")
-    run = [outcomes("agrees")[0] | {"conjecture": "plain", "file": rule.file}]
+    run = [outcomes("agrees")[1] | {"conjecture": "plain", "file": rule.file, "rule_hash": rule_hash(rule.file)}]
     write_pages(tmp_path, documents_of(run, made="2031-05-06 07:08 UTC"))
     row = rows_of(folder, tmp_path)["plain"]
     assert (row["status"], row["link"], row["date"]) == ("agrees", "plain.html", "2031-05-06 07:08 UTC")
@@ -111,7 +111,7 @@ def test_the_last_run_counts_for_its_rule_only(folder, tmp_path):
 
 def test_a_run_never_whitewashes_a_record(folder, tmp_path):
     """What is refuted on record stays refuted on the board, whatever a run said."""
-    run = [outcomes("agrees")[0] | {"conjecture": "refuted_one", "file": str(folder / "refuted_one.py")}]
+    run = [outcomes("agrees")[1] | {"conjecture": "refuted_one", "file": str(folder / "refuted_one.py")}]
     write_pages(tmp_path, documents_of(run, made="2031-05-06 07:08 UTC"))
     assert rows_of(folder, tmp_path)["refuted_one"]["status"] == "refuted"
 
@@ -189,7 +189,7 @@ def test_a_run_has_an_index(tmp_path):
 def test_the_newest_evidence_counts(folder, tmp_path):
     """Of a record and a page about the rule as it stands the newer one counts, and the row says which, in both outputs."""
     (rule,) = conjectures_in_file(folder / "covered.py")
-    run = [outcomes("agrees")[0] | {"conjecture": "covered", "file": rule.file}]
+    run = [outcomes("agrees")[1] | {"conjecture": "covered", "file": rule.file, "rule_hash": rule_hash(rule.file)}]
     for made, source, scope in (
         ("2001-01-01 00:00 UTC", "from its record", "all of Gr(1,3)"),
         ("2931-01-01 00:00 UTC", "from its last run", "all 2"),
