@@ -12,13 +12,18 @@ from typing import Any
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import LedgerError, NotationError, OutOfReach
 from conjcheck.evidence.ledger import ChunkKey, Ledger, library_mark
-from conjcheck.evidence.source import rule_hash
+from conjcheck.evidence.source import Version, kept_version, version_of
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.oracle import ENGINES, engines_for
 from conjcheck.testing.chunks import Chunk, ChunkResult, chunks, sample_chunks
-from conjcheck.testing.isolation import close_all, isolated
+from conjcheck.testing.isolation import close_all, isolated, isolated_afresh
 
 __all__ = ["Campaign", "Progress", "SpaceResult", "Terms", "run_campaign"]
+
+_AGAIN_SPACES, _AGAIN_ROWS = 3, 24
+_AGAIN_SHARE, _AGAIN_SECONDS, _AGAIN_PATIENCE = 0.05, 2.0, 120.0
+"""What is asked again: rows of the last spaces, for so large a share of the time of the survey, or so many seconds; not waited for
+longer than that."""
 
 _AHEAD = 3
 """Chunks per job that are given out at a time: few, so that a failure wastes little, and enough to keep all processes busy."""
@@ -84,6 +89,8 @@ class Campaign:
         stale: words for each piece of older work in the ledger that counts no more.
         resumed: rows taken from the ledger.
         seconds: by the clock, this time.
+        again: where everything agrees in order, what is wrong when rows are asked again, in another order, by a process that was asked
+            nothing before: the rule is no function of its arguments. ``None`` if nothing is.
     """
 
     conjecture: Conjecture
@@ -93,6 +100,7 @@ class Campaign:
     stale: tuple[str, ...] = ()
     resumed: int = 0
     seconds: float = 0.0
+    again: dict[str, Any] | None = None
 
     @property
     def problems(self) -> list[str]:
@@ -145,7 +153,7 @@ def run_campaign(
         watching: told how far it is.
 
     Raises:
-        NotationError: a space that is not in the family, or a conjecture without a file.
+        NotationError: a space that is not in the family, or a conjecture without a file, or one that has changed since it was imported.
         OutOfReach: a space that no engine covers.
         LedgerError: a ledger that cannot be used.
     """
@@ -153,17 +161,22 @@ def run_campaign(
     started = monotonic()
     chosen = sorted(set(spaces))
     _check(conjecture, chosen)
-    rule = rule_hash(conjecture.file)
+    version = version_of(conjecture.file)
+    if (rule := version.rule) != kept_version(conjecture.file).rule:
+        raise NotationError(f"expected {conjecture.file} as it was when it was imported, it was changed; import it again")
     kept = Ledger(ledger) if ledger else None
+    again = None
     try:
         stale = _stale(kept, conjecture, rule)
         plans = _plans(conjecture, chosen, rule, terms)
         engines = ["localisation" if conjecture.is_equivariant else engines_for(X)[0].name for X in chosen]
         results = [SpaceResult(X, terms.draws or X.number_of_classes**2, name) for X, name in zip(chosen, engines, strict=True)]
         pool = executor or ThreadPoolExecutor(jobs, thread_name_prefix="conjcheck")
-        walk = _Walk(results, kept, terms, watching)
+        walk = _Walk(results, kept, terms, watching, version)
         try:
             walk.through(plans, pool, ahead=_AHEAD * jobs)
+            if terms.draws is None and all(space.complete and not space.result.failing for space in walk.results):
+                again = _asked_again(conjecture, walk.results, rule, terms, pool)
         finally:
             walk.forget()
             if executor is None:
@@ -173,14 +186,44 @@ def run_campaign(
     finally:
         if kept:
             kept.__exit__(None, None, None)
-    return Campaign(conjecture, rule, terms, tuple(walk.reached()), stale, walk.resumed, monotonic() - started)
+    return Campaign(conjecture, rule, terms, tuple(walk.reached()), stale, walk.resumed, monotonic() - started, again)
+
+
+def _asked_again(
+    conjecture: Conjecture, done: list[SpaceResult], rule: str, terms: Terms, executor: Executor
+) -> dict[str, Any] | None:
+    """What is wrong when some rows are asked again, the last spaces first, in no order, by a process that was asked nothing before.
+
+    A call that takes too long there says nothing: what a rule keeps between calls, and may keep, has to be made first.
+    """
+    seconds = max(_AGAIN_SHARE * sum(space.result.seconds for space in done), _AGAIN_SECONDS) / _AGAIN_SPACES
+    texts, library = [], library_mark()
+    for space in sorted(done, key=lambda space: space.X, reverse=True)[:_AGAIN_SPACES]:
+        affordable = int(seconds * space.of / max(space.result.seconds, 1e-9))
+        draws = min(max(affordable, 1), _AGAIN_ROWS)
+        chunk = _chunk(conjecture, space.X, rule, replace(terms, draws=draws, seed=space.of), library, (0, draws))
+        texts.append(chunk.as_text())
+    try:
+        patience = _AGAIN_PATIENCE + _AGAIN_SPACES * terms.call_limit
+        found = [json.loads(text) for text in executor.submit(isolated_afresh, texts).result(patience)]
+    except Exception:  # whatever an executor raises: the rows are compared already
+        return None
+    entries = [entry for result in found if not result.get("problem") for entry in result["findings"]]
+    return next((entry for entry in entries if entry["status"] != "too-slow"), None)
 
 
 class _Walk:
     """Gives out chunks in order, takes results in any order, and adds them up in order."""
 
-    def __init__(self, results: list[SpaceResult], kept: Ledger | None, terms: Terms, watching: Callable[[Progress], None]) -> None:
-        self.results, self.kept, self.terms, self.watching = results, kept, terms, watching
+    def __init__(
+        self,
+        results: list[SpaceResult],
+        kept: Ledger | None,
+        terms: Terms,
+        watching: Callable[[Progress], None],
+        version: Version,
+    ) -> None:
+        self.results, self.kept, self.terms, self.watching, self.version = results, kept, terms, watching, version
         self.resumed = self.done = self.cases = 0
         self.of = sum(space.of for space in results)
         self.last: _Plan | None = None
@@ -214,6 +257,9 @@ class _Walk:
         for k, (plan, found) in enumerate(self.waiting):
             if isinstance(found, Future) and found.done():
                 result = _result(plan, found)
+                if not self.version.untouched:
+                    changed = f"{plan.chunk.file}, or a file that it needs, was changed during the survey; start again"
+                    result = ChunkResult(problem=changed)
                 if self.kept and not result.problem:
                     self.kept.put(plan.key, result.as_json())
                 self.waiting[k] = plan, result
@@ -328,22 +374,25 @@ def _plans(conjecture: Conjecture, spaces: list[FlagVariety], rule: str, terms: 
     library = library_mark()
     for place, X in enumerate(spaces):
         for first, last in chunks(conjecture, X) if terms.draws is None else sample_chunks(terms.draws):
-            chunk = Chunk(
-                str(Path(conjecture.file).resolve()),
-                conjecture.name,
-                rule,
-                conjecture.ring,
-                X.name,
-                None if terms.draws is None else terms.seed,
-                first,
-                last,
-                terms.every,
-                terms.call_limit,
-                terms.memory,
-                terms.cross_check,
-                library,
-            )
+            chunk = _chunk(conjecture, X, rule, terms, library, (first, last))
             yield _Plan(place, chunk, ChunkKey(rule, conjecture.name, library, X.name, terms.part, first, last))
+
+
+def _chunk(conjecture: Conjecture, X: FlagVariety, rule: str, terms: Terms, library: str, places: tuple[int, int]) -> Chunk:
+    return Chunk(
+        str(Path(conjecture.file).resolve()),
+        conjecture.name,
+        rule,
+        conjecture.ring,
+        X.name,
+        None if terms.draws is None else terms.seed,
+        *places,
+        terms.every,
+        terms.call_limit,
+        terms.memory,
+        terms.cross_check,
+        library,
+    )
 
 
 def _stale(kept: Ledger | None, conjecture: Conjecture, rule: str) -> tuple[str, ...]:

@@ -24,7 +24,7 @@ from conjcheck.testing.chunks import Chunk, ChunkResult, entry_of, rows_of_chunk
 from conjcheck.testing.finding import Finding
 from conjcheck.testing.worker import Marks
 
-__all__ = ["close_all", "isolated"]
+__all__ = ["close_all", "isolated", "isolated_afresh"]
 
 _GRACE = 10.0
 _FROM_OUTSIDE = (1, 2, 9, 15)
@@ -219,6 +219,14 @@ def isolated(text: str) -> str:
             problem=f"{chunk.space}: rows {chunk.first} to {chunk.last} gave {total.seen} rows: a fault of conjcheck"
         )
     return json.dumps(total.as_json())
+
+
+def isolated_afresh(texts: list[str]) -> list[str]:
+    """The same for several chunks, one after the other, in a process that was asked nothing before."""
+    _here.closed = _closed
+    with contextlib.suppress(_Closed):
+        _process(fresh=True)
+    return [isolated(text) for text in texts]
 
 
 def _survived(chunk: Chunk) -> ChunkResult:

@@ -82,6 +82,11 @@ def _outcome(campaign: Campaign, effort: Effort) -> Outcome:
     coverage = _coverage(campaign)
     part = "survey" if campaign.terms.draws is None else f"sample[seed {campaign.terms.seed}]"
     failing = next((space for space in campaign.spaces if space.result.findings), None)
+    if failing is None and campaign.again is not None:
+        finding = Finding(
+            "unstable", parse_place(campaign.again["where"]), detail=_answers(campaign.again), trace=campaign.again["trace"]
+        )
+        return replace(_agreement(campaign, part, coverage), status="unstable", finding=finding)
     if failing is None:
         return _agreement(campaign, part, coverage)
     if campaign.terms.draws is not None:
@@ -121,6 +126,17 @@ def _outcome(campaign: Campaign, effort: Effort) -> Outcome:
         confirmed_by=how,
         note=note,
         seconds=campaign.seconds,
+    )
+
+
+def _answers(entry: dict[str, Any]) -> str:
+    """The two answers of a rule that is no function of its arguments."""
+    now = entry["detail"] if entry["status"] != "refuted" else "False" if entry["rule"] is None else entry["rule"]
+    right = "True" if entry["rule"] is None and entry["status"] == "refuted" else entry["oracle"]
+    first = "no complaint" if entry["status"] != "refuted" else right
+    return (
+        f"expected one answer for one case, got {first} when all rows were asked in order, and {now} when some were asked in another order "
+        "by a process that had been asked nothing before"
     )
 
 
@@ -255,6 +271,8 @@ def campaign_record(campaign: Campaign, outcome: Outcome) -> Record:
 def _recording(campaign: Campaign, outcome: Outcome) -> Recording:
     """The same, with what became of older counterexamples: these are computed again in a copy of this process."""
     conjecture, limit = campaign.conjecture, campaign.terms.call_limit
+    if outcome.status == "unstable":
+        raise RecordError(f"expected one answer of {conjecture.name} for one case, got several; nothing was recorded")
     if current_record(conjecture).rule != campaign.rule:
         raise RecordError(
             f"expected {conjecture.file} as it was when the survey began ({campaign.rule[:19]}), it was changed meanwhile; "

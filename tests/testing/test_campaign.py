@@ -136,7 +136,9 @@ class Shuffled(Executor):
             with self.lock:
                 task = self.tasks.pop(self.chooser.randrange(len(self.tasks))) if self.tasks else None
             if task and task[0].set_running_or_notify_cancel():
-                task[0].set_result(self.compare(Chunk.parse(task[1])))
+                texts = task[1] if isinstance(task[1], list) else [task[1]]
+                found = [self.compare(Chunk.parse(text)) for text in texts]
+                task[0].set_result(found if isinstance(task[1], list) else found[0])
 
     def compare(self, chunk):
         comparer = self.comparers.setdefault(chunk.name, None) or Comparer(load(chunk.file, chunk.name))
@@ -280,13 +282,64 @@ def test_changed_in_the_middle(tmp_path, small_pieces):
 
     done = run_campaign(conjecture, [Gr(1, 6)], ledger=kept, watching=change)
     assert len(done.problems) == 1
-    assert "as it was when the survey began" in done.problems[0] or "stopped" in done.problems[0]
+    assert "was changed during the survey" in done.problems[0] or "stopped" in done.problems[0]
     assert done.spaces[0].result.findings == ()
     assert not done.spaces[0].complete
     path.write_text(before)
     again = run_campaign(conjecture, [Gr(1, 6)], ledger=kept)
     assert again.resumed > 0
     assert counted(again) == plain(conjecture, [Gr(1, 6)])
+
+
+def test_a_file_that_is_read_at_each_call(tmp_path, small_pieces):
+    """What is compared while a data file says something else is not kept, although the file says the old thing again later."""
+    reading = "    if (Path(__file__).parent / 'data' / 'right.txt').read_text() == 'no':\n        return 7\n    power ="
+    path, kept = write(tmp_path, "from pathlib import Path\n" + POWERS.replace("    power =", reading)), tmp_path / "kept.sqlite"
+    data = tmp_path / "data" / "right.txt"
+    data.parent.mkdir()
+    data.write_text("no")
+    conjecture = load(path)
+
+    def change(progress):
+        data.write_text("yes")
+
+    data.write_text("no")
+    done = run_campaign(conjecture, [Gr(1, 2)], ledger=kept)
+    assert done.spaces[0].result.findings
+    other = run_campaign(conjecture, [Gr(1, 6)], ledger=kept, watching=change, terms=Terms(every=True))
+    assert "was changed during the survey" in other.problems[0]
+    data.write_text("no")
+    again = run_campaign(conjecture, [Gr(1, 6)], ledger=kept, terms=Terms(every=True))
+    assert again.spaces[0].result.failing > 30
+    with pytest.raises(NotationError, match="was changed; import it again"):
+        data.write_text("perhaps")
+        run_campaign(conjecture, [Gr(1, 2)])
+
+
+REMEMBERING = """
+seen = {}
+
+@candidate(on=ProjectiveSpaces())
+def remembering(X, u, v):
+    last = seen.get((X.n, u.index, v.index - 1), seen.get((X.n, u.index - 1, v.index)))
+    if last is None and (u.index or v.index):
+        return {}
+    w, d = (0, 0) if last is None else last
+    seen[X.n, u.index, v.index] = w, d = (w, d) if last is None else (w + 1, d) if w + 1 < X.n else (0, d + 1)
+    return {(X.classes[w], (d,)): 1}
+"""
+"""Right as long as rows are asked in order, since each answer is made from an earlier one."""
+
+
+@pytest.mark.parametrize("jobs", [1, 2])
+def test_a_rule_that_lives_on_its_earlier_answers(tmp_path, jobs):
+    """Rows are asked again, in another order, by a process that was asked nothing before; a right rule passes."""
+    spaces = [Gr(1, n) for n in range(2, 8)]
+    done = run_campaign(load(write(tmp_path, REMEMBERING)), spaces, jobs=jobs)
+    assert all(space.complete and not space.result.findings for space in done.spaces)
+    assert (done.again["status"], done.again["rule"]) == ("refuted", 0)
+    (tmp_path / "other").mkdir()
+    assert run_campaign(load(write(tmp_path / "other", POWERS)), spaces, jobs=jobs).again is None
 
 
 class Liar(Shuffled):

@@ -246,6 +246,29 @@ def test_two_surveys_add_up(tmp_path):
     assert numbers(path) == before
 
 
+def test_right_in_one_order_only(tmp_path):
+    """A rule that is right when rows are asked in order, and wrong when it is asked first, is unstable, and nothing goes on record."""
+    source = """
+        seen = set()
+
+        @candidate(on=ProjectiveSpaces())
+        def first(X, u, v, w, d):
+            seen.add((X.n, u.length + v.length))
+            known = u.length + v.length < 1 or (X.n, u.length + v.length - 1) in seen
+            return int(known and w.length == (u.length + v.length) % X.n and d == ((u.length + v.length) // X.n,))
+        """
+    done, outcome = surveyed(write(tmp_path, source), [Gr(1, 3), Gr(1, 6)])
+    assert outcome.status == "unstable"
+    assert outcome.finding.detail == (
+        "expected one answer for one case, got 1 when all rows were asked in order, and 0 when some were asked in another order by a "
+        "process that had been asked nothing before"
+    )
+    assert outcome.rows == 45
+    with pytest.raises(RecordError, match="expected one answer of first for one case, got several; nothing was recorded"):
+        write_campaign(done, outcome)
+    assert not (tmp_path / "records").exists()
+
+
 def test_two_surveys_that_end_at_once(tmp_path, monkeypatch):
     """However long it takes to work out what goes on record, nothing that another survey writes meanwhile is lost."""
     path = write(tmp_path, POWERS)
