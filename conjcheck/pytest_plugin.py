@@ -8,7 +8,10 @@ from __future__ import annotations
 
 import json
 import random
+import re
+import shlex
 import sys
+from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import pytest
@@ -17,7 +20,6 @@ from conjcheck.pytest_state import EFFORTS, LINES, STATE, seconds
 
 if TYPE_CHECKING:
     from collections.abc import Generator
-    from pathlib import Path
 
 _FOLDERS = "conjcheck_folders"
 
@@ -111,10 +113,53 @@ def pytest_report_collectionfinish(config: pytest.Config, items: list[pytest.Ite
 
 
 def _is_plugin_file(path: Path, config: pytest.Config) -> bool:
-    """A .py file in a folder of conjectures; names with a leading underscore are helpers."""
+    """A .py file in a folder of conjectures, or of that name where the command line leads; with a leading underscore it is a helper."""
     if path.suffix != ".py" or path.name.startswith("_") or path.name == "conftest.py":
         return False
-    return any(config.rootpath.joinpath(folder).resolve() in path.resolve().parents for folder in config.getini(_FOLDERS))
+    place, folders = path.resolve(), [Path(folder) for folder in config.getini(_FOLDERS)]
+    if any(config.rootpath.joinpath(folder).resolve() in place.parents for folder in folders):
+        return True
+    named = {folder for folder in _folders_named(config) if folder != config.rootpath.resolve()}
+    return any(folder.name in {known.name for known in folders} for folder in named & {*place.parents})
+
+
+def _folders_named(config: pytest.Config) -> list[Path]:
+    """The folders on the command line."""
+    given = [config.invocation_params.dir / argument.split("::")[0] for argument in config.args]
+    return [path.resolve() for path in given if path.is_dir()]
+
+
+def pytest_collection_finish(session: pytest.Session) -> None:
+    """Say which folders on the command line hold conjectures that were not collected: nobody is to take silence for agreement."""
+    config = session.config
+    reporter = config.pluginmanager.get_plugin("terminalreporter")
+    if reporter is None or config.getoption("--conjcheck-case"):
+        return
+    for folder in _folders_named(config):
+        below = [f"{way}{name}/*.py" for name in config.getini(_FOLDERS) for way in ("", "*/")]
+        inside = sorted({path for pattern in ("*.py", *below) for path in folder.glob(pattern)})
+        left = [path for path in inside if not _is_plugin_file(path, config) and _declares(path)]
+        left = [path for path in left if not any(item.path == path for item in session.items)]
+        if left:
+            where = shlex.quote(str(left[0].parent))
+            reporter.write_line(
+                f"conjcheck: {left[0]} is not collected: name its folder on the command line, pytest -o {_FOLDERS}={where} {where}, "
+                f"or in the ini key {_FOLDERS}",
+                yellow=True,
+            )
+
+
+def _declares(path: Path) -> bool:
+    """Whether a file looks like a plug-in."""
+    try:
+        text = path.read_text(encoding="utf-8", errors="replace")
+    except OSError:
+        return False
+    return (
+        not path.name.startswith(("_", "test_"))
+        and "conjcheck" in text
+        and bool(re.search(r"^@(candidate|claim)\b", text, re.MULTILINE))
+    )
 
 
 @pytest.hookimpl(wrapper=True)

@@ -6,7 +6,14 @@ import types
 
 import pytest
 
-from conjcheck.conjecture.discover import GROUP, conjectures_in, conjectures_in_file, installed_files
+from conjcheck.conjecture.discover import (
+    GROUP,
+    asked_while_imported,
+    conjectures_in,
+    conjectures_in_file,
+    installed_files,
+    prefer_helpers_of,
+)
 from conjcheck.errors import DeclarationError
 
 
@@ -130,3 +137,51 @@ def test_no_such_file(tmp_path):
     for path in (tmp_path / "rule.py", tmp_path / "rule.txt", tmp_path):
         with pytest.raises(DeclarationError, match="expected a plug-in file such as conjectures"):
             conjectures_in_file(path)
+
+
+@pytest.fixture
+def two(tmp_path, monkeypatch):
+    """Two folders of plug-ins with helpers of the same names: a package, and a module that is imported when the rule runs."""
+    monkeypatch.setattr(sys, "path", [*sys.path])
+    for name, value in (("one", 1), ("two", 2)):
+        package = tmp_path / name / "quiet_util"
+        package.mkdir(parents=True)
+        (package / "__init__.py").write_text("")
+        (package / "core.py").write_text(f"VALUE = {value}\n")
+        (tmp_path / name / "_quiet_late.py").write_text(f"VALUE = {value}\n")
+        (tmp_path / name / f"rule_{name}.py").write_text(
+            HEADER + "from quiet_util.core import VALUE\n@candidate(on=Grassmannians())\n"
+            "def rule(X, u, v):\n    from _quiet_late import VALUE as late\n    return VALUE, late\n"
+        )
+    yield tmp_path
+    for module in [name for name in sys.modules if name.startswith(("quiet_util", "_quiet_late"))]:
+        del sys.modules[module]
+
+
+def test_helpers_of_different_folders(two):
+    """Each plug-in gets the package beside it, and the module that its rule imports late, whatever was imported before."""
+    rules = {name: conjectures_in_file(two / name / f"rule_{name}.py")[0] for name in ("one", "two")}
+    for name, value in (("one", 1), ("two", 2), ("one", 1)):
+        prefer_helpers_of(two / name)
+        assert rules[name].rule(None, None, None) == (value, value)
+
+
+def test_changed_while_it_is_imported(tmp_path, monkeypatch):
+    """A file that is written to while it is imported is refused: nobody knows which version was."""
+    monkeypatch.setattr(sys, "path", [*sys.path])
+    path = tmp_path / "rule.py"
+    path.write_text(HEADER + RULE.format("found") + "with open(__file__, 'a') as file:\n    file.write('# more')\n")
+    with pytest.raises(DeclarationError, match="to stay as it is while it is imported, it was changed; start again"):
+        conjectures_in_file(path)
+
+
+def test_who_asked_the_oracle(tmp_path, monkeypatch):
+    """A helper that tabulates the oracle when it is first imported makes every plug-in doubtful that imports it, and no other."""
+    monkeypatch.setattr(sys, "path", [*sys.path])
+    (tmp_path / "_quiet_table.py").write_text("from conjcheck import Fl, product\nTABLE = product(Fl(3).point, Fl(3).point)\n")
+    found = []
+    for name, line in (("first", "import _quiet_table\n"), ("second", "import _quiet_table\n"), ("third", "")):
+        (tmp_path / f"{name}.py").write_text(HEADER + line + RULE.format(name))
+        found += conjectures_in_file(tmp_path / f"{name}.py")
+    del sys.modules["_quiet_table"]
+    assert [asked_while_imported(conjecture) for conjecture in found] == [True, True, False]

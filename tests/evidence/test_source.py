@@ -6,7 +6,7 @@ import shutil
 import pytest
 
 from conjcheck.errors import RecordError
-from conjcheck.evidence.source import rule_hash, source_files
+from conjcheck.evidence.source import keep_version, kept_version, rule_hash, source_files, version_of
 
 FILES = {
     "pyproject.toml": "",
@@ -142,6 +142,52 @@ def test_files_that_are_named(tmp_path):
     assert rule_hash(tmp_path / "rule.py") == hashes[-1]
     shutil.copytree(tmp_path, tmp_path / "elsewhere")
     assert rule_hash(tmp_path / "elsewhere" / "rule.py") == hashes[-1]
+
+
+@pytest.mark.parametrize(
+    ("source", "name"),
+    [
+        ("import sys\nsys.path.insert(0, 'lib')\nimport far\n", "lib/far.py"),
+        ("import far\n", "more/lib/far/__init__.py"),
+        ("from far.near import x\n", "lib/far/near.py"),
+        ("import importlib\nimportlib.import_module(name='far')\n", "far.py"),
+        ("from pathlib import Path\nT = Path(__file__).parent / 'data' / 'table.json'\n", "conjectures/data/table.json"),
+        ("from pathlib import Path\nT = Path(__file__).parents[1] / 'data' / 'table.json'\n", "data/table.json"),
+        ("T = '../data/table.json'\n", "data/table.json"),
+    ],
+)
+@pytest.mark.parametrize("mark", [".git", "conftest.py"])
+def test_what_lies_elsewhere_in_the_repository(tmp_path, source, name, mark):
+    """What Python would not find beside the rule, or above it, is looked for in the whole repository, modules and data alike."""
+    (tmp_path / mark).touch()
+    for file, text in (("conjectures/rule.py", source), (name, "x = 1\n"), ("lib/other.py", "y = 1\n"), (".hidden/far.py", "")):
+        (tmp_path / file).parent.mkdir(parents=True, exist_ok=True)
+        (tmp_path / file).write_text(text)
+    hashes = [rule_hash(tmp_path / "conjectures" / "rule.py")]
+    for file, text in ((name, "x = 2\n"), ("lib/other.py", "y = 2\n"), (".hidden/far.py", "z = 1\n")):
+        (tmp_path / file).write_text(text)
+        hashes.append(rule_hash(tmp_path / "conjectures" / "rule.py"))
+    assert hashes[0] != hashes[1] == hashes[2] == hashes[3]
+
+
+def test_a_version_is_untouched_until_somebody_writes(tmp_path):
+    """A version knows when one of its files was written to, even if it says again what it said before."""
+    path, data = tmp_path / "rule.py", tmp_path / "table.json"
+    path.write_text("T = 'table.json'\n")
+    data.write_text("[1]")
+    version = version_of(path)
+    assert version.untouched
+    data.write_text("[2]")
+    assert not version.untouched
+    data.write_text("[1]")
+    assert not version.untouched
+    again = version_of(path)
+    assert (again.rule, again.untouched) == (version.rule, True)
+    assert kept_version(path) == again
+    keep_version(path, version)
+    assert kept_version(path) is version
+    data.unlink()
+    assert not again.untouched
 
 
 def test_a_circle(tmp_path):

@@ -105,6 +105,22 @@ def test_two_files_of_one_name(project, mode):
         result.stdout.fnmatch_lines(["*--import-mode=importlib*"])
 
 
+def test_a_folder_on_the_command_line(project):
+    """A folder named there that is called like a folder of plug-ins is one, wherever it lies; of any other the run says what to do."""
+    project.write("far/conjectures/powers.py", PROJECTIVE.format(name="powers"))
+    project.write("ideas/others.py", PROJECTIVE.format(name="others"))
+    assert {node.split("::")[1] for node in project.items("far/conjectures")} == {"powers"}
+    assert project.items() == []
+    for named, missed in ((".", "far/conjectures/powers.py"), ("far", "far/conjectures/powers.py"), ("ideas", "ideas/others.py")):
+        place = project.path / missed
+        words = (
+            f"conjcheck: {place} is not collected: name its folder on the command line, pytest -o conjcheck_folders={place.parent} "
+        )
+        assert words in project.run("--collect-only", "-q", named).text
+        assert project.items("-o", f"conjcheck_folders={place.parent}", str(place.parent))
+    assert "not collected" not in project.run("--collect-only", "-q", "far/conjectures").text
+
+
 def test_other_folders(project):
     """The ini key names the folders of plug-ins; files elsewhere are left alone."""
     project.ini("conjcheck_folders = rules more/rules")
