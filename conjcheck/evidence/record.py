@@ -20,6 +20,7 @@ from conjcheck.errors import RecordError
 from conjcheck.evidence.entries import Counterexample, Covered, Sample, refuting
 from conjcheck.evidence.reading import FORMAT, VERSION, contents, parse_place
 from conjcheck.evidence.source import rule_hash
+from conjcheck.geometry.case import Case, place_of_row
 from conjcheck.wording import counted
 
 if sys.platform != "win32":
@@ -130,6 +131,23 @@ class Record:
         """
         return replace(self, samples=(*self.samples, sample))
 
+    def consistent(self) -> "Record":
+        """The record itself.
+
+        Raises:
+            RecordError: it holds a counterexample where it says that everything was compared and agrees, both for one version of the rule.
+        """
+        agreed = {entry.X: entry.seen for entry in self.coverage if not entry.failing}
+        for known in self.counterexamples:
+            row = known.where.row if isinstance(known.where, Case) else known.where
+            if known.rule_hash == self.rule and place_of_row(row) < agreed.get(row.X, 0):
+                raise RecordError(
+                    f"expected agreement or a counterexample at {known.where}, got both for one version of the rule {self.conjecture}: "
+                    f"{agreed[row.X]:,} rows of {row.X} are said to agree; the rule depends on something that its hash does not see, or an "
+                    "entry is wrong: compute both again"
+                )
+        return self
+
     def is_stale(self, rule: str) -> bool:
         """Whether it holds coverage or samples of another version of the rule."""
         return bool(self.coverage or self.samples) and self.rule != rule
@@ -201,7 +219,7 @@ def merge(first: Record, second: Record) -> Record:
         rule=one("hash of the rule", "rule"),
         coverage=first.coverage + second.coverage,
         samples=first.samples + second.samples,
-    )
+    ).consistent()
 
 
 def record_path(conjecture: Conjecture) -> Path:

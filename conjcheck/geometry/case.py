@@ -25,6 +25,7 @@ __all__ = [
     "outcomes",
     "parse_class",
     "place_in_row",
+    "place_of_row",
     "read_degree",
     "rows",
 ]
@@ -256,6 +257,18 @@ def count_below(
             elif (sum(e), e) < (sum(d), d):
                 smaller += len(level)
     return smaller
+
+
+def place_of_row(row: Row) -> int:
+    """The 0-based place of a row among all rows of its variety, in order.
+
+    >>> place_of_row(Row.parse("Gr(1,3): () * (2)"))
+    3
+    """
+    X, a, b = row.X, row.u.length, row.v.length
+    sizes = [len(X.of_length(length)) for length in range(X.dim + 1)]
+    before = sum(x * y for i, x in enumerate(sizes) for j, y in enumerate(sizes) if (i + j, i) < (a + b, a))
+    return before + X.of_length(a).index(row.u) * sizes[b] + X.of_length(b).index(row.v)
 
 
 def rows(X: FlagVariety, first: int = 0, last: int | None = None) -> Iterator[Row]:

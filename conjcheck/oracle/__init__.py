@@ -17,7 +17,7 @@ from conjcheck.oracle.comparison import RecursionEngine
 from conjcheck.oracle.engine import Block, Engine, Product, RowTerms
 from conjcheck.oracle.grassmannian import VafaIntriligatorEngine
 from conjcheck.oracle.guard import note_question
-from conjcheck.oracle.localisation import LocalisationEngine
+from conjcheck.oracle.localisation import Localisation, LocalisationEngine
 
 __all__ = ["ENGINES", "Block", "Product", "constant", "engines_for", "product", "row_terms", "table", "witnesses"]
 
@@ -160,7 +160,8 @@ def witnesses(case: Case) -> list[tuple[str, int]]:
     """The constant of a case by every other way there is: ``(how, value)``, the strongest first.
 
     The other engines that cover the variety, as far as they are quick; the direct route of the recursion; and law 2,
-    ``N_{u,v}^{w,d} = N_{u, w^vee}^{v^vee, d}``, through a product that shares no factor but u.
+    ``N_{u,v}^{w,d} = N_{u, w^vee}^{v^vee, d} = N_{v, w^vee}^{u^vee, d}``, through another product; where localisation is alone and that is
+    the same product, localisation again, at other numbers.
     """
     note_question()
     X, d = case.X, case.d
@@ -173,6 +174,12 @@ def witnesses(case: Case) -> list[tuple[str, int]]:
     ]
     if _RECURSION.refuses(X) is None:
         found.append(("the recursion without symmetries", _RECURSION.direct_row(case.u, case.v).get((case.w, d), 0)))
-    if case.w.dual is not case.v:  # otherwise it would be the same question
-        found.append(("S3-symmetry", chosen.constant(case.u, case.w.dual, case.v.dual, d)))
+    for u, v in ((case.u, case.v), (case.v, case.u)):
+        if case.w.dual is not v:  # otherwise it would be the same question
+            found.append(("S3-symmetry", chosen.constant(u, case.w.dual, v.dual, d)))
+            break
+    if not found and chosen is _LOCALISATION and _LOCALISATION.work(X, weight) <= _CHEAP_WORK:
+        again = Localisation(X)
+        again.seed = 1
+        found.append(("localisation at other numbers", again.constant(case.u, case.v, case.w, d)))
     return found

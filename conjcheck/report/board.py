@@ -197,7 +197,8 @@ def _document(path: Path, name: str) -> dict[str, Any] | None:
     texts = all(isinstance(data.get(key), str) for key in ("status", "scope", "made"))
     failure = data.get("failure")
     fits = texts and (failure is None or (isinstance(failure, dict) and isinstance(failure.get("where"), str)))
-    return data if fits and "failure" in data else None
+    of_a_run = bool(data.get("parts"))  # a page made from a record says no more than the record
+    return data if fits and of_a_run and "failure" in data else None
 
 
 def _date(path: Path) -> str:

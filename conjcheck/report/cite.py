@@ -178,8 +178,8 @@ def _coverage(record: Record, complete: Sequence[Covered], partial: Sequence[Cov
 def _failing(entry: Covered, style: Style) -> str:
     how_far = "" if entry.complete else f"the first {entry.seen:,} of {entry.of:,} pairs of "
     return (
-        f"On {how_far}{style.space(entry.X)} it is wrong at {entry.failing:,} of {_number(entry.cases, 'case')} in "
-        f"{_number(entry.rows, 'product')}."
+        f"On {how_far}{style.space(entry.X)} it fails at {_number(entry.failing, 'case')}; {_number(entry.cases, 'case')} in "
+        f"{_number(entry.rows, 'product')} were compared there."
     )
 
 
@@ -187,11 +187,13 @@ def _sample(sample: Sample, record: Record, style: Style) -> str:
     """What rows drawn at random say, and how little that is."""
     inside = {True: " inside its premise", False: "", None: " inside its premise, if it has one"}[record.premise]
     what = f"{_number(sample.rows, 'product')}{inside} drawn at random ({style.text(sample.how)}; seed {sample.seed})"
-    verdict = "none of them wrong" if not sample.failing else f"{sample.failing:,} of them wrong"
+    verdict = "none of them wrong" if not sample.failing else f"and it fails at {_number(sample.failing, 'product')}"
     drawn = f"On {style.space(sample.X)}, {what} were compared: {_number(sample.cases, 'case')}, {verdict}"
     if sample.rows < FEWEST_ROWS:
         return f"{drawn}; too few for a bound on the failures."
     share, level = failure_bound(sample.rows, sample.failing), style.text("95 %")
+    if share == "1":
+        return f"{drawn}."
     return f"{drawn}; at confidence {level} the share of such products that fail, weighted as they are drawn, is at most {share}."
 
 

@@ -119,6 +119,7 @@ def document_of_record(data: object, *, file: str = "", made: str = "") -> dict[
     scope = scope_of_spaces(spaces) or "nothing is on record about what was compared"
     document = _empty(_text(data["conjecture"]), made) | {
         "file": file,
+        "rule": _text(data.get("rule")),
         "status": "refuted" if refuted else "open",
         "verdict": f"refuted at {_text(first['where'])}, as it stands on record" if first and refuted else f"open: {scope}",
         "scope": scope,

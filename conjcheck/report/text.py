@@ -80,7 +80,10 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
         if finding.objects is not None:
             lines += _entry("objects", "; ".join(finding.objects) or "none")
     if finding.oracle is not None:
-        lines += _entry("oracle", f"{finding.oracle}, confirmed by {outcome.confirmed_by}")
+        confirmed = (
+            f"confirmed by {outcome.confirmed_by}" if outcome.confirmed_by else "by one engine: no other way is in reach there"
+        )
+        lines += _entry("oracle", f"{finding.oracle}, {confirmed}")
     else:
         lines += _entry("confirmed", outcome.confirmed_by)
     if outcome.explanation:

@@ -191,7 +191,7 @@ def confirm(finding: Finding) -> tuple[Finding, str]:
     ways = witnesses(finding.where)
     if isinstance(finding.oracle, Sampled) or isinstance(finding.rule, RootPolynomial):
         return _confirm_polynomial(finding, finding.where)
-    if finding.oracle is None:
+    if finding.oracle is None and ways:
         finding = replace(finding, oracle=ways[0][1])
     for how, value in ways:
         if value != finding.oracle:
@@ -207,7 +207,10 @@ def _confirm_polynomial(finding: Finding, case: Case) -> tuple[Finding, str]:
     try:
         exact = equivariant_constant(case)
     except OutOfReach:
-        return finding, "values at two random points modulo two primes; it has too many monomials to be written out"
+        return (
+            finding,
+            "no more than the comparison, at two random points modulo two primes: it has too many monomials to be written out",
+        )
     if exact == finding.rule or not (finding.oracle or 0) == exact:
         raise EnginesDisagree(f"expected {exact} at {case} to be the constant of the comparison, it is not; the oracle is in doubt")
     return replace(finding, oracle=exact), "interpolation at as many points as it has monomials, and two more modulo another prime"

@@ -163,7 +163,7 @@ def recording(
         record = replace(record, status="refuted")
     files = {known.certificate for known in retired if known.certificate} - {known.certificate for known in record.counterexamples}
     folder = record_path(conjecture).parent
-    return Recording(record, "; ".join(words), tuple(folder / name for name in sorted(filter(None, files))))
+    return Recording(record.consistent(), "; ".join(words), tuple(folder / name for name in sorted(filter(None, files))))
 
 
 def write_recording(conjecture: Conjecture, made: Recording) -> Path:

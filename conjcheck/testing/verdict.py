@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable
 from concurrent.futures import Executor
+from contextlib import suppress
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -10,7 +11,7 @@ from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import RecordError
 from conjcheck.evidence.entries import Covered, Sample, own_version
 from conjcheck.evidence.reading import parse_place
-from conjcheck.evidence.record import Record, current_record, records_held
+from conjcheck.evidence.record import Record, current_record, read_record, records_held
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.testing.apart import Lost, apart
@@ -75,7 +76,12 @@ def campaign_outcome(campaign: Campaign, *, effort: Effort = EFFORTS["normal"]) 
     What is worked out around a refutation (the minimum, the layer) calls the rule in a copy of this process; if the rule ends that, the
     outcome says so and holds what the survey found. A rule that ended its process before, hung or ate memory is not called again.
     """
-    return _outcome(campaign, effort).doubted()
+    outcome = _outcome(campaign, effort).doubted()
+    if outcome.status == "agrees":
+        with suppress(RecordError):  # told when it is to be written
+            known = read_record(campaign.conjecture).refuting(campaign.rule)
+            outcome = outcome.noted(f"on record as refuted, at {known[0].where}: not among what was compared" if known else "")
+    return outcome
 
 
 def _outcome(campaign: Campaign, effort: Effort) -> Outcome:

@@ -19,13 +19,16 @@ CASES = (
     "Fl(3): [132] * [321] -> [132], q^(1,0)",
 )
 PLACES = (*map(Case.parse, CASES), Row.parse("Fl(3): [321] * [321]"))
+FAILING = {place if isinstance(place, Row) else place.row for place in PLACES}
 
 
 @cache
 def numbers_after(X, seen):
     """What an imagined rule has in the first rows of a space: rows inside its premise, cases, nonzero, failing."""
-    inside = [k for k, row in zip(range(seen), rows(X), strict=False) if (row.u.index + row.v.index) % 3]
-    return len(inside), sum(1 + k % 4 for k in inside), sum(k % 2 for k in inside), sum(k % 17 == 16 for k in inside)
+    first = list(zip(range(seen), rows(X), strict=False))
+    inside = [k for k, row in first if (row.u.index + row.v.index) % 3 or row in FAILING]
+    failing = sum(k % 17 == 16 for k in inside) + sum(row in FAILING for _, row in first)
+    return len(inside), sum(1 + k % 4 for k in inside), sum(k % 2 for k in inside), failing
 
 
 @st.composite

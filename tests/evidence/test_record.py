@@ -259,13 +259,22 @@ OTHER_PLACE = Counterexample(SMALLER, 0, 1, minimal=False)
             {"counterexamples": (OTHER_PLACE,)},
             f"no counterexample smaller than {CASE}, which is on record as minimal, got {SMALLER}",
         ),
+        (
+            {
+                "counterexamples": (
+                    Counterexample(Case.parse("Gr(1,3): (1) * (1) -> (2), q^(0)"), 0, 1, minimal=False, rule_hash=HASH),
+                )
+            },
+            "expected agreement or a counterexample at Gr(1,3): (1) * (1) -> (2), q^(0), got both for one version of the rule my_rule: "
+            "9 rows of Gr(1,3) are said to agree; ",
+        ),
     ],
-    ids=range(13),
+    ids=range(14),
 )
 def test_contradictions(changes, words):
     """Records of two rules, or with two answers to one question, are not merged, in either order; the message names the entry."""
     sample = Sample(P2.X, "drawn", 7, 10, 20)
-    found = Counterexample(CASE, 0, 1, minimal=True)
+    found = Counterexample(CASE, 0, 1, minimal="said to agree" not in words)
     one = Record("my_rule", "refuted", (found,), "words", "quantum", premise=False, rule=HASH, coverage=(P2,), samples=(sample,))
     messages = []
     for pair in ((one, replace(one, **changes)), (replace(one, **changes), one)):

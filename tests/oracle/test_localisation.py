@@ -163,6 +163,16 @@ def test_several_primes_when_the_bound_asks_for_them(monkeypatch):
         assert engine.row(row.u, row.v) == product(row.u, row.v)
 
 
+def test_where_it_is_alone_and_symmetry_says_nothing():
+    """For u = v = w^vee the symmetry asks the same question; a witness is found all the same, with other numbers."""
+    X = FlagVariety("E7/P7")
+    u = X.schubert(word=(2, 5, 4, 3, 1, 7, 6, 5, 4, 2, 3, 4, 5, 6, 7))
+    case = next(Case(X, u, u, w, d) for w, d in product(u, u) if w.dual is u)
+    assert witnesses(case) == [("localisation at other numbers", 6)]
+    other = next(Case(X, u, v, w, d) for v in X.classes[20:] for w, d in product(u, v) if w.dual is v is not u)
+    assert witnesses(other) == [("S3-symmetry", product(other.u, other.v)[other.w, other.d])]
+
+
 def test_out_of_reach():
     """Too many classes, or too many powers of too many q's, are refused with the reason."""
     assert ENGINES["localisation"].refuses(FlagVariety("F4/B")) == "F4/B has 1,152 classes, localisation stops at 1,000"

@@ -75,12 +75,14 @@ def test_samples():
     ) in text
     assert "Computed by conjcheck 0.1.0 and conjcheck 0.2.0 for" in text
     assert (
-        "3 of them wrong; at confidence 95 % the share of such products that fail, weighted as they are drawn, is at most 0.0758."
-        in citation(replace(OPEN, samples=(replace(sample, failing=3),)))
+        "500 cases, and it fails at 3 products; at confidence 95 % the share of such products that fail, weighted as they are drawn, "
+        "is at most 0.0758." in citation(replace(OPEN, samples=(replace(sample, failing=3),)))
     )
     assert "none of them wrong; too few for a bound on the failures." in citation(
         replace(OPEN, samples=(replace(sample, rows=19),))
     )
+    hopeless = citation(replace(OPEN, samples=(replace(sample, failing=100),)))
+    assert "and it fails at 100 products. Computed by" in hopeless, "no bound of 1 is quoted"
     assert "inside its premise drawn" in citation(replace(OPEN, premise=True, samples=(sample,)))
 
 
@@ -122,11 +124,11 @@ def test_failures_are_never_called_agreement():
     """A space with failing cases is not among those that agree."""
     wrong = replace(OPEN, coverage=(*SMALL[:-1], replace(SMALL[-1], failing=2)))
     text = citation(wrong)
-    assert f"On {SMALL[-1].X} it is wrong at 2 of 36 cases in 36 products." in text
+    assert f"On {SMALL[-1].X} it fails at 2 cases; 36 cases in 36 products were compared there." in text
     assert str(SMALL[-1].X) not in text.split(" They agree there")[0]
     alone = citation(replace(OPEN, coverage=(replace(PART, failing=1),)))
     assert "agree" not in alone
-    assert "On the first 31 of 100 pairs of Gr(3,5) it is wrong at 1 of 33 cases" in alone
+    assert "On the first 31 of 100 pairs of Gr(3,5) it fails at 1 case; 33 cases in" in alone
 
 
 def test_nothing():

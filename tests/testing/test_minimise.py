@@ -341,7 +341,8 @@ def test_confirmed(case):
     """Every constant with n <= 4 is confirmed by another way, whatever the rule said."""
     finding, how = confirm(reported(case))
     assert finding == reported(case)
-    another = [] if finding.where.w.dual is finding.where.v else ["S3-symmetry"]
+    where = finding.where
+    another = [] if where.w.dual is where.v is where.u else ["S3-symmetry"]
     assert how.split(", ")[-len(another) - 2 :] == ["engine localisation", "the recursion without symmetries", *another]
     assert how.startswith("engine recursion") == case[0].is_grassmannian
 
