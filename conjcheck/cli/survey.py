@@ -221,13 +221,14 @@ def _rate(show: Callable[[float, str], None]) -> Callable[[Progress], None]:
 
 def _table(done: Campaign) -> Iterator[str]:
     """One line per space."""
-    lines: list[tuple[str, ...]] = [("space", "rows", "of", "cases", "nonzero", "failing", "seconds", "engine")]
+    seen = "rows" if done.terms.draws is None else "drawn"
+    lines: list[tuple[str, ...]] = [("space", seen, "of", "inside", "cases", "nonzero", "failing", "seconds", "engine")]
     for space in done.spaces:
         r = space.result
-        numbers = [r.seen, space.of, r.cases, r.nonzero, r.failing]
+        numbers = [r.seen, space.X.number_of_classes**2, r.rows, r.cases, r.nonzero, r.failing]
         lines.append((str(space.X), *(f"{number:,}" for number in numbers), f"{r.seconds:.1f}", space.engine))
     yield ""
-    yield from ("  ".join(cells) for cells in aligned(lines, right=range(1, 7)))
+    yield from ("  ".join(cells) for cells in aligned(lines, right=range(1, 8)))
     if done.resumed:
         yield f"{done.resumed:,} of the rows were taken from the ledger"
 

@@ -189,6 +189,7 @@ def _empty(name: str, made: str) -> dict[str, Any]:
         "minimal": False,
         "about": _about(None),
         "notes": [],
+        "rule": "",
         "parts": [],
         "spaces": [],
         "replay": "",

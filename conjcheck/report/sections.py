@@ -133,6 +133,8 @@ def cells(document: Mapping[str, Any], place: Case | Row | None) -> list[dict[st
             if failed or space["failing"]:
                 kind, state = "failed", "≠ fails here"
             of = counted(space["of"], "row")
+            if not space["seen"] and kind == "partly":
+                kind, state = "out", "not compared"
             count = f"all {of}" if whole else f"{space['seen']:,} of {of}"
             degrees = _degrees(document, name, whole=whole, failed=failed) if space["cases"] and len(found) < _MOST_MAPPED else ""
             found.append(

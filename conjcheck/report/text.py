@@ -90,7 +90,7 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
         lines += _entry("kind", ", ".join(outcome.explanation.kinds) or finding.detail)
         asked = ", asked only where the oracle is not 0" if outcome.explanation.partial else ""
         sides = [(f"by the rule{asked}", outcome.explanation.by_rule), ("by the oracle", outcome.explanation.by_oracle)]
-        shown = [f"{side}: {_product(product)}" for side, product in sides if product is not None]
+        shown = [f"{side}: {_product(product, finding.where)}" for side, product in sides if product is not None]
         for label, text in zip(["product", ""], shown, strict=False):
             lines += _entry(label, text)
     for place, text in enumerate(outcome.derivation.lines if outcome.derivation else ()):
@@ -173,11 +173,15 @@ def describe_class(u: SchubertClass) -> str:
     return f"{u}  {', '.join([*views, f'length {u.length}'])}"
 
 
-def _product(product: Product) -> str:
+def _product(product: Product, where: Case | Row) -> str:
+    """A product, its first terms and the one that is asked about if it is long."""
     if len(product) <= _MOST_TERMS:
         return str(product)
-    shown = Product(list(product.items())[:_MOST_TERMS])
-    return f"{shown} + ... ({len(product) - _MOST_TERMS} more terms)"
+    terms = list(product.items())
+    key = (where.w, where.d) if isinstance(where, Case) else None
+    first, asked = Product(terms[:_MOST_TERMS]), [term for term in terms[_MOST_TERMS:] if term[0] == key]
+    shown = " + ... + ".join(map(str, (first, *([Product(asked)] if asked else []))))
+    return f"{shown} + ... ({len(product) - _MOST_TERMS - len(asked)} more terms)"
 
 
 def _entry(label: str, text: str, *, wrap: bool = True) -> list[str]:

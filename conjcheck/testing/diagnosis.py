@@ -40,7 +40,7 @@ class Suggestion:
         on_rows: whether it can be decided from X, u, v alone.
         cases: the cases inside it that were compared; all of them agree.
         informative: those of them at which the rule or the constant is not 0.
-        fresh: the cases of them that were compared only after the premise had been chosen; 0 if no row was left.
+        fresh: the cases of them that had no part in the choice of the premise; 0 if no row was left.
         where: the spaces of these fresh cases.
         narrows: whether the conjecture has a premise already, to which this one is added.
         own: that premise as a Python expression, or in words where its source is not at hand.
@@ -103,9 +103,8 @@ class Diagnosis:
     def scope(self) -> str:
         """What was looked at, in words."""
         failures = counted(self.failing, f"failing {self.unit}")
-        return (
-            f"{failures} and {self.agreeing:,} agreeing ones, {self.informative:,} of these not 0, were looked at in {self.where}"
-        )
+        zeros = "" if self.by_rows else f", {self.informative:,} of these not 0,"
+        return f"{failures} and {self.agreeing:,} agreeing ones{zeros} were looked at in {self.where}"
 
     @property
     def suggested(self) -> str:
@@ -113,10 +112,13 @@ class Diagnosis:
         one = self.suggestion
         if one is None:
             tried = f"; {self.refused} that seemed possible failed there" if self.refused else ""
-            return f"none: no short premise stood a comparison on fresh rows{tried}"
-        inside = f"it agrees at all {counted(one.cases, self.unit)} inside that were compared, {one.informative:,} of them not 0"
+            return f"none: no short premise stood a comparison on rows that had no part in its choice{tried}"
+        zeros = "" if self.by_rows else f", {one.informative:,} of them not 0"
+        inside = f"it agrees at all {counted(one.cases, self.unit)} inside that were looked at{zeros}"
         fresh = (
-            f"among them {one.fresh:,} fresh ones in {one.where}" if one.fresh else "and there are no fresh rows to compare it on"
+            f"{one.fresh:,} of them, in {one.where}, had no part in its choice"
+            if one.fresh
+            else "all of them had a part in its choice"
         )
         narrows = ", inside its premise," if one.narrows else ""
         needs = "; the expression needs: from itertools import combinations" if "combinations(" in one.expression else ""
@@ -132,10 +134,12 @@ class Diagnosis:
         everywhere = condition.failing == self.failing
         zeros = condition.agreeing - condition.informative
         if not condition.agreeing:
-            exactly = ": exactly then it fails" if everywhere else ""
+            exactly = ": among these it fails exactly then" if everywhere else ""
             return f"holds at {failures} {ending} and at none of {self.agreeing:,} agreements{exactly}"
         if not condition.informative:
             return f"holds at {failures} {ending}; of {self.agreeing:,} agreements only at {zeros:,} where both sides are 0"
+        if self.by_rows:
+            return f"holds at {failures} {ending}, and at {condition.agreeing:,} of {self.agreeing:,} agreements"
         return (
             f"holds at {failures} {ending}, and at {condition.informative:,} of {self.informative:,} agreements that are not 0 and "
             f"{zeros:,} of {self.agreeing - self.informative:,} that are"

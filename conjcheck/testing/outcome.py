@@ -129,7 +129,9 @@ class Outcome:
             return "call the rule at this place in a process that may end, with python -X faulthandler"
         if finding.status == "not-a-count":
             if "keys" in finding.detail:
-                return "key a whole product by (w, d), w a class of X and d a tuple; or by w alone, with ring='classical'"
+                classical = "key a whole product by w, a class of X"
+                quantum = "key a whole product by (w, d), w a class of X and d a tuple; or by w alone, with ring='classical'"
+                return classical if self.conjecture.is_classical else quantum
             if self.conjecture.role == "claim":
                 return "return True or False on every path"
             value = "a polynomial built from simple_roots(X)" if self.conjecture.is_equivariant else ""

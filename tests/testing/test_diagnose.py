@@ -430,7 +430,7 @@ def test_a_whole_family_looked_at():
     found, _ = worked_out(bad)
     assert found.suggestion.words == "d = 0 (classical)"
     assert found.suggestion.fresh == 0
-    assert "there are no fresh rows" in found.suggested
+    assert "all of them had a part in its choice" in found.suggested
 
 
 # -- the pipeline ---------------------------------------------------------------------------------------------------------
