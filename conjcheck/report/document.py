@@ -175,8 +175,9 @@ def scope_of_spaces(spaces: Iterable[Mapping[str, Any]]) -> str:
         words.append(f"parts of {counted(len(partly) - 2, 'more space')}")
     if not words:
         return ""
-    rows, cases = (sum(space.get(key, 0) for space in walked) for key in ("rows", "cases"))
-    return f"{' and '.join(words)}; {counted(rows, 'row')}, {counted(cases, 'case')}"
+    rows, cases, failing = (sum(space.get(key, 0) for space in walked) for key in ("rows", "cases", "failing"))
+    fails = f"; it fails at {counted(failing, 'case')}" if failing else ""
+    return f"{' and '.join(words)}; {counted(rows, 'row')}, {counted(cases, 'case')}{fails}"
 
 
 def _empty(name: str, made: str) -> dict[str, Any]:

@@ -179,6 +179,17 @@ def test_a_rule_that_depends_on_what_was_asked_before(project):
     assert "in a process that asks nothing else: agrees, value" in " ".join(result.text.split())
 
 
+@pytest.mark.parametrize("premise", ["d == (0,)", "d == (1,)", "w.length <= 1", "u.length + w.length < 3", "v.index != w.index"])
+@pytest.mark.parametrize("seed", [1, 2])
+def test_a_right_rule_with_a_premise_on_cases(project, premise, seed):
+    """A premise on cases that no symmetry respects, such as a diagnosis suggests, does not make a right rule fail in any part."""
+    source = PROJECTIVE.format(name="powers").replace('"))\n', f'"), premise=lambda X, u, v, w, d: {premise})\n')
+    project.write("conjectures/powers.py", source)
+    result = project.run(f"--hypothesis-seed={seed}")
+    result.assert_outcomes(passed=2, skipped=0)
+    assert project.table(result) == {"powers": "agrees"}
+
+
 def test_two_conjectures_of_one_name_in_one_file(project):
     """Python keeps the last one only: that is said, and fails."""
     project.write("conjectures/twice.py", PROJECTIVE.format(name="powers") + PROJECTIVE.format(name="powers"))

@@ -142,3 +142,4 @@ def test_scope_of_spaces():
     assert scope_of_spaces([whole, part]) == "all of Gr(1,2) and the first 2 of 9 rows of Gr(1,3); 6 rows, 8 cases"
     assert scope_of_spaces([whole, whole | {"space": "Fl(3)"}]) == "all of 2 spaces, Gr(1,2) to Fl(3); 8 rows, 10 cases"
     assert "parts of 1 more space" in scope_of_spaces([part, part, part])
+    assert scope_of_spaces([whole | {"failing": 2}]) == "all of Gr(1,2); 4 rows, 5 cases; it fails at 2 cases"
