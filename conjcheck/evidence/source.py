@@ -9,10 +9,12 @@ from dataclasses import dataclass
 from pathlib import Path, PurePosixPath
 
 from conjcheck.errors import RecordError
+from conjcheck.oracle.guard import opened
 
-__all__ = ["Version", "keep_version", "kept_version", "rule_hash", "source_files", "version_of"]
+__all__ = ["Version", "keep_version", "kept_version", "rule_hash", "source_files", "unseen", "version_of"]
 
 _ROOT_MARKS = (".git", "pyproject.toml", "setup.py", "setup.cfg", "pytest.ini", "tox.ini")
+_OURS = Path(__file__).resolve().parents[1]
 _LONGEST_NAME = 200
 _MOST_FILES = 20_000
 _FILE_NAME = re.compile(r"[^\n]*\.[A-Za-z]\w{0,9}")
@@ -84,6 +86,32 @@ def kept_version(file: str | Path) -> Version:
         RecordError: as for :func:`rule_hash`.
     """
     return _kept.get(Path(file).resolve()) or version_of(file)
+
+
+def unseen(file: str | Path) -> list[str]:
+    """The files of its repository that a rule has read, but that its hash does not see, by their path from the rule's folder.
+
+    Only what was noticed: see ``oracle.guard.watch_opened``.
+
+    Raises:
+        RecordError: as for :func:`rule_hash`.
+    """
+    main = Path(file).resolve()
+    top, known = _Repository(main).top, {path for path, _ in kept_version(main).files}
+    found = set()
+    for name in opened():
+        path = Path(name).resolve()
+        if (
+            not path.is_relative_to(top)
+            or path in known
+            or path.is_relative_to(_OURS)
+            or path.suffix == ".pyc"
+            or not path.is_file()
+        ):
+            continue
+        if not any(part.startswith(".") or Path(*path.parts[: k + 1], "pyvenv.cfg").exists() for k, part in enumerate(path.parts)):
+            found.add(_label(path, main))
+    return sorted(found)
 
 
 def _stamp(path: Path) -> tuple[int, ...]:
@@ -170,6 +198,7 @@ class _Repository:
     Attributes:
         places: where imports are looked up: beside the plug-in, then upwards to the top of its repository, and in the folder src there.
             The top bears a mark, or else the last conftest.py.
+        top: the top.
     """
 
     def __init__(self, main: Path) -> None:
@@ -178,7 +207,7 @@ class _Repository:
         tests = [k for k, folder in enumerate(above) if (folder / "conftest.py").exists()]
         top = marked[0] if marked else tests[-1] if tests else 0
         self.places = [*above[: top + 1], above[top] / "src"]
-        self._top = above[top]
+        self.top = above[top]
         self._by_name: dict[str, list[Path]] | None = None
 
     def named(self, parts: tuple[str, ...]) -> list[Path]:
@@ -186,7 +215,7 @@ class _Repository:
         if self._by_name is None:
             self._by_name = {}
             count = 0
-            for folder, folders, files in os.walk(self._top):
+            for folder, folders, files in os.walk(self.top):
                 folders[:] = sorted(
                     f for f in folders if not f.startswith((".", "__pycache__")) and not self._is_foreign(folder, f)
                 )

@@ -1,14 +1,19 @@
-"""Who is asking: while a rule runs, a question to the oracle is noticed, because the answer would not be independent."""
+"""Who is asking: while a rule runs, a question to the oracle is noticed, because the answer would not be independent.
 
+And what a rule reads, in processes that only call rules.
+"""
+
+import os
 import sys
 from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
 from types import FrameType
+from typing import Any
 
 from conjcheck.errors import NotIndependent
 
-__all__ = ["Watch", "askers", "note_question", "watched"]
+__all__ = ["Watch", "askers", "note_question", "opened", "watch_opened", "watched"]
 
 _OURS = str(Path(__file__).parents[1])
 
@@ -72,3 +77,25 @@ def _note_askers() -> None:
 def askers() -> frozenset[Path]:
     """The files that asked the oracle while somebody watched who forbade nothing: while plug-ins were imported."""
     return frozenset(Path(name).resolve() for name in _askers)
+
+
+_opened: set[str] = set()
+_hooked = False
+
+
+def watch_opened() -> None:
+    """Notice from now on every file that is opened to be read while somebody is watched. That cannot be ended in a process."""
+    global _hooked  # noqa: PLW0603
+    if not _hooked:
+        sys.addaudithook(_note_opened)
+        _hooked = True
+
+
+def _note_opened(event: str, given: tuple[Any, ...]) -> None:
+    if event == "open" and _watches and isinstance(given[0], str) and not given[2] & (os.O_WRONLY | os.O_RDWR):
+        _opened.add(given[0])
+
+
+def opened() -> frozenset[str]:
+    """The files that were opened so, by the names that were used."""
+    return frozenset(_opened)

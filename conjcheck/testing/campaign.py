@@ -91,6 +91,7 @@ class Campaign:
         seconds: by the clock, this time.
         again: where everything agrees in order, what is wrong when rows are asked again, in another order, by a process that was asked
             nothing before: the rule is no function of its arguments. ``None`` if nothing is.
+        unseen: the files of its repository that the rule reads, but that its hash does not see, as far as that was noticed there.
     """
 
     conjecture: Conjecture
@@ -101,6 +102,7 @@ class Campaign:
     resumed: int = 0
     seconds: float = 0.0
     again: dict[str, Any] | None = None
+    unseen: tuple[str, ...] = ()
 
     @property
     def problems(self) -> list[str]:
@@ -165,7 +167,8 @@ def run_campaign(
     if (rule := version.rule) != kept_version(conjecture.file).rule:
         raise NotationError(f"expected {conjecture.file} as it was when it was imported, it was changed; import it again")
     kept = Ledger(ledger) if ledger else None
-    again = None
+    again: dict[str, Any] | None = None
+    unseen: tuple[str, ...] = ()
     try:
         stale = _stale(kept, conjecture, rule)
         plans = _plans(conjecture, chosen, rule, terms)
@@ -176,7 +179,7 @@ def run_campaign(
         try:
             walk.through(plans, pool, ahead=_AHEAD * jobs)
             if terms.draws is None and all(space.complete and not space.result.failing for space in walk.results):
-                again = _asked_again(conjecture, walk.results, rule, terms, pool)
+                again, unseen = _asked_again(conjecture, walk.results, rule, terms, pool)
         finally:
             walk.forget()
             if executor is None:
@@ -186,13 +189,15 @@ def run_campaign(
     finally:
         if kept:
             kept.__exit__(None, None, None)
-    return Campaign(conjecture, rule, terms, tuple(walk.reached()), stale, walk.resumed, monotonic() - started, again)
+    return Campaign(conjecture, rule, terms, tuple(walk.reached()), stale, walk.resumed, monotonic() - started, again, unseen)
 
 
 def _asked_again(
     conjecture: Conjecture, done: list[SpaceResult], rule: str, terms: Terms, executor: Executor
-) -> dict[str, Any] | None:
+) -> tuple[dict[str, Any] | None, tuple[str, ...]]:
     """What is wrong when some rows are asked again, the last spaces first, in no order, by a process that was asked nothing before.
+
+    And the files that it was seen to read there, but that are not in its hash.
 
     A call that takes too long there says nothing: what a rule keeps between calls, and may keep, has to be made first.
     """
@@ -205,11 +210,11 @@ def _asked_again(
         texts.append(chunk.as_text())
     try:
         patience = _AGAIN_PATIENCE + _AGAIN_SPACES * terms.call_limit
-        found = [json.loads(text) for text in executor.submit(isolated_afresh, texts).result(patience)]
+        *found, unseen = [json.loads(text) for text in executor.submit(isolated_afresh, texts).result(patience)]
     except Exception:  # whatever an executor raises: the rows are compared already
-        return None
+        return None, ()
     entries = [entry for result in found if not result.get("problem") for entry in result["findings"]]
-    return next((entry for entry in entries if entry["status"] != "too-slow"), None)
+    return next((entry for entry in entries if entry["status"] != "too-slow"), None), tuple(unseen)
 
 
 class _Walk:

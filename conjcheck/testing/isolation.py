@@ -69,6 +69,7 @@ class _Process:
         self._lines: SimpleQueue[bytes] = SimpleQueue()
         threading.Thread(target=_read, args=(self._child, self._lines), daemon=True).start()
         self._task = 0
+        self.unseen: list[str] = []
         self.close = weakref.finalize(self, _end, self._child, self._path)
 
     @property
@@ -102,6 +103,7 @@ class _Process:
             if answer["task"] != self._task:
                 raise ValueError("an answer to something else")
             result = ChunkResult.parse(answer["result"])
+            self.unseen = [str(name) for name in answer["unseen"]]
         except (ValueError, TypeError, KeyError):
             if not self.close.alive:
                 raise _Closed from None
@@ -222,11 +224,17 @@ def isolated(text: str) -> str:
 
 
 def isolated_afresh(texts: list[str]) -> list[str]:
-    """The same for several chunks, one after the other, in a process that was asked nothing before."""
+    """The same for several chunks, one after the other, in a process that was asked nothing before.
+
+    Returns:
+        The results; then, as JSON, the list of files of its repository that the rule has read, but that its hash does not see.
+    """
     _here.closed = _closed
     with contextlib.suppress(_Closed):
         _process(fresh=True)
-    return [isolated(text) for text in texts]
+    results = [isolated(text) for text in texts]
+    process: _Process | None = getattr(_here, "process", None)
+    return [*results, json.dumps(process.unseen if process else [])]
 
 
 def _survived(chunk: Chunk) -> ChunkResult:

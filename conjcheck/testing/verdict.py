@@ -77,6 +77,12 @@ def campaign_outcome(campaign: Campaign, *, effort: Effort = EFFORTS["normal"]) 
     outcome says so and holds what the survey found. A rule that ended its process before, hung or ate memory is not called again.
     """
     outcome = _outcome(campaign, effort).doubted()
+    if campaign.unseen:
+        more = f" and {len(campaign.unseen) - 3} more" if len(campaign.unseen) > 3 else ""
+        outcome = outcome.noted(
+            f"the rule reads {', '.join(campaign.unseen[:3])}{more}, which its hash does not see: a change there would go unnoticed; name "
+            "the file in a string of the plug-in"
+        )
     if outcome.status == "agrees":
         with suppress(RecordError):  # told when it is to be written
             known = read_record(campaign.conjecture).refuting(campaign.rule)

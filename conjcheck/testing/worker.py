@@ -20,8 +20,9 @@ from conjcheck.conjecture.declare import Conjecture
 from conjcheck.conjecture.discover import conjectures_in_file
 from conjcheck.errors import ConjcheckError
 from conjcheck.evidence.ledger import library_mark
-from conjcheck.evidence.source import rule_hash
+from conjcheck.evidence.source import rule_hash, unseen
 from conjcheck.geometry.case import Case
+from conjcheck.oracle.guard import watch_opened
 from conjcheck.testing.chunks import Chunk, ChunkResult, compare_chunk, entry_of, rows_of_chunk
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.limits import CallLimit, let_exit
@@ -154,6 +155,14 @@ def _end_with_parent(parent: int) -> None:
         os._exit(0)
 
 
+def _unseen(chunk: Chunk) -> list[str]:
+    """What the rule has read so far that its hash does not see."""
+    try:
+        return unseen(chunk.file)
+    except ConjcheckError:
+        return []
+
+
 def _serve(tasks: BinaryIO, answers: BinaryIO, marks: Marks) -> None:
     own = os.getpid()
     for served, line in enumerate(tasks):
@@ -176,7 +185,7 @@ def _serve(tasks: BinaryIO, answers: BinaryIO, marks: Marks) -> None:
         if os.getpid() != own:
             os._exit(0)
         # Earlier chunks take memory, too: what is short here may be enough in a fresh process.
-        answer = {"task": task["task"], "again": short and served > 0, "result": result.as_json()}
+        answer = {"task": task["task"], "again": short and served > 0, "result": result.as_json(), "unseen": _unseen(chunk)}
         answers.write(json.dumps(answer).encode() + b"\n")
         answers.flush()
 
@@ -184,6 +193,7 @@ def _serve(tasks: BinaryIO, answers: BinaryIO, marks: Marks) -> None:
 def main() -> None:
     """Serve until the input ends: ``worker FILE_OF_MARKS PID_OF_PARENT``."""
     let_exit()
+    watch_opened()
     answers = os.fdopen(os.dup(1), "wb")
     silence = os.open(os.devnull, os.O_WRONLY)
     os.dup2(silence, 1)

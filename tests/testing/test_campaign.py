@@ -21,6 +21,7 @@ from conjcheck.testing import campaign as room
 from conjcheck.testing.campaign import Campaign, Terms, run_campaign
 from conjcheck.testing.chunks import Chunk, ChunkResult, compare_chunk, entry_of
 from conjcheck.testing.compare import Comparer
+from conjcheck.testing.verdict import campaign_outcome
 
 SPACES = [Gr(1, 2), Fl(3), Gr(1, 4), Gr(2, 4)]
 WRONG = """
@@ -138,7 +139,7 @@ class Shuffled(Executor):
             if task and task[0].set_running_or_notify_cancel():
                 texts = task[1] if isinstance(task[1], list) else [task[1]]
                 found = [self.compare(Chunk.parse(text)) for text in texts]
-                task[0].set_result(found if isinstance(task[1], list) else found[0])
+                task[0].set_result([*found, "[]"] if isinstance(task[1], list) else found[0])
 
     def compare(self, chunk):
         comparer = self.comparers.setdefault(chunk.name, None) or Comparer(load(chunk.file, chunk.name))
@@ -340,6 +341,19 @@ def test_a_rule_that_lives_on_its_earlier_answers(tmp_path, jobs):
     assert (done.again["status"], done.again["rule"]) == ("refuted", 0)
     (tmp_path / "other").mkdir()
     assert run_campaign(load(write(tmp_path / "other", POWERS)), spaces, jobs=jobs).again is None
+
+
+def test_what_a_rule_reads(tmp_path):
+    """A file whose name is made up while the rule runs is not in its hash, and is told; one that a string names is, and is not."""
+    reading = "    assert (Path(__file__).parent / f'table{X.n}.txt').read_text(), 'table3.txt'\n    power ="
+    path = write(tmp_path, "from pathlib import Path\n" + POWERS.replace("    power =", reading))
+    for n in (2, 3, 4):
+        (tmp_path / f"table{n}.txt").write_text("x")
+    done = run_campaign(load(path), [Gr(1, n) for n in (2, 3, 4)])
+    assert done.again is None
+    assert done.unseen == ("table2.txt", "table4.txt")
+    note = campaign_outcome(done).note
+    assert note.startswith("the rule reads table2.txt, table4.txt, which its hash does not see: a change there would go unnoticed")
 
 
 class Liar(Shuffled):
