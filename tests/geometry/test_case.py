@@ -8,7 +8,17 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from conjcheck.errors import DifferentVarieties, NotationError
-from conjcheck.geometry.case import Case, Row, count_cases, degrees_of_total, outcomes, parse_class, read_degree, rows
+from conjcheck.geometry.case import (
+    Case,
+    Row,
+    count_cases,
+    degrees_of_total,
+    outcomes,
+    parse_class,
+    place_of_row,
+    read_degree,
+    rows,
+)
 from conjcheck.geometry.flag_variety import Fl, FlagVariety, Gr
 
 
@@ -275,3 +285,10 @@ def test_one_row_far_away():
     assert (first.u, first.v) == (X.identity, X.identity)
     (middle,) = rows(X, X.number_of_classes**2 // 2, X.number_of_classes**2 // 2 + 1)
     assert middle.u.length + middle.v.length == X.dim
+
+
+@pytest.mark.parametrize("name", ["Gr(1,2)", "Gr(2,5)", "Fl(4)", "LG(3,6)", "G2/P1"])
+def test_the_place_of_a_row(name):
+    """The place of a row is where it comes among all rows of its variety."""
+    X = FlagVariety(name)
+    assert [place_of_row(row) for row in rows(X)] == list(range(X.number_of_classes**2))

@@ -6,8 +6,9 @@ import json
 import pytest
 
 from conjcheck import Case, Row
+from conjcheck.conjecture.discover import conjectures_in_file
 from conjcheck.errors import RecordError
-from conjcheck.evidence.record import Counterexample, Record, write_record
+from conjcheck.evidence.record import Counterexample, Covered, Record, write_record
 from conjcheck.evidence.source import rule_hash
 from conjcheck.testing.compare import Comparer
 from conjcheck.testing.examine import EFFORTS, Examination
@@ -100,3 +101,49 @@ def test_a_folder_that_takes_nothing(module, tmp_path):
     outcome = Examination(module.wrong, EFFORTS["quick"]).survey()
     with pytest.raises(RecordError, match="expected a file that can be written"):
         counterexample(outcome.finding, module.wrong, minimal=True, confirmed_by="")
+
+
+def test_what_was_imported_is_what_is_recorded(tmp_path):
+    """If the file, or one that it names, is written to after the import, nothing is recorded, even if it says the old thing again."""
+    path, data = tmp_path / "plugin.py", tmp_path / "table.txt"
+    path.write_text(SOURCE + "NAME = 'table.txt'\n", encoding="utf-8")
+    data.write_text("old")
+    for touched in (path, data):
+        wrong = next(c for c in conjectures_in_file(path) if c.name == "wrong")
+        assert recording(wrong, lambda where: None).record.rule == rule_hash(path)
+        before = touched.read_text(encoding="utf-8")
+        touched.write_text(before + "#", encoding="utf-8")
+        touched.write_text(before, encoding="utf-8")
+        with pytest.raises(RecordError, match="as it was when it was imported, it was changed meanwhile; nothing was recorded"):
+            recording(wrong, lambda where: None)
+
+
+def test_agreement_with_itself_is_not_recorded(tmp_path):
+    """A rule whose file asked the oracle while it was imported gets no coverage on record; a counterexample stays one."""
+    path = tmp_path / "plugin.py"
+    path.write_text(
+        SOURCE + "from conjcheck import Gr, product\nTABLE = product(Gr(1, 2).point, Gr(1, 2).point)\n", encoding="utf-8"
+    )
+    wrong, never = conjectures_in_file(path)
+    with pytest.raises(
+        RecordError, match=r"plugin.py or a helper of it asked the oracle while it was imported; nothing was recorded"
+    ):
+        recording(wrong, lambda where: None)
+    found = Counterexample(Case.parse("Gr(1,3): (1) * (1) -> (2), q^(0)"), 0, 1, minimal=False, rule_hash=rule_hash(path))
+    assert recording(wrong, lambda where: None, found=found).record.status == "refuted"
+    assert recording(never, lambda where: None).record.status == "open"
+
+
+def test_agreement_where_it_fails(module):
+    """A counterexample among what is on record as agreeing, for the same version, is a contradiction, not one more entry."""
+    where = Case.parse("Gr(1,3): (1) * (1) -> (2), q^(0)")
+    found = Counterexample(where, 0, 1, minimal=False, rule_hash=rule_hash(module.wrong.file))
+    for seen, fits in ((4, True), (5, False), (9, False)):
+        coverage = [Covered(where.X, seen, seen, seen, seen)]
+        if fits:
+            assert recording(module.wrong, lambda where: None, coverage=coverage, found=found).record.status == "refuted"
+            continue
+        with pytest.raises(
+            RecordError, match=f"got both for one version of the rule wrong: {seen} rows of Gr.1,3. are said to agree"
+        ):
+            recording(module.wrong, lambda where: None, coverage=coverage, found=found)
