@@ -93,7 +93,10 @@ def _failure(outcome: Outcome, finding: Finding) -> list[str]:
         shown = [f"{side}: {_product(product, finding.where)}" for side, product in sides if product is not None]
         for label, text in zip(["product", ""], shown, strict=False):
             lines += _entry(label, text)
-    for place, text in enumerate(outcome.derivation.lines if outcome.derivation else ()):
+    derived = outcome.derivation.lines if outcome.derivation else ()
+    if not derived and isinstance(finding.where, Case) and not outcome.conjecture.is_equivariant:
+        derived = ("no short chain of Chevalley products was found; a certificate, where there is one, has all the steps",)
+    for place, text in enumerate(derived):
         lines += _entry("" if place else "why", text)
     lines += _entry("minimal", _minimality(outcome))
     if outcome.layer:

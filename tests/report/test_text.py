@@ -293,3 +293,11 @@ def test_what_cannot_be_used():
     assert len(before) == 2
     assert re.split(r"\s{2,}", line) == ["lost.py", "no verdict", "cannot be used: ModuleNotFoundError: No module named 'nothing'"]
     assert len(summary_table([], broken)) == 2
+
+
+def test_why(refuted):
+    """The derivation stands in the report; where none was found that is said, since nothing is left out in silence."""
+    assert entries(text_report(refuted))["why"].startswith(refuted.derivation.lines[0])
+    assert entries(text_report(replace(refuted, derivation=None)))["why"] == (
+        "no short chain of Chevalley products was found; a certificate, where there is one, has all the steps"
+    )
