@@ -19,7 +19,7 @@ from conjcheck.conjecture.discover import declared_twice, importing, prefer_help
 from conjcheck.errors import ConjcheckError, RecordError
 from conjcheck.evidence.record import Record, parse_place, read_record, records_held, stale_words
 from conjcheck.evidence.rerun import ask_afresh
-from conjcheck.evidence.source import rule_hash
+from conjcheck.evidence.source import kept_version, rule_hash
 from conjcheck.geometry.case import Case, Row
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.pytest_state import STATE, seconds
@@ -267,7 +267,8 @@ class PartItem(pytest.Function):
 
     def _run_part(self) -> None:
         """Run the part, work out what it finds, keep the outcome, and fail unless the status is as expected."""
-        prefer_helpers_of(self.path.parent.resolve())
+        if isinstance(self.node.parent, PluginFile):
+            prefer_helpers_of(self.path.parent.resolve())
         examination = self.node.examination
         if examination.failure and self.name != "case":
             pytest.skip(f"{examination.failure.status} already, see {self.node.name}::{examination.failure.part}")
@@ -375,6 +376,8 @@ class PartItem(pytest.Function):
         entries = covered(examination.coverage, examination.conjecture, cross_check=examination.cross_check)
         conjecture, found = examination.conjecture, None
         try:
+            if changed := kept_version(conjecture.file).changed:
+                raise RecordError(f"expected {changed} as it was when the rule was imported, it was changed; run again")
             if finding is not None:
                 minimal = outcome.minimum is not None and outcome.minimum.certified
                 found = counterexample(finding, conjecture, minimal=minimal, confirmed_by=outcome.confirmed_by)

@@ -16,7 +16,7 @@ from typing import TYPE_CHECKING, Any
 
 import pytest
 
-from conjcheck.pytest_state import EFFORTS, LINES, STATE, seconds
+from conjcheck.pytest_state import COLLECTED, EFFORTS, LINES, NAMED, STATE, seconds
 
 if TYPE_CHECKING:
     from collections.abc import Generator
@@ -119,27 +119,35 @@ def _is_plugin_file(path: Path, config: pytest.Config) -> bool:
     place, folders = path.resolve(), [Path(folder) for folder in config.getini(_FOLDERS)]
     if any(config.rootpath.joinpath(folder).resolve() in place.parents for folder in folders):
         return True
-    named = {folder for folder in _folders_named(config) if folder != config.rootpath.resolve()}
-    return any(folder.name in {known.name for known in folders} for folder in named & {*place.parents})
+    named = [folder for folder in _folders_named(config) if folder != config.rootpath.resolve()]
+    return any(folder.name in {known.name for known in folders} and folder in place.parents for folder in named)
 
 
 def _folders_named(config: pytest.Config) -> list[Path]:
     """The folders on the command line."""
-    given = [config.invocation_params.dir / argument.split("::")[0] for argument in config.args]
-    return [path.resolve() for path in given if path.is_dir()]
+    if NAMED not in config.stash:
+        given = [config.invocation_params.dir / argument.split("::")[0] for argument in config.args]
+        config.stash[NAMED] = [path.resolve() for path in given if path.is_dir()]
+    return config.stash[NAMED]
+
+
+def pytest_itemcollected(item: pytest.Item) -> None:
+    """Remember where items come from, those included that are deselected later."""
+    item.config.stash.setdefault(COLLECTED, set()).add(item.path)
 
 
 def pytest_collection_finish(session: pytest.Session) -> None:
     """Say which folders on the command line hold conjectures that were not collected: nobody is to take silence for agreement."""
     config = session.config
     reporter = config.pluginmanager.get_plugin("terminalreporter")
-    if reporter is None or config.getoption("--conjcheck-case"):
+    if reporter is None:
         return
+    names, collected = sorted({Path(folder).name for folder in config.getini(_FOLDERS)}), config.stash.get(COLLECTED, set())
     for folder in _folders_named(config):
-        below = [f"{way}{name}/*.py" for name in config.getini(_FOLDERS) for way in ("", "*/")]
-        inside = sorted({path for pattern in ("*.py", *below) for path in folder.glob(pattern)})
-        left = [path for path in inside if not _is_plugin_file(path, config) and _declares(path)]
-        left = [path for path in left if not any(item.path == path for item in session.items)]
+        homes = [folder, *sorted(path for path in folder.iterdir() if path.is_dir())]
+        places = [folder, *(home / name for home in homes for name in names)]
+        files = [path for place in places if place.is_dir() for path in sorted(place.glob("*.py"))]
+        left = [path for path in files if path not in collected and not _is_plugin_file(path, config) and _declares(path)]
         if left:
             where = shlex.quote(str(left[0].parent))
             reporter.write_line(
@@ -151,15 +159,13 @@ def pytest_collection_finish(session: pytest.Session) -> None:
 
 def _declares(path: Path) -> bool:
     """Whether a file looks like a plug-in."""
+    if path.name.startswith(("_", "test_")):
+        return False
     try:
         text = path.read_text(encoding="utf-8", errors="replace")
     except OSError:
         return False
-    return (
-        not path.name.startswith(("_", "test_"))
-        and "conjcheck" in text
-        and bool(re.search(r"^@(candidate|claim)\b", text, re.MULTILINE))
-    )
+    return "conjcheck" in text and bool(re.search(r"^@(candidate|claim)\b", text, re.MULTILINE))
 
 
 @pytest.hookimpl(wrapper=True)

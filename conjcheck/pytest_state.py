@@ -1,16 +1,23 @@
 """What the pytest plug-in keeps in the configuration of a run; standard library and pytest only."""
 
+from pathlib import Path
 from typing import Any
 
 import pytest
 
-__all__ = ["EFFORTS", "LINES", "STATE", "seconds"]
+__all__ = ["COLLECTED", "EFFORTS", "LINES", "NAMED", "STATE", "seconds"]
 
 STATE = pytest.StashKey[dict[str, Any]]()
 """``seed`` of the run, and ``examinations`` by conjecture."""
 
 LINES = pytest.StashKey[list[dict[str, Any]]]()
 """The outcomes so far, in JSON types, for the summary."""
+
+NAMED = pytest.StashKey[list[Path]]()
+"""The folders on the command line."""
+
+COLLECTED = pytest.StashKey[set[Path]]()
+"""The files that items come from."""
 
 EFFORTS = ("quick", "normal", "thorough")
 

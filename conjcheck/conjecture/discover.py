@@ -109,7 +109,7 @@ def _import_from_source(folder: Path) -> None:
 
 @contextmanager
 def importing(path: Path) -> Iterator[None]:
-    """Around the import of a plug-in: the helpers beside it come first; which version this was is remembered, and who asked the oracle.
+    """Around the import of a plug-in: the helpers beside it come first; which version this was is remembered.
 
     Raises:
         DeclarationError: the file, or one that it needs, was changed meanwhile.
@@ -121,8 +121,8 @@ def importing(path: Path) -> Iterator[None]:
     with watched(Watch(forbidding=False)):
         yield
     if version is not None:
-        if not version.untouched:
-            raise DeclarationError(f"expected {path} to stay as it is while it is imported, it was changed; start again")
+        if changed := version.changed:
+            raise DeclarationError(f"expected {changed} to stay as it is while {path} is imported, it was changed; start again")
         keep_version(path, version)
 
 
@@ -130,41 +130,44 @@ def asked_while_imported(conjecture: Conjecture) -> bool:
     """Whether its file, or one that this imports, asked the oracle while it was imported."""
     found = askers()
     with suppress(RecordError):  # it was written in no file
-        return bool(found) and not found.isdisjoint(path for path, _ in kept_version(conjecture.file).files)
+        return bool(found) and not found.isdisjoint(path for path, _, _ in kept_version(conjecture.file).files)
     return False
 
 
-_plugin_folders: set[Path] = set()
+_shelves: dict[Path, dict[str, ModuleType]] = {}
+"""For each folder of plug-ins the modules that were taken off ``sys.modules`` for another one's."""
 
 
 def prefer_helpers_of(folder: Path) -> None:
     """Let the plug-ins of a folder import the modules beside them, and not those of the same name beside other plug-ins.
 
-    Modules that were loaded from the folder of another plug-in, where this folder has one of that name, are forgotten. To be called
-    before a plug-in is imported, and again before its rules run: they may import, too.
+    Modules that were loaded from the folder of another plug-in, where this folder has one of that name, are put aside, and come back with
+    that folder. To be called before a plug-in is imported, and again before its rules run: they may import, too.
     """
-    if sys.path[0] == str(folder) and folder in _plugin_folders:
+    if sys.path[0] == str(folder) and folder in _shelves:
         return
     _import_from_source(folder)
     if str(folder) in sys.path:
         sys.path.remove(str(folder))
     sys.path.insert(0, str(folder))
-    _plugin_folders.add(folder)
+    own = _shelves.setdefault(folder, {})
     for name in {path.stem if path.suffix == ".py" else path.name for path in folder.iterdir()} - {"conftest"}:
         loaded = sys.modules.get(name)
-        if loaded is None or not _is_of_another(loaded, folder):
-            continue
-        for known in [known for known in sys.modules if known == name or known.startswith(f"{name}.")]:
-            del sys.modules[known]
+        if loaded is not None and (other := _shelf_of(loaded)) is not None and other != folder:
+            for known in [known for known in sys.modules if known == name or known.startswith(f"{name}.")]:
+                _shelves[other][known] = sys.modules.pop(known)
+    for name in list(own):
+        sys.modules.setdefault(name, own.pop(name))
 
 
-def _is_of_another(module: ModuleType, folder: Path) -> bool:
-    """Whether a module, or a package, was loaded from the folder of another plug-in."""
-    places = [*getattr(module, "__path__", ()), *filter(None, [getattr(module, "__file__", None)])]
-    homes = {Path(place).parent for place in places} | {
-        Path(place).parent.parent for place in places if place.endswith("__init__.py")
-    }
-    return folder not in homes and not homes.isdisjoint(_plugin_folders)
+def _shelf_of(module: ModuleType) -> Path | None:
+    """The folder of plug-ins from which a module, or a package, was loaded."""
+    file = getattr(module, "__file__", None)
+    if file and not file.endswith("__init__.py"):
+        home = Path(file).parent
+    else:
+        home = next((Path(place).parent for place in getattr(module, "__path__", ())), Path())
+    return home if home in _shelves else None
 
 
 def installed_files() -> list[Path]:

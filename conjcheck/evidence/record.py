@@ -140,7 +140,7 @@ class Record:
         agreed = {entry.X: entry.seen for entry in self.coverage if not entry.failing}
         for known in self.counterexamples:
             row = known.where.row if isinstance(known.where, Case) else known.where
-            if known.rule_hash == self.rule and place_of_row(row) < agreed.get(row.X, 0):
+            if known.rule_hash == self.rule and row.X in agreed and place_of_row(row) < agreed[row.X]:
                 raise RecordError(
                     f"expected agreement or a counterexample at {known.where}, got both for one version of the rule {self.conjecture}: "
                     f"{agreed[row.X]:,} rows of {row.X} are said to agree; the rule depends on something that its hash does not see, or an "

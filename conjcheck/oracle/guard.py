@@ -15,7 +15,7 @@ from conjcheck.errors import NotIndependent
 
 __all__ = ["Watch", "askers", "note_question", "opened", "watch_opened", "watched"]
 
-_OURS = str(Path(__file__).parents[1])
+_EXAMINING = str(Path(__file__).parents[1] / "testing")
 
 
 class Watch:
@@ -57,34 +57,41 @@ def note_question() -> None:
     """
     if _watches:
         _watches[-1].asked = True
-        if not _watches[-1].forbidding:
-            _note_askers()
-        else:
+        if _watches[-1].forbidding:
             raise NotIndependent(
                 "the oracle was asked by the rule that it is meant to judge; compute the value from the rule alone"
             )
+    _note_askers()
 
 
 def _note_askers() -> None:
-    """Remember whose code is asking: a helper that tabulates the oracle is imported once, and used by many."""
+    """Remember the files whose import is asking: a helper that tabulates the oracle is imported once, by whomever, and used by many."""
     frame: FrameType | None = sys._getframe(2)  # noqa: SLF001  # the documented way to the callers
+    modules = []
     while frame is not None:
-        if not frame.f_code.co_filename.startswith(_OURS):
-            _askers.add(frame.f_code.co_filename)
+        if frame.f_code.co_filename.startswith(_EXAMINING):
+            return  # it is the comparison that asks
+        if frame.f_code.co_name == "<module>":
+            modules.append(frame.f_code.co_filename)
         frame = frame.f_back
+    _askers.update(modules)
 
 
 def askers() -> frozenset[Path]:
-    """The files that asked the oracle while somebody watched who forbade nothing: while plug-ins were imported."""
+    """The files that asked the oracle while they were imported by this process."""
     return frozenset(Path(name).resolve() for name in _askers)
 
 
+_MOST_OPENED = 10_000
 _opened: set[str] = set()
 _hooked = False
 
 
 def watch_opened() -> None:
-    """Notice from now on every file that is opened to be read while somebody is watched. That cannot be ended in a process."""
+    """Notice from now on what is opened to be read, by ``open``, while somebody is watched: in an import, or in a candidate.
+
+    That cannot be ended in a process. At most 10,000 names are kept.
+    """
     global _hooked  # noqa: PLW0603
     if not _hooked:
         sys.addaudithook(_note_opened)
@@ -92,8 +99,11 @@ def watch_opened() -> None:
 
 
 def _note_opened(event: str, given: tuple[Any, ...]) -> None:
-    if event == "open" and _watches and isinstance(given[0], str) and not given[2] & (os.O_WRONLY | os.O_RDWR):
-        _opened.add(given[0])
+    if event != "open" or not _watches or len(_opened) >= _MOST_OPENED:
+        return
+    name, _, flags = given
+    if isinstance(name, str) and not flags & (os.O_WRONLY | os.O_RDWR):
+        _opened.add(name)
 
 
 def opened() -> frozenset[str]:

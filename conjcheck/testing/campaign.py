@@ -12,7 +12,7 @@ from typing import Any
 from conjcheck.conjecture.declare import Conjecture
 from conjcheck.errors import LedgerError, NotationError, OutOfReach
 from conjcheck.evidence.ledger import ChunkKey, Ledger, library_mark
-from conjcheck.evidence.source import Version, kept_version, version_of
+from conjcheck.evidence.source import Version, version_of
 from conjcheck.geometry.flag_variety import FlagVariety
 from conjcheck.oracle import ENGINES, engines_for
 from conjcheck.testing.chunks import Chunk, ChunkResult, chunks, sample_chunks
@@ -155,7 +155,7 @@ def run_campaign(
         watching: told how far it is.
 
     Raises:
-        NotationError: a space that is not in the family, or a conjecture without a file, or one that has changed since it was imported.
+        NotationError: a space that is not in the family, or a conjecture without a file.
         OutOfReach: a space that no engine covers.
         LedgerError: a ledger that cannot be used.
     """
@@ -164,8 +164,7 @@ def run_campaign(
     chosen = sorted(set(spaces))
     _check(conjecture, chosen)
     version = version_of(conjecture.file)
-    if (rule := version.rule) != kept_version(conjecture.file).rule:
-        raise NotationError(f"expected {conjecture.file} as it was when it was imported, it was changed; import it again")
+    rule = version.rule
     kept = Ledger(ledger) if ledger else None
     again: dict[str, Any] | None = None
     unseen: tuple[str, ...] = ()
@@ -262,9 +261,8 @@ class _Walk:
         for k, (plan, found) in enumerate(self.waiting):
             if isinstance(found, Future) and found.done():
                 result = _result(plan, found)
-                if not self.version.untouched:
-                    changed = f"{plan.chunk.file}, or a file that it needs, was changed during the survey; start again"
-                    result = ChunkResult(problem=changed)
+                if changed := self.version.changed:
+                    result = ChunkResult(problem=f"{changed} was changed during the survey; start again")
                 if self.kept and not result.problem:
                     self.kept.put(plan.key, result.as_json())
                 self.waiting[k] = plan, result

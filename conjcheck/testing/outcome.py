@@ -243,7 +243,7 @@ def _version(conjecture: Conjecture) -> str:
     """The hash of the rule that was asked; empty if it is not certain which that was."""
     with suppress(RecordError):  # it was written in no file
         version = kept_version(conjecture.file)
-        return version.rule if version.untouched else ""
+        return "" if version.changed else version.rule
     return ""
 
 

@@ -77,6 +77,11 @@ def campaign_outcome(campaign: Campaign, *, effort: Effort = EFFORTS["normal"]) 
     outcome says so and holds what the survey found. A rule that ended its process before, hung or ate memory is not called again.
     """
     outcome = _outcome(campaign, effort).doubted()
+    if campaign.again and campaign.again["status"] == "crashed":
+        outcome = outcome.noted(
+            f"asked in another order, by a process that had been asked nothing before, it crashed at {campaign.again['where']}: "
+            f"{campaign.again['detail']}"
+        )
     if campaign.unseen:
         more = f" and {len(campaign.unseen) - 3} more" if len(campaign.unseen) > 3 else ""
         outcome = outcome.noted(
@@ -94,7 +99,7 @@ def _outcome(campaign: Campaign, effort: Effort) -> Outcome:
     coverage = _coverage(campaign)
     part = "survey" if campaign.terms.draws is None else f"sample[seed {campaign.terms.seed}]"
     failing = next((space for space in campaign.spaces if space.result.findings), None)
-    if failing is None and campaign.again is not None:
+    if failing is None and campaign.again is not None and campaign.again["status"] != "crashed":
         finding = Finding(
             "unstable", parse_place(campaign.again["where"]), detail=_answers(campaign.again), trace=campaign.again["trace"]
         )

@@ -185,7 +185,8 @@ def _serve(tasks: BinaryIO, answers: BinaryIO, marks: Marks) -> None:
         if os.getpid() != own:
             os._exit(0)
         # Earlier chunks take memory, too: what is short here may be enough in a fresh process.
-        answer = {"task": task["task"], "again": short and served > 0, "result": result.as_json(), "unseen": _unseen(chunk)}
+        answer = {"task": task["task"], "again": short and served > 0, "result": result.as_json()}
+        answer["unseen"] = _unseen(chunk) if chunk.seed is not None else []
         answers.write(json.dumps(answer).encode() + b"\n")
         answers.flush()
 

@@ -1,11 +1,13 @@
 """Where conjectures are found."""
 
+import importlib
 import os
 import sys
 import types
 
 import pytest
 
+from conjcheck import Fl, examine, product
 from conjcheck.conjecture.discover import (
     GROUP,
     asked_while_imported,
@@ -171,7 +173,7 @@ def test_changed_while_it_is_imported(tmp_path, monkeypatch):
     monkeypatch.setattr(sys, "path", [*sys.path])
     path = tmp_path / "rule.py"
     path.write_text(HEADER + RULE.format("found") + "with open(__file__, 'a') as file:\n    file.write('# more')\n")
-    with pytest.raises(DeclarationError, match="to stay as it is while it is imported, it was changed; start again"):
+    with pytest.raises(DeclarationError, match=r"to stay as it is while .*rule.py is imported, it was changed; start again"):
         conjectures_in_file(path)
 
 
@@ -185,3 +187,32 @@ def test_who_asked_the_oracle(tmp_path, monkeypatch):
         found += conjectures_in_file(tmp_path / f"{name}.py")
     del sys.modules["_quiet_table"]
     assert [asked_while_imported(conjecture) for conjecture in found] == [True, True, False]
+
+
+def test_who_asked_before_anybody_watched(tmp_path, monkeypatch):
+    """It does not matter who imports the helper first; and a script that examines its rule at its end does not ask by that."""
+    monkeypatch.setattr(sys, "path", [str(tmp_path), *sys.path])
+    (tmp_path / "_quiet_table.py").write_text("from conjcheck import Fl, product\nTABLE = product(Fl(3).point, Fl(3).point)\n")
+    importlib.import_module("_quiet_table")
+    (tmp_path / "late.py").write_text(HEADER + "import _quiet_table\n" + RULE.format("late"))
+    (late,) = conjectures_in_file(tmp_path / "late.py")
+    del sys.modules["_quiet_table"]
+    assert asked_while_imported(late)
+    path = tmp_path / "script.py"
+    path.write_text(HEADER + RULE.format("right"))
+    (right,) = conjectures_in_file(path)
+    names = {"examine": examine, "right": right, "product": product, "Fl": Fl}
+    exec(compile("examine(right, effort='quick', budget=0.1)", str(path), "exec"), names)
+    assert not asked_while_imported(right)
+    exec(compile("product(Fl(3).point, Fl(3).point)", str(path), "exec"), names)
+    assert asked_while_imported(right)
+
+
+def test_the_same_modules_come_back(two):
+    """A folder gets back the very modules that its plug-ins imported, with what they remember."""
+    for name in ("one", "two"):
+        prefer_helpers_of(two / name)
+        importlib.import_module("quiet_util.core").MARK = name
+    for name in ("one", "two", "one"):
+        prefer_helpers_of(two / name)
+        assert name == importlib.import_module("quiet_util.core").MARK

@@ -170,24 +170,60 @@ def test_what_lies_elsewhere_in_the_repository(tmp_path, source, name, mark):
     assert hashes[0] != hashes[1] == hashes[2] == hashes[3]
 
 
-def test_a_version_is_untouched_until_somebody_writes(tmp_path):
-    """A version knows when one of its files was written to, even if it says again what it said before."""
+def test_a_version_knows_what_has_changed(tmp_path):
+    """A version knows the first of its files that says something else than it did; touching one is no change."""
     path, data = tmp_path / "rule.py", tmp_path / "table.json"
     path.write_text("T = 'table.json'\n")
     data.write_text("[1]")
     version = version_of(path)
-    assert version.untouched
+    assert version.changed is None
     data.write_text("[2]")
-    assert not version.untouched
+    assert version.changed == data
     data.write_text("[1]")
-    assert not version.untouched
-    again = version_of(path)
-    assert (again.rule, again.untouched) == (version.rule, True)
-    assert kept_version(path) == again
+    path.touch()
+    assert version.changed is None
+    assert kept_version(path).rule == version_of(path).rule == version.rule
+    path.write_text("T = 'table.json'  # more\n")
+    assert version.changed == path
+    assert kept_version(path).rule != version.rule
     keep_version(path, version)
     assert kept_version(path) is version
+    path.write_text("T = 'table.json'\n")
     data.unlink()
-    assert not again.untouched
+    assert version.changed == data
+
+
+@pytest.mark.parametrize("folder", ["build/lib", "env/lib", ".venv/lib", "odd/site-packages", "conda/lib", "own/lib"])
+def test_what_nobody_writes(tmp_path, folder):
+    """Builds and environments in the repository play no part, so that the hash is the same before and after them."""
+    (tmp_path / "pyproject.toml").touch()
+    (tmp_path / "rule.py").write_text("import far\n")
+    (tmp_path / "real").mkdir()
+    (tmp_path / "real" / "far.py").write_text("x = 1\n")
+    before = rule_hash(tmp_path / "rule.py")
+    (tmp_path / folder).mkdir(parents=True)
+    (tmp_path / folder / "far.py").write_text("x = 1\n")
+    if folder.startswith("own"):
+        (tmp_path / "own" / "pyvenv.cfg").touch()
+    if folder.startswith("conda"):
+        (tmp_path / "conda" / "conda-meta").mkdir()
+    assert rule_hash(tmp_path / "rule.py") == before
+
+
+def test_an_installed_plug_in(tmp_path):
+    """A plug-in in an installed package is judged with its package, not with all that is installed beside it."""
+    (tmp_path / "pyproject.toml").touch()
+    for name, text in (
+        ("pkg/rule.py", "import other\nfrom pkg import near\n"),
+        ("pkg/__init__.py", ""),
+        ("pkg/near.py", ""),
+        ("other.py", ""),
+    ):
+        path = tmp_path / "lib" / "site-packages" / name
+        path.parent.mkdir(parents=True, exist_ok=True)
+        path.write_text(text)
+    found = source_files(tmp_path / "lib" / "site-packages" / "pkg" / "rule.py")
+    assert {path.name for path in found} <= {"rule.py", "near.py", "__init__.py"}
 
 
 def test_a_circle(tmp_path):

@@ -111,8 +111,12 @@ def test_a_folder_on_the_command_line(project):
             f"conjcheck: {place} is not collected: name its folder on the command line, pytest -o conjcheck_folders={place.parent} "
         )
         assert words in project.run("--collect-only", "-q", named).text
-        assert project.items("-o", f"conjcheck_folders={place.parent}", str(place.parent))
+        words = ["-o", f"conjcheck_folders={place.parent}", str(place.parent)]
+        assert project.items(*words)
+        assert project.run("--collect-only", *words).ret == 0
     assert "not collected" not in project.run("--collect-only", "-q", "far/conjectures").text
+    assert "not collected" not in project.run("--collect-only", "-q", "far/conjectures", "-k", "nothing").text
+    assert "not collected" not in project.run("--collect-only", "-q", "ideas", "-o", "python_files=*.py", "-k", "nothing").text
 
 
 def test_other_folders(project):

@@ -103,21 +103,6 @@ def test_a_folder_that_takes_nothing(module, tmp_path):
         counterexample(outcome.finding, module.wrong, minimal=True, confirmed_by="")
 
 
-def test_what_was_imported_is_what_is_recorded(tmp_path):
-    """If the file, or one that it names, is written to after the import, nothing is recorded, even if it says the old thing again."""
-    path, data = tmp_path / "plugin.py", tmp_path / "table.txt"
-    path.write_text(SOURCE + "NAME = 'table.txt'\n", encoding="utf-8")
-    data.write_text("old")
-    for touched in (path, data):
-        wrong = next(c for c in conjectures_in_file(path) if c.name == "wrong")
-        assert recording(wrong, lambda where: None).record.rule == rule_hash(path)
-        before = touched.read_text(encoding="utf-8")
-        touched.write_text(before + "#", encoding="utf-8")
-        touched.write_text(before, encoding="utf-8")
-        with pytest.raises(RecordError, match="as it was when it was imported, it was changed meanwhile; nothing was recorded"):
-            recording(wrong, lambda where: None)
-
-
 def test_agreement_with_itself_is_not_recorded(tmp_path):
     """A rule whose file asked the oracle while it was imported gets no coverage on record; a counterexample stays one."""
     path = tmp_path / "plugin.py"
