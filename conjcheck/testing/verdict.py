@@ -91,7 +91,7 @@ def campaign_outcome(campaign: Campaign, *, effort: Effort = EFFORTS["normal"]) 
     if outcome.status == "agrees":
         with suppress(RecordError):  # told when it is to be written
             known = read_record(campaign.conjecture).refuting(campaign.rule)
-            outcome = outcome.noted(f"on record as refuted, at {known[0].where}: not among what was compared" if known else "")
+            outcome = outcome.noted(f"on record as refuted, at {known[0].where}" if known else "")
     return outcome
 
 

@@ -246,6 +246,16 @@ def test_two_surveys_add_up(tmp_path):
     assert numbers(path) == before
 
 
+def test_what_is_on_record_is_said(tmp_path):
+    """A survey of other spaces agrees, and says that the rule is refuted on record all the same; nothing is said of another version."""
+    path = faulty(tmp_path, (4, 2, 1))
+    write_campaign(*surveyed(path, [Gr(1, 2), Gr(1, 3), Gr(1, 4)]))
+    _, outcome = surveyed(path, [Gr(1, 2)])
+    assert (outcome.status, outcome.note) == ("agrees", "on record as refuted, at Gr(1,4): (2) * (1) -> (3), q^(0)")
+    path.write_text(path.read_text() + "# another\n")
+    assert surveyed(path, [Gr(1, 2)])[1].note == ""
+
+
 def test_right_in_one_order_only(tmp_path):
     """A rule that is right when rows are asked in order, and wrong when it is asked first, is unstable, and nothing goes on record."""
     source = """
